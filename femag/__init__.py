@@ -1,0 +1,85 @@
+"""Gapfield: gapped inductors on round-post cores, inductance between a lower and an upper bound.
+
+Names are loaded when first used, so that ``import femag`` is quick::
+
+    import femag as fm
+
+    core = fm.PotCore(outer_diameter=25.5e-3, window_diameter=21.2e-3, post_diameter=11.5e-3,
+                      hole_diameter=5.5e-3, height=16.1e-3, window_height=11e-3)
+    design = fm.Design(core=core, gaps=[fm.Gap(0.5e-3)], windings=[fm.Winding(turns=50)],
+                       material=fm.LinearCurve(2000))
+    result = fm.solve(design, current=1.0)
+    print(result.inductance)
+"""
+
+from __future__ import annotations
+
+import importlib
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from femag import plot
+    from femag.design import Design
+    from femag.design_file import design_toml, read_design
+    from femag.errors import GapfieldError, InputError, NumericalError
+    from femag.export.result_file import read_result, write_result
+    from femag.field.adapt import ToleranceError
+    from femag.field.bounds import Bounds
+    from femag.geometry import Block, Gap, PotCore, Winding
+    from femag.materials import FroehlichCurve, LinearCurve
+    from femag.result import Result, solve
+
+_HOME = {
+    "Block": "femag.geometry",
+    "Bounds": "femag.field.bounds",
+    "Design": "femag.design",
+    "FroehlichCurve": "femag.materials",
+    "Gap": "femag.geometry",
+    "GapfieldError": "femag.errors",
+    "InputError": "femag.errors",
+    "LinearCurve": "femag.materials",
+    "NumericalError": "femag.errors",
+    "PotCore": "femag.geometry",
+    "Result": "femag.result",
+    "ToleranceError": "femag.field.adapt",
+    "Winding": "femag.geometry",
+    "design_toml": "femag.design_file",
+    "read_design": "femag.design_file",
+    "read_result": "femag.export.result_file",
+    "solve": "femag.result",
+    "write_result": "femag.export.result_file",
+}
+
+__all__ = [
+    "Block",
+    "Bounds",
+    "Design",
+    "FroehlichCurve",
+    "Gap",
+    "GapfieldError",
+    "InputError",
+    "LinearCurve",
+    "NumericalError",
+    "PotCore",
+    "Result",
+    "ToleranceError",
+    "Winding",
+    "design_toml",
+    "plot",
+    "read_design",
+    "read_result",
+    "solve",
+    "write_result",
+]
+
+
+def __getattr__(name: str) -> Any:
+    if name == "plot":
+        return importlib.import_module("femag.plot")
+    if name not in _HOME:
+        raise AttributeError(f"module 'femag' has no attribute {name!r}")
+    return getattr(importlib.import_module(_HOME[name]), name)
+
+
+def __dir__() -> list[str]:
+    return sorted(__all__)

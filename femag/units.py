@@ -1,0 +1,176 @@
+"""Units at the edges: text with a unit to SI numbers, and SI numbers to short text.
+
+Only the units of this trade are defined, so that a misspelt one is found and the registry
+builds fast. Inside the package everything is SI.
+"""
+
+from __future__ import annotations
+
+import difflib
+import math
+import re
+from collections.abc import Sequence
+from decimal import Decimal
+from functools import cache
+from typing import TYPE_CHECKING
+
+from femag.errors import InputError
+
+if TYPE_CHECKING:
+    import pint
+
+MU_0 = 4e-7 * math.pi
+"""Magnetic constant, H/m. CODATA 2022 gives 1.25663706127(20)e-6, which is smaller by 1.3e-10 of
+its value: far below any tolerance here, and 4e-7 pi makes results comparable with tables."""
+
+_DEFINITIONS = """
+milli- = 1e-3 = m-
+micro- = 1e-6 = µ- = μ- = u-
+nano- = 1e-9 = n-
+pico- = 1e-12 = p-
+centi- = 1e-2 = c-
+kilo- = 1e3 = k-
+mega- = 1e6 = M-
+metre = [length] = m = meter
+second = [time] = s
+ampere = [current] = A = amp
+kilogram = [mass]
+gram = 1e-3 kilogram = g
+kelvin = [temperature] = K
+inch = 25.4e-3 metre = in
+mil = 25.4e-6 metre
+hertz = 1 / second = Hz
+newton = kilogram * metre / second ** 2 = N
+joule = newton * metre = J
+watt = joule / second = W
+volt = watt / ampere = V
+ohm = volt / ampere = Ω
+henry = volt * second / ampere = H
+weber = volt * second = Wb
+tesla = weber / metre ** 2 = T
+gauss = 1e-4 tesla = G
+oersted = 79.57747154594767 ampere / metre = Oe
+"""
+
+_PREFIXES = ((1e6, "M"), (1e3, "k"), (1.0, ""), (1e-3, "m"), (1e-6, "u"), (1e-9, "n"), (1e-12, "p"))
+
+
+@cache
+def _registry() -> pint.UnitRegistry[float]:
+    import pint
+
+    registry: pint.UnitRegistry[float] = pint.UnitRegistry(None, case_sensitive=True)
+    registry.load_definitions(_DEFINITIONS.strip().splitlines())
+    return registry
+
+
+_NUMBER_AND_UNIT = re.compile(r"\s*([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*(\S.*?)?\s*")
+
+ACCEPTED = {
+    "m": "a length with its unit, such as '0.5 mm' or '26 mil'",
+    "A": "a current with its unit, such as '1 A'",
+    "T": "a flux density with its unit, such as '0.45 T' or '4500 G'",
+    "A/m": "a field strength with its unit, such as '250 A/m' or '3 Oe'",
+    "H": "an inductance with its unit, such as '250 uH'",
+    "Hz": "a frequency with its unit, such as '120 kHz'",
+}
+"""What is accepted for a quantity of each SI unit, for messages and the file reference."""
+
+
+def si_value(text: object, unit: str) -> float:
+    """Return the SI number of a text such as ``"0.5 mm"``.
+
+    Parameters
+    ----------
+    text : object
+        What the user wrote.
+    unit : str
+        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``.
+
+    Raises
+    ------
+    InputError
+        If the unit is missing, unknown or of another dimension, or the number does not read.
+    """
+    accepted = ACCEPTED[unit]
+    if isinstance(text, int | float) and not isinstance(text, bool):
+        raise InputError("the unit is missing", value=text, accepted=accepted)
+    match = _NUMBER_AND_UNIT.fullmatch(text) if isinstance(text, str) else None
+    if match is None:
+        raise InputError("not a number with a unit", value=text, accepted=accepted)
+    if match.group(2) is not None and match.group(2).startswith(","):
+        raise InputError("a decimal comma", value=text, accepted=accepted)
+    number, name = match.groups()
+    if name is None:
+        raise InputError("the unit is missing", value=text, accepted=accepted)
+    value = float(Decimal(number) * Decimal(repr(_si_factor(name, unit, text, accepted))))
+    if not math.isfinite(value):
+        raise InputError("the number is too large", value=text, accepted=accepted)
+    return value
+
+
+def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
+    import pint
+
+    registry = _registry()
+    try:
+        factor = registry.Quantity(1.0, registry.parse_units(name)).to(unit).magnitude
+    except pint.DimensionalityError as error:
+        raise InputError(
+            f"{name!r} is not a unit of this quantity", value=text, accepted=accepted
+        ) from error
+    except Exception as error:  # pint's parser raises errors of many kinds on odd text
+        near = difflib.get_close_matches(name, _names(), n=1, cutoff=0.7)
+        hint = f", nearest known: {near[0]!r}" if near else ""
+        raise InputError(f"unknown unit {name!r}{hint}", value=text, accepted=accepted) from error
+    return float(factor)
+
+
+def _names() -> list[str]:
+    return ["mm", "cm", "um", "m", "mil", "inch", "in", "A", "mA", "kA", "T", "mT", "G", "gauss",
+            "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz"]  # fmt: skip
+
+
+def exact_text(value: float, unit: str, prefix: str = "") -> str:
+    """Return a text that `si_value` reads back to the same number, such as ``"0.5 mm"``.
+
+    Parameters
+    ----------
+    value : float
+        SI value.
+    unit : str
+        SI unit symbol.
+    prefix : {"", "m"}
+        Prefix to write the unit with.
+    """
+    power = {"": 0, "m": 3}[prefix]
+    number = Decimal(repr(float(value))).scaleb(power).normalize()
+    return f"{number:f} {prefix}{unit}"
+
+
+def with_unit(value: float, unit: str, digits: int = 4) -> str:
+    """Return a short text such as ``"650.2 uH"``: `digits` significant figures and a prefix.
+
+    Parameters
+    ----------
+    value : float
+        SI value.
+    unit : str
+        SI unit symbol.
+    digits : int
+        Significant figures.
+    """
+    (text,) = with_common_unit((value,), unit, digits)
+    return text
+
+
+def with_common_unit(values: Sequence[float], unit: str, digits: int = 4) -> tuple[str, ...]:
+    """Return texts that share the prefix and the decimals of the first value."""
+    lead = abs(values[0])
+    if not math.isfinite(lead) or lead == 0.0:
+        factor, prefix, decimals = 1.0, "", digits - 1
+    else:
+        rounded = float(f"{lead:.{digits - 1}e}")
+        factor, prefix = next((s for s in _PREFIXES if rounded >= s[0] * (1 - 1e-12)), (1e-12, "p"))
+        decimals = max(0, digits - 1 - math.floor(math.log10(rounded / factor) + 1e-12))
+    return tuple(f"{value / factor:.{decimals}f} {prefix}{unit}" for value in values)
