@@ -1,0 +1,180 @@
+"""The design as a value: core, gaps, windings, material, drive, and what follows from them."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Sequence
+from dataclasses import asdict, dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from femag.errors import InputError
+from femag.geometry import (
+    Block,
+    Gap,
+    PotCore,
+    Region,
+    Section,
+    Winding,
+    half_window_height,
+    is_mirror_symmetric,
+    open_section,
+    pot_regions,
+    upper_half,
+    winding_region,
+)
+from femag.materials import MagnetisationCurve
+
+FAR_RADIUS = 60.0
+"""Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
+
+
+@dataclass(frozen=True)
+class Design:
+    """A gapped inductor, as it is to be signed off.
+
+    Parameters
+    ----------
+    core : PotCore
+        The core.
+    windings : tuple of Winding
+        At least one.
+    material : MagnetisationCurve
+        What the core is made of.
+    gaps : tuple of Gap
+        Air gaps; none for an ungapped core.
+    current : float
+        Peak current of the driven windings, A.
+    tolerance : float
+        Wanted half width between the bounds over the value.
+    driven : tuple of str
+        Names of the windings that carry the current, in series; the first winding when empty.
+    title : str
+        For print.
+    """
+
+    core: PotCore
+    windings: tuple[Winding, ...]
+    material: MagnetisationCurve
+    gaps: tuple[Gap, ...] = ()
+    current: float = 1.0
+    tolerance: float = 1e-3
+    driven: tuple[str, ...] = ()
+    title: str = ""
+
+    def __post_init__(self) -> None:
+        for name in ("windings", "gaps", "driven"):
+            object.__setattr__(self, name, tuple(getattr(self, name)))
+        _check_names(self.windings, self.driven)
+        if not 1e-6 <= self.tolerance < 1.0:
+            raise InputError(
+                "tolerance out of range",
+                key="solve.tolerance",
+                value=self.tolerance,
+                accepted="a number from 1e-6 to below 1, such as 1e-3",
+            )
+        if not (np.isfinite(self.current) and self.current != 0.0):
+            raise InputError(
+                "a drive current is needed", key="drive.current", value=self.current,
+                accepted="a current that is not 0",
+            )  # fmt: skip
+        whole_section(self)
+
+    @property
+    def driven_windings(self) -> tuple[Winding, ...]:
+        """The windings that carry the current."""
+        names = self.driven or (self.windings[0].name,)
+        return tuple(winding for winding in self.windings if winding.name in names)
+
+    @property
+    def turns(self) -> int:
+        """Turns that carry the current, summed."""
+        return sum(winding.turns for winding in self.driven_windings)
+
+
+def whole_section(design: Design) -> Section:
+    """Return the full section in open space.
+
+    Raises
+    ------
+    InputError
+        If the parts do not fit.
+    """
+    core, gaps = design.core, design.gaps
+    half_window = half_window_height(core, gaps)
+    window = Block(core.post_radius, core.window_radius, -half_window, half_window)
+    regions = pot_regions(core, gaps)
+    coils = tuple(
+        winding_region(winding, window, index) for index, winding in enumerate(design.windings)
+    )
+    _check_coils(coils)
+    extent = max(core.outer_radius, half_window + core.plate_thickness)
+    return open_section((*regions, *coils), FAR_RADIUS * extent)
+
+
+def meshed_section(design: Design) -> Section:
+    """Return the part that is meshed: the upper half when the design is symmetric."""
+    section = whole_section(design)
+    return upper_half(section) if is_mirror_symmetric(section) else section
+
+
+def turns_per_area(design: Design) -> dict[str, float]:
+    """Return the turns per area in 1/m2 of each driven winding's region."""
+    driven = {f"winding {winding.name}": winding.turns for winding in design.driven_windings}
+    areas = {
+        region.name: (region.polygon[1][0] - region.polygon[0][0])
+        * (region.polygon[2][1] - region.polygon[1][1])
+        for region in whole_section(design).regions
+        if region.name in driven
+    }
+    return {name: turns / areas[name] for name, turns in driven.items()}
+
+
+def design_hash(design: Design) -> str:
+    """Return a hexadecimal digest of everything in the design that can move a result."""
+    content = asdict(replace(design, title=""))
+    content["material"]["kind"] = type(design.material).__name__
+    text = json.dumps(_with_floats(content), sort_keys=True)
+    return hashlib.sha256(text.encode()).hexdigest()
+
+
+def _with_floats(content: Any) -> Any:
+    """Return nested content with every number as a float, so that 2000 and 2000.0 are equal."""
+    if isinstance(content, dict):
+        return {key: _with_floats(value) for key, value in content.items()}
+    if isinstance(content, list | tuple):
+        return [_with_floats(value) for value in content]
+    return content if content is None or isinstance(content, str) else float(content)
+
+
+def _check_names(windings: Sequence[Winding], driven: Sequence[str]) -> None:
+    if not windings:
+        raise InputError("no winding", key="winding", accepted="at least one winding")
+    names = [winding.name for winding in windings]
+    for name in names:
+        if names.count(name) > 1:
+            raise InputError(
+                "two windings have one name", key="winding.name", value=name,
+                accepted="names that differ",
+            )  # fmt: skip
+    for name in driven:
+        if name not in names:
+            raise InputError(
+                "no winding has this name",
+                key="drive.winding",
+                value=name,
+                accepted=", ".join(names),
+            )
+
+
+def _check_coils(coils: Sequence[Region]) -> None:
+    for index, one in enumerate(coils):
+        (r0, z0), _, (r1, z1), _ = one.polygon
+        for other in coils[index + 1 :]:
+            (s0, y0), _, (s1, y1), _ = other.polygon
+            if min(r1, s1) - max(r0, s0) > 1e-9 * r1 and min(z1, y1) - max(z0, y0) > 1e-9 * r1:
+                raise InputError(
+                    f"overlaps {one.name}", key=other.name, accepted="blocks that do not overlap"
+                )

@@ -1,0 +1,108 @@
+"""Windings as blocks of uniform current density in the window."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from femag.errors import InputError, entry_key
+from femag.geometry.section import Region, rectangle
+
+
+@dataclass(frozen=True)
+class Block:
+    """A rectangle of copper in the section, in m; z = 0 is the middle of the window.
+
+    Parameters
+    ----------
+    inner_radius, outer_radius : float
+        Radial extent.
+    bottom, top : float
+        Axial extent.
+    """
+
+    inner_radius: float
+    outer_radius: float
+    bottom: float
+    top: float
+
+    def __post_init__(self) -> None:
+        for low, high in (("inner_radius", "outer_radius"), ("bottom", "top")):
+            if not getattr(self, low) < getattr(self, high):
+                raise InputError(
+                    f"must lie above {low}",
+                    key=f"winding.block.{high}",
+                    value=getattr(self, high),
+                    accepted=f"more than {getattr(self, low) * 1e3:g} mm",
+                )
+
+    @property
+    def area(self) -> float:
+        """Area of the rectangle, m2."""
+        return (self.outer_radius - self.inner_radius) * (self.top - self.bottom)
+
+
+@dataclass(frozen=True)
+class Winding:
+    """Turns in a block.
+
+    Parameters
+    ----------
+    turns : int
+        Number of turns, at least 1.
+    block : Block, optional
+        Where the copper lies; the whole window when left out.
+    name : str
+        Unique in the design.
+    """
+
+    turns: int
+    block: Block | None = None
+    name: str = "main"
+
+    def __post_init__(self) -> None:
+        if not (np.isfinite(self.turns) and self.turns >= 1 and self.turns == int(self.turns)):
+            raise InputError(
+                "a winding needs turns",
+                key="winding.turns",
+                value=self.turns,
+                accepted="a whole number of at least 1",
+            )
+
+
+def winding_region(winding: Winding, window: Block, index: int) -> Region:
+    """Return the winding's region, named after it.
+
+    Parameters
+    ----------
+    winding : Winding
+        The winding.
+    window : Block
+        The room that the core leaves.
+    index : int
+        Its place in the design from 0, for messages.
+
+    Raises
+    ------
+    InputError
+        If the block leaves the window.
+    """
+    block = winding.block or window
+    slack = 1e-9 * window.outer_radius
+    for side, sign, limit_name in (
+        ("inner_radius", 1, "the post"),
+        ("outer_radius", -1, "the ring"),
+        ("bottom", 1, "the lower plate"),
+        ("top", -1, "the upper plate"),
+    ):
+        value, limit = getattr(block, side), getattr(window, side)
+        if sign * (value - limit) < -slack:
+            raise InputError(
+                f"the winding reaches into {limit_name}",
+                key=f"{entry_key('winding', index)}.block.{side}",
+                value=value,
+                accepted=f"{'at least' if sign > 0 else 'at most'} {limit * 1e3:g} mm",
+            )
+    polygon = rectangle(block.inner_radius, block.outer_radius, block.bottom, block.top)
+    return Region(f"winding {winding.name}", "winding", polygon, parent="window")
