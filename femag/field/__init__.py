@@ -1,0 +1,1 @@
+"""The field: both sides, their bounds, and refinement until the bounds are close."""

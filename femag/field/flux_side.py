@@ -1,0 +1,62 @@
+"""The flux side: A = r u e_phi with u in P2, minimising the energy less the work of the turns.
+
+It bounds the co-energy from below.
+
+References
+----------
+P. Hammond and J. Penman, "Calculation of inductance and capacitance by means of dual energy
+principles", Proc. IEE 123 (1976) 554.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from femag.field.discretisation import Discretisation, assembled_vector
+from femag.field.laws import Laws
+from femag.field.problem import FieldProblem
+from femag.field.side import Side
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+
+
+def flux_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws) -> Side:
+    """Return the flux side: B from u, u = 0 on far and tangential walls.
+
+    B_r = -r du/dz and B_z = 2 u + r du/dr hold no 1/r, and u is free on the axis.
+    """
+    unknown, size = _free_unknowns(discretisation)
+    turns = turn_density(problem, discretisation)
+    local = np.einsum("eiq,eq->ei", discretisation.radius_shape, turns * discretisation.weight)
+    shape = discretisation.flux_shape
+    return Side(
+        name="flux side",
+        shape=shape,
+        unknown=unknown,
+        size=size,
+        source=np.zeros((len(shape), 2, shape.shape[3])),
+        load=assembled_vector(local, unknown, size),
+        weight=discretisation.weight,
+        law=laws.of_flux_density,
+        density=laws.energy_density,
+        flattens=False,
+    )
+
+
+def turn_density(problem: FieldProblem, discretisation: Discretisation) -> Array:
+    """Return the turns per area of every element, 1/m2, (elements, 1)."""
+    mesh = discretisation.mesh
+    return np.array([problem.turns_per_area.get(name, 0.0) for name in mesh.names])[mesh.region][
+        :, None
+    ]
+
+
+def _free_unknowns(discretisation: Discretisation) -> tuple[Index, int]:
+    walls, basis = discretisation.mesh.walls, discretisation.basis
+    fixed_facets = np.concatenate([walls["far"], walls["tangential"]])
+    free = np.ones(basis.N, dtype=bool)
+    free[basis.get_dofs(fixed_facets).all()] = False
+    number = np.where(free, np.cumsum(free) - 1, -1)
+    return number[discretisation.element_dofs], int(free.sum())

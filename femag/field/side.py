@@ -1,0 +1,123 @@
+"""What the two sides share: a convex energy of a field that is affine in the unknowns."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.sparse import csc_matrix
+
+from femag.field.discretisation import assembled_matrix, assembled_vector
+
+Array = NDArray[np.float64]
+Index = NDArray[np.int64]
+Law = Callable[[Array], tuple[Array, Array]]
+
+
+@dataclass(frozen=True)
+class Side:
+    """A functional: integral of density(|field|) - current load . x.
+
+    The field is current source + S x.
+    On the flux side the field is B, its density w and the load that of the turns; on the
+    potential side the field is H, its density w', the source T, and there is no load.
+
+    Parameters
+    ----------
+    name : str
+        For messages.
+    shape : array, (elements, 6, 2, points)
+        Field of each local function.
+    unknown : int array, (elements, 6)
+        Unknown of each local function, -1 where it is fixed at zero.
+    size : int
+        Number of unknowns.
+    source : array, (elements, 2, points)
+        Field per ampere of the source.
+    load : array, (size,)
+        Load per ampere.
+    weight : array, (elements, points)
+        Volume weights, m3.
+    law : callable
+        Magnitudes to secant and tangent.
+    density : callable
+        Magnitudes to energy densities.
+    flattens : bool
+        Whether saturation lowers the tangent (B of H) or raises it (H of B).
+    """
+
+    name: str
+    shape: Array
+    unknown: Index
+    size: int
+    source: Array
+    load: Array
+    weight: Array
+    law: Law
+    density: Callable[[Array], Array]
+    flattens: bool
+
+    def field(self, x: Array, current: float) -> Array:
+        """Return the field at the quadrature points, (elements, 2, points)."""
+        local = np.append(x, 0.0)[self.unknown]
+        elements, _, _, points = self.shape.shape
+        own = (local[:, None, :] @ self.shape.reshape(elements, 6, -1)).reshape(-1, 2, points)
+        return own + current * self.source
+
+    def coefficients(self, field: Array) -> tuple[Array, Array]:
+        """Return secant and tangent at a field, (elements, points)."""
+        return self.law(np.hypot(field[:, 0], field[:, 1]))
+
+    def functional(self, x: Array, current: float) -> float:
+        """Return the functional's value, J."""
+        field = self.field(x, current)
+        stored = np.sum(self.weight * self.density(np.hypot(field[:, 0], field[:, 1])))
+        return float(stored - current * self.load @ x)
+
+    def gradient(self, field: Array, secant: Array, current: float) -> Array:
+        """Return the functional's gradient at a field with its secant, (size,)."""
+        return self.tested(field, secant) - current * self.load
+
+    def tested(self, field: Array, secant: Array) -> Array:
+        """Return the integral of secant field . shape, (size,)."""
+        elements = len(field)
+        weighted = (field * (self.weight * secant)[:, None]).reshape(elements, -1, 1)
+        local = self.shape.reshape(elements, 6, -1) @ weighted
+        return assembled_vector(local[..., 0], self.unknown, self.size)
+
+    def hessian(
+        self, field: Array, secant: Array, tangent: Array, toward: Array | None = None
+    ) -> csc_matrix:
+        """Return the functional's second derivative.
+
+        With `toward`, unit vectors or shorter, one of the two field directions in it is replaced
+        by them and the matrix symmetrised.
+        """
+        along = unit_vectors(field)
+        return assembled_matrix(
+            self.shape,
+            self.weight * secant,
+            self.weight * (tangent - secant),
+            (along if toward is None else toward, along),
+            self.unknown,
+            self.size,
+        )
+
+
+def linearised(
+    field: Array, secant: Array, tangent: Array, change: Array, toward: Array | None = None
+) -> Array:
+    """Return the change of the conjugate field (B for H, H for B) for a change of the field."""
+    along = unit_vectors(field)
+    share = (tangent - secant) * np.sum(along * change, axis=1)
+    return np.asarray(
+        secant[:, None] * change + share[:, None] * (along if toward is None else toward)
+    )
+
+
+def unit_vectors(field: Array) -> Array:
+    """Return the directions of a field (elements, 2, points); zero where it is zero."""
+    magnitude = np.hypot(field[:, 0], field[:, 1])
+    return np.asarray(field / np.maximum(magnitude, 1e-300)[:, None])
