@@ -1,0 +1,26 @@
+"""Quantities: what engineers read off the fields."""
+
+from femag.quantities.field_map import FieldMap, field_map, typical_peak
+from femag.quantities.fringing import core_coenergy_share, gap_factor, plain_gap_reluctance
+from femag.quantities.inductance import incremental_inductance, incremental_inductance_of_sides
+from femag.quantities.section_means import (
+    SectionMean,
+    flux_through_discs,
+    mean_flux_densities,
+    section_means,
+)
+
+__all__ = [
+    "FieldMap",
+    "SectionMean",
+    "core_coenergy_share",
+    "field_map",
+    "flux_through_discs",
+    "gap_factor",
+    "incremental_inductance",
+    "incremental_inductance_of_sides",
+    "mean_flux_densities",
+    "plain_gap_reluctance",
+    "section_means",
+    "typical_peak",
+]
