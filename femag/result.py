@@ -1,0 +1,184 @@
+"""The door: a design in, a result out."""
+
+from __future__ import annotations
+
+import platform
+import time
+from collections.abc import Callable
+from dataclasses import dataclass, field, replace
+from importlib.metadata import version
+
+from femag.design import Design, design_hash
+from femag.field.adapt import adapted_solution, inductance_bounds
+from femag.field.bounds import Bounds, FieldSolution
+from femag.field.problem import field_problem
+from femag.hand import HandEstimate, hand_estimates, plain_inductance
+from femag.quantities import (
+    SectionMean,
+    gap_factor,
+    incremental_inductance,
+    section_means,
+)
+
+LIBRARIES = ("gapfield", "numpy", "scipy", "scikit-fem", "gmsh")
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """A hand estimate beside the field.
+
+    Parameters
+    ----------
+    estimate : HandEstimate
+        Name, inductance (H), range and source of the formula.
+    error : float
+        Its inductance over the field's midpoint, less 1.
+    """
+
+    estimate: HandEstimate
+    error: float
+
+
+@dataclass(frozen=True)
+class Result:
+    """What the field says about a design at one current, with all that it rests on.
+
+    Parameters
+    ----------
+    design : Design
+        The design, with the current and the tolerance that were used.
+    inductance : Bounds
+        Energy inductance 2 W'/I^2, H; rigorous for linear materials, else up to quadrature.
+    coenergy : Bounds
+        Co-energy W', J.
+    flux_linkage_of_sides : tuple of float
+        Flux linkage in Wb from the flux side and from the potential side; the difference
+        estimates the error and bounds nothing.
+    incremental_inductance : float
+        d(flux linkage)/dI at the current, H, mean of both sides' tangent problems; an estimate.
+    plain_inductance : float
+        Reluctance network without fringing, H (energy inductance).
+    gap_factor : float or None
+        Plain gap reluctance over the reluctance that the field leaves to the gap; None without gap.
+    hand : tuple of Comparison
+        Every hand formula beside the field.
+    section_means : tuple of SectionMean
+        Mean flux density through cuts of the core, T, from the flux side.
+    unknowns, refinements : int
+        Unknowns of both sides on the last mesh; number of refinements.
+    seconds : float
+        Wall time of the solution.
+    versions : dict of str to str
+        Versions of this package, Python and the libraries behind the numbers.
+    design_hash : str
+        Digest of everything in the design that can move the result.
+    solution : FieldSolution or None
+        The fields; None when the result was read from a file.
+    """
+
+    design: Design
+    inductance: Bounds
+    coenergy: Bounds
+    flux_linkage_of_sides: tuple[float, float]
+    incremental_inductance: float
+    plain_inductance: float
+    gap_factor: float | None
+    hand: tuple[Comparison, ...]
+    section_means: tuple[SectionMean, ...]
+    unknowns: int
+    refinements: int
+    seconds: float
+    versions: dict[str, str]
+    design_hash: str
+    solution: FieldSolution | None = field(default=None, repr=False, compare=False)
+
+    @property
+    def current(self) -> float:
+        """Current in the driven windings, A."""
+        return self.design.current
+
+    @property
+    def flux_linkage(self) -> float:
+        """Flux linkage, Wb: mean of both sides."""
+        return sum(self.flux_linkage_of_sides) / 2
+
+    @property
+    def apparent_inductance(self) -> float:
+        """Flux linkage over current, H."""
+        return self.flux_linkage / self.current
+
+    @property
+    def al_value(self) -> float:
+        """Inductance over turns squared, H."""
+        return self.inductance.value / self.design.turns**2
+
+    @property
+    def fringing_factor(self) -> float:
+        """Inductance of the field over that of the network without fringing."""
+        return self.inductance.value / self.plain_inductance
+
+
+def solve(
+    design: Design,
+    current: float | None = None,
+    tolerance: float | None = None,
+    progress: Callable[[FieldSolution], None] | None = None,
+) -> Result:
+    """Return inductance between bounds, and everything that goes with it, for one current.
+
+    Parameters
+    ----------
+    design : Design
+        What to solve.
+    current : float, optional
+        A; the design's own when left out.
+    tolerance : float, optional
+        Wanted half width between the bounds over the value; the design's own when left out.
+    progress : callable, optional
+        Called with the field solution of every refinement.
+
+    Raises
+    ------
+    InputError
+        If current or tolerance cannot be used.
+    ToleranceError
+        If the tolerance is out of reach; it holds the bracket that was reached.
+    NumericalError
+        If a mesh or a system fails.
+    """
+    started = time.perf_counter()
+    design = replace(
+        design,
+        current=design.current if current is None else current,
+        tolerance=design.tolerance if tolerance is None else tolerance,
+    )
+    solution, refinements = adapted_solution(
+        field_problem(design), design.current, design.tolerance, progress
+    )
+    inductance = inductance_bounds(solution)
+    hand_input = (design.core, design.gaps, design.turns, design.current, design.material)
+    return Result(
+        design=design,
+        inductance=inductance,
+        coenergy=solution.coenergy,
+        flux_linkage_of_sides=solution.flux_linkage_of_sides,
+        incremental_inductance=incremental_inductance(solution),
+        plain_inductance=plain_inductance(*hand_input),
+        gap_factor=gap_factor(design, solution),
+        hand=tuple(
+            Comparison(estimate, estimate.inductance / inductance.value - 1.0)
+            for estimate in hand_estimates(*hand_input)
+        ),
+        section_means=section_means(design, solution),
+        unknowns=solution.unknowns,
+        refinements=refinements,
+        seconds=time.perf_counter() - started,
+        versions=library_versions(),
+        design_hash=design_hash(design),
+        solution=solution,
+    )
+
+
+def library_versions() -> dict[str, str]:
+    """Return the versions of Python and of the libraries behind the numbers."""
+    return {"python": platform.python_version()} | {name: version(name) for name in LIBRARIES}
