@@ -1,0 +1,351 @@
+"""Design files: TOML in and out, checked key by key.
+
+The tables below are the file format; the description of each key says what it accepts and is
+what messages print.
+"""
+
+from __future__ import annotations
+
+import difflib
+import tomllib
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import contextmanager
+from dataclasses import asdict
+from functools import partial
+from pathlib import Path
+from typing import Annotated, Any, Literal, get_args
+
+import tomli_w
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationError
+from pydantic_core import PydanticCustomError
+
+from femag.design import Design
+from femag.errors import InputError, entry_key
+from femag.geometry import Block, Gap, PotCore, Winding
+from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
+from femag.units import ACCEPTED, exact_text, si_value
+
+Document = dict[str, Any]
+
+
+def _read_quantity(unit: str, text: object) -> float:
+    try:
+        return si_value(text, unit)
+    except InputError as error:
+        raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
+
+
+Length = Annotated[
+    float, BeforeValidator(partial(_read_quantity, "m")), Field(description=ACCEPTED["m"])
+]
+Current = Annotated[
+    float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
+]
+FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
+
+
+class _Table(BaseModel):
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
+
+
+class MaterialTable(_Table):
+    """A magnetisation curve by its parameters."""
+
+    permeability: float = Field(description="initial relative permeability, such as 2000")
+    saturation: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    exponent: float | None = Field(default=None, description="knee exponent, a number from 1 to 20")
+
+
+class PotDimensionsTable(_Table):
+    """Dimensions of the assembled set."""
+
+    outer_diameter: Length
+    window_diameter: Length
+    post_diameter: Length
+    height: Length
+    window_height: Length
+    hole_diameter: Length = 0.0
+
+
+class CoreTable(_Table):
+    """The core."""
+
+    family: Literal["pot"] = Field(description="'pot'")
+    material: MaterialTable = Field(
+        description="a table, such as { permeability = 2000 } or "
+        "{ permeability = 2000, saturation = '0.45 T', exponent = 2 }"
+    )
+    dimensions: PotDimensionsTable = Field(description="a table of lengths, [core.dimensions]")
+
+
+class GapTable(_Table):
+    """One air gap."""
+
+    length: Length
+    leg: Literal["post", "all"] = Field(default="post", description="'post' or 'all'")
+
+
+class BlockTable(_Table):
+    """A rectangle of copper."""
+
+    inner_radius: Length
+    outer_radius: Length
+    bottom: Length
+    top: Length
+
+
+class WindingTable(_Table):
+    """One winding."""
+
+    turns: int = Field(description="a whole number of at least 1")
+    name: str = Field(default="main", description="a name in quotes")
+    block: BlockTable | None = Field(
+        default=None, description="a table of lengths, [winding.block]"
+    )
+
+
+class DriveTable(_Table):
+    """What flows."""
+
+    current: Current = 1.0
+    winding: list[str] = Field(default=[], description="a list of winding names, driven in series")
+
+
+class SolveTable(_Table):
+    """How exactly."""
+
+    tolerance: float = Field(default=1e-3, description="a number such as 1e-3")
+
+
+class DesignTable(_Table):
+    """The whole file."""
+
+    title: str = Field(default="", description="text in quotes")
+    core: CoreTable = Field(description="a table, [core]")
+    gap: list[GapTable] = Field(default=[], description="tables headed [[gap]]")
+    winding: list[WindingTable] = Field(description="tables headed [[winding]]")
+    drive: DriveTable = Field(default=DriveTable(), description="a table, [drive]")
+    solve: SolveTable = Field(default=SolveTable(), description="a table, [solve]")
+
+
+def read_design(path: str | Path) -> Design:
+    """Return the design that a TOML file describes.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be read or used; it names the file, the key and the value.
+    """
+    try:
+        text = Path(path).read_text(encoding="utf-8")
+    except UnicodeDecodeError as error:
+        raise InputError("not UTF-8 text", file=str(path), accepted="a TOML file") from error
+    except OSError as error:
+        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
+    return design_from_toml(text, str(path))
+
+
+def design_from_toml(text: str, file: str | None = None) -> Design:
+    """Return the design that a TOML text describes; `file` is for messages.
+
+    Raises
+    ------
+    InputError
+        If the text cannot be used.
+    """
+    try:
+        document = tomllib.loads(text)
+    except tomllib.TOMLDecodeError as error:
+        problem = " ".join(str(error).split())
+        raise InputError(f"not valid TOML ({problem})", file=file) from error
+    return design_from_document(document, file)
+
+
+def design_from_document(document: Mapping[str, Any], file: str | None = None) -> Design:
+    """Return the design that a nested mapping describes, quantities being texts with units.
+
+    Raises
+    ------
+    InputError
+        If a key or a value cannot be used.
+    """
+    try:
+        return _design(DesignTable.model_validate(document))
+    except ValidationError as error:
+        raise _first_error(error, file) from error
+    except InputError as error:
+        value = written_value(document, error.key)
+        raise InputError(
+            error.problem,
+            key=error.key,
+            value=error.value if value is None else value,
+            accepted=error.accepted,
+            file=file,
+        ) from error
+
+
+def design_document(design: Design) -> Document:
+    """Return the nested mapping that `design_from_document` turns into an equal design."""
+    lengths = {name: exact_text(value, "m", "m") for name, value in asdict(design.core).items()}
+    document: Document = {
+        "title": design.title,
+        "core": {
+            "family": "pot",
+            "material": _material_document(design.material),
+            "dimensions": lengths,
+        },
+        "gap": [{"leg": g.leg, "length": exact_text(g.length, "m", "m")} for g in design.gaps],
+        "winding": [_winding_document(winding) for winding in design.windings],
+        "drive": {"current": exact_text(design.current, "A")},
+        "solve": {"tolerance": float(design.tolerance)},
+    }
+    if design.driven:
+        document["drive"]["winding"] = list(design.driven)
+    return document
+
+
+def design_toml(design: Design) -> str:
+    """Return the design file of a design."""
+    return tomli_w.dumps(design_document(design))
+
+
+def written_value(document: Mapping[str, Any], key: str | None) -> object:
+    """Return what stands at a dotted key; in a list the first entry is meant unless numbered."""
+    found: Any = document
+    for part in (key or "").split("."):
+        if isinstance(found, list) and part.isdigit() and int(part) < len(found):
+            found = found[int(part)]
+            continue
+        if isinstance(found, list) and found:
+            found = found[0]
+        if not isinstance(found, Mapping) or part not in found:
+            return None
+        found = found[part]
+    return None if isinstance(found, Mapping | list) else found
+
+
+def _design(table: DesignTable) -> Design:
+    with _keyed("permeability saturation exponent", "core.material."):
+        material = _curve(table.core.material)
+    return Design(
+        core=PotCore(**table.core.dimensions.model_dump()),
+        windings=tuple(_winding(entry, index) for index, entry in enumerate(table.winding)),
+        material=material,
+        gaps=tuple(_gap(entry, index) for index, entry in enumerate(table.gap)),
+        current=table.drive.current,
+        tolerance=table.solve.tolerance,
+        driven=tuple(table.drive.winding),
+        title=table.title,
+    )
+
+
+def _curve(table: MaterialTable) -> MagnetisationCurve:
+    if table.saturation is not None:
+        return FroehlichCurve(table.permeability, table.saturation, table.exponent or 1.0)
+    if table.exponent is not None:
+        raise InputError(
+            "an exponent needs a saturation", key="exponent", value=table.exponent,
+            accepted="saturation = '0.45 T' beside it, or no exponent",
+        )  # fmt: skip
+    return LinearCurve(table.permeability)
+
+
+def _gap(table: GapTable, index: int) -> Gap:
+    with _renumbered("gap", index):
+        return Gap(table.length, table.leg)
+
+
+def _winding(table: WindingTable, index: int) -> Winding:
+    with _renumbered("winding", index):
+        block = None if table.block is None else Block(**table.block.model_dump())
+        return Winding(table.turns, block, table.name)
+
+
+def _material_document(curve: MagnetisationCurve) -> Document:
+    match curve:
+        case LinearCurve(permeability):
+            return {"permeability": float(permeability)}
+        case FroehlichCurve(permeability, saturation, exponent):
+            return {
+                "permeability": float(permeability),
+                "saturation": exact_text(saturation, "T"),
+                "exponent": float(exponent),
+            }
+        case _:
+            raise TypeError(f"{type(curve).__name__} has no place in a design file")
+
+
+def _winding_document(winding: Winding) -> Document:
+    document: Document = {"name": winding.name, "turns": int(winding.turns)}
+    if winding.block is not None:
+        block = asdict(winding.block)
+        document["block"] = {name: exact_text(value, "m", "m") for name, value in block.items()}
+    return document
+
+
+@contextmanager
+def _keyed(keys: str, prefix: str) -> Iterator[None]:
+    """Put a prefix before the key of an error that names one of `keys`."""
+    try:
+        yield
+    except InputError as error:
+        if error.key not in keys.split():
+            raise
+        raise InputError(
+            error.problem, key=prefix + error.key, value=error.value, accepted=error.accepted
+        ) from error
+
+
+@contextmanager
+def _renumbered(name: str, index: int) -> Iterator[None]:
+    """Say in an error which entry of the list `name` it is about."""
+    try:
+        yield
+    except InputError as error:
+        key = entry_key(name, index) + (error.key or name).removeprefix(name)
+        raise InputError(
+            error.problem, key=key, value=error.value, accepted=error.accepted
+        ) from error
+
+
+def _first_error(error: ValidationError, file: str | None) -> InputError:
+    """Return the first of a validation's errors as one line."""
+    first = min(error.errors(include_url=False), key=_unknown_keys_first)
+    location = first["loc"]
+    key = _dotted(location)
+    if first["type"] == "extra_forbidden":
+        known = _fields_at(location[:-1])
+        near = difflib.get_close_matches(str(location[-1]), known, n=1, cutoff=0.5)
+        accepted = f"nearest known key: {near[0]!r}" if near else ", ".join(known)
+        return InputError("unknown key", key=key, accepted=accepted, file=file)
+    description = _fields_at(location[:-1])[str(location[-1])] if location else "a table"
+    if first["type"] == "missing":
+        return InputError("missing", key=key, accepted=description, file=file)
+    problem = first["msg"] if first["type"] == "quantity" else "not usable"
+    return InputError(problem, key=key, value=first["input"], accepted=description, file=file)
+
+
+def _unknown_keys_first(error: Mapping[str, Any]) -> int:
+    """A misspelt key is also a missing one: name the misspelling."""
+    return 0 if error["type"] == "extra_forbidden" else 1
+
+
+def _dotted(location: Sequence[int | str]) -> str:
+    key = ""
+    for part in location:
+        key = entry_key(key, part) if isinstance(part, int) else f"{key}.{part}".lstrip(".")
+    return key
+
+
+def _fields_at(location: Sequence[int | str]) -> dict[str, str]:
+    """Return the keys of the table at a location, each with what it accepts."""
+    table: Any = DesignTable
+    for part in location:
+        if isinstance(part, str):
+            table = _table_in(table.model_fields[part].annotation)
+    return {name: field.description or "" for name, field in table.model_fields.items()}
+
+
+def _table_in(annotation: Any) -> Any:
+    """Return the table class inside ``list[Table]`` or ``Table | None``."""
+    return next((part for part in get_args(annotation) if part is not type(None)), annotation)
