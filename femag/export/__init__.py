@@ -1,0 +1,1 @@
+"""Files that hold results: whole or not there at all."""

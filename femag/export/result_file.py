@@ -1,0 +1,166 @@
+"""Result files: JSON out and in. The tables below are the format."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any, Literal
+
+from pydantic import BaseModel, ConfigDict, ValidationError
+
+from femag.design_file import design_document, design_from_document
+from femag.errors import InputError
+from femag.export.whole_file import whole_file
+from femag.field.bounds import Bounds
+from femag.hand import HandEstimate
+from femag.quantities import SectionMean
+from femag.result import Comparison, Result
+
+FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
+
+
+class _Entry(BaseModel):
+    model_config = ConfigDict(frozen=True, allow_inf_nan=False)
+
+
+class BoundsEntry(_Entry):
+    """A quantity between two bounds, SI."""
+
+    lower: float
+    value: float
+    upper: float
+
+
+class HandEntry(_Entry):
+    """A hand formula beside the field: H, error as a share, validity and source."""
+
+    name: str
+    inductance: float
+    error: float
+    in_range: bool
+    range: str
+    source: str
+
+
+class SectionMeanEntry(_Entry):
+    """Mean flux density (T) through one cut (area in m2)."""
+
+    name: str
+    area: float
+    flux_density: float
+
+
+class ResultDocument(_Entry):
+    """Everything in a result but the fields, SI."""
+
+    format: Literal["gapfield result 1"]
+    design: dict[str, Any]
+    design_hash: str
+    versions: dict[str, str]
+    current: float
+    tolerance: float
+    inductance: BoundsEntry
+    apparent_inductance: float
+    incremental_inductance: float
+    flux_linkage: float
+    flux_linkage_of_sides: tuple[float, float]
+    coenergy: BoundsEntry
+    fringing_factor: float
+    gap_factor: float | None
+    plain_inductance: float
+    section_means: list[SectionMeanEntry]
+    hand: list[HandEntry]
+    unknowns: int
+    refinements: int
+    seconds: float
+
+
+def result_json(result: Result) -> str:
+    """Return a result as JSON text, SI units throughout."""
+    return _document(result).model_dump_json(indent=2) + "\n"
+
+
+def write_result(result: Result, path: str | Path) -> None:
+    """Write a result as JSON: the file is complete or not there.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be written.
+    """
+    text = result_json(result)
+    with whole_file(path) as temporary:
+        temporary.write_text(text, encoding="utf-8")
+
+
+def read_result(path: str | Path) -> Result:
+    """Return the result that a JSON file holds, without its fields.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be read or is no result of this program.
+    """
+    try:
+        document = ResultDocument.model_validate_json(Path(path).read_bytes())
+    except OSError as error:
+        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
+    except ValidationError as error:
+        first = error.errors(include_url=False)[0]
+        raise InputError(
+            f"no result of this program ({first['msg']})",
+            key=".".join(map(str, first["loc"])) or None,
+            accepted="JSON as written by 'gapfield solve --json'",
+            file=str(path),
+        ) from error
+    return _result(document, str(path))
+
+
+def _document(result: Result) -> ResultDocument:
+    return ResultDocument(
+        format=FORMAT,
+        design=design_document(result.design),
+        design_hash=result.design_hash,
+        versions=result.versions,
+        current=result.current,
+        tolerance=result.design.tolerance,
+        inductance=_bounds_entry(result.inductance),
+        apparent_inductance=result.apparent_inductance,
+        incremental_inductance=result.incremental_inductance,
+        flux_linkage=result.flux_linkage,
+        flux_linkage_of_sides=result.flux_linkage_of_sides,
+        coenergy=_bounds_entry(result.coenergy),
+        fringing_factor=result.fringing_factor,
+        gap_factor=result.gap_factor,
+        plain_inductance=result.plain_inductance,
+        section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
+        hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
+        unknowns=result.unknowns,
+        refinements=result.refinements,
+        seconds=result.seconds,
+    )
+
+
+def _bounds_entry(bounds: Bounds) -> BoundsEntry:
+    return BoundsEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper)
+
+
+def _result(document: ResultDocument, file: str) -> Result:
+    return Result(
+        design=design_from_document(document.design, file),
+        inductance=Bounds(document.inductance.lower, document.inductance.upper, "H"),
+        coenergy=Bounds(document.coenergy.lower, document.coenergy.upper, "J"),
+        flux_linkage_of_sides=document.flux_linkage_of_sides,
+        incremental_inductance=document.incremental_inductance,
+        plain_inductance=document.plain_inductance,
+        gap_factor=document.gap_factor,
+        hand=tuple(
+            Comparison(HandEstimate(**entry.model_dump(exclude={"error"})), entry.error)
+            for entry in document.hand
+        ),
+        section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
+        unknowns=document.unknowns,
+        refinements=document.refinements,
+        seconds=document.seconds,
+        versions=document.versions,
+        design_hash=document.design_hash,
+    )
