@@ -1,0 +1,6 @@
+"""Figures: each function takes an Axes, draws on it and returns it."""
+
+from femag.plot.figure_file import write_figure
+from femag.plot.flux_map import flux_map, gap_map
+
+__all__ = ["flux_map", "gap_map", "write_figure"]

@@ -1,0 +1,37 @@
+"""Figures as files, drawn without a screen."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from matplotlib.axes import Axes
+from matplotlib.backends.backend_agg import FigureCanvasAgg
+from matplotlib.figure import Figure
+
+from femag.export.whole_file import whole_file
+
+RESOLUTION = 150
+"""Dots per inch."""
+
+
+def write_figure(draw: Callable[[Axes], Axes], path: str | Path) -> None:
+    """Draw on the one Axes of a new figure and write it; the file is complete or not there.
+
+    Parameters
+    ----------
+    draw : callable
+        Draws on the Axes that it is given.
+    path : path
+        File with the ending of a format, such as ``.png`` or ``.svg``.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be written.
+    """
+    figure = Figure(figsize=(6.4, 6.4), layout="constrained")
+    FigureCanvasAgg(figure)
+    draw(figure.add_subplot())
+    with whole_file(path) as temporary:
+        figure.savefig(temporary, dpi=RESOLUTION)
