@@ -1,0 +1,133 @@
+"""The answer on the terminal: at most 80 columns, readable without colour."""
+
+from __future__ import annotations
+
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+from femag.design import Design
+from femag.geometry import gap_length
+from femag.result import Result
+from femag.units import with_common_unit, with_unit
+
+WIDTH = 80
+HAND_NOTE = (
+    "Errors are against the middle of the bounds. leg: post diameter, ring thickness; "
+    "G: window height."
+)
+
+
+def print_answer(result: Result, console: Console) -> None:
+    """Print what the field says about a design, the hand formulas beside it, and cautions."""
+    design = result.design
+    lines: list[Text | Table | str] = []
+    if design.title:
+        lines.append(Text(design.title, style="bold"))
+    lines += [_described(design), "", _inductances(result), "", _flux_densities(result), ""]
+    lines += [_hand_formulas(result), Text(HAND_NOTE), ""]
+    lines += [Text(_provenance(result)), "", Text(_cautions(result))]
+    for line in lines:
+        console.print(line, width=min(console.width, WIDTH), highlight=False)
+
+
+def _described(design: Design) -> Text:
+    core = design.core
+    post, spacer = gap_length(design.gaps, "post"), gap_length(design.gaps, "all")
+    gaps = [f"{1e3 * post:g} mm gap in the post"] if post else []
+    gaps += [f"{1e3 * spacer:g} mm spacer in all legs"] if spacer else []
+    parts = [
+        f"pot core {1e3 * core.outer_diameter:g} x {1e3 * core.height:g} mm",
+        *(gaps or ["no gap"]),
+        f"{design.turns} turns",
+        f"{design.current:g} A",
+    ]
+    return Text(f"{', '.join(parts)}\n{design.material.label}")
+
+
+def _inductances(result: Result) -> Table:
+    bounds = result.inductance
+    middle, interval = str(bounds).split(" (")
+    turns_squared = result.design.turns**2
+    table = Table.grid(padding=(0, 2))
+    table.add_column(no_wrap=True)
+    table.add_column(justify="right", no_wrap=True)
+    table.add_column()
+    half_width = f"half width {100 * bounds.relative_half_width:.2g} %"
+    table.add_row(
+        Text("inductance", style="bold"),
+        Text(middle, style="bold"),
+        f"between {interval.rstrip(')').replace(' .. ', ' and ')} ({half_width})",
+    )
+    apparent, incremental, plain = with_common_unit(
+        (result.apparent_inductance, result.incremental_inductance, result.plain_inductance), "H"
+    )
+    table.add_row("  apparent", apparent, "flux linkage over current; an estimate")
+    table.add_row(
+        "  incremental", incremental, f"small changes at {result.current:g} A; an estimate"
+    )
+    table.add_row(
+        "AL value", with_unit(bounds.value / turns_squared, "H"), "inductance over turns squared"
+    )
+    table.add_row(
+        "fringing factor", f"{result.fringing_factor:.4f}", f"over {plain} without fringing"
+    )
+    if result.gap_factor is not None:
+        table.add_row(
+            "gap factor", f"{result.gap_factor:.4f}", "plain gap reluctance over the field's"
+        )
+    return table
+
+
+def _flux_densities(result: Result) -> Table:
+    table = _columns("mean flux density", ("T", "right"), ("section, mm2", "right"))
+    for mean in result.section_means:
+        table.add_row(mean.name, f"{mean.flux_density:.4f}", f"{1e6 * mean.area:.1f}")
+    return table
+
+
+def _hand_formulas(result: Result) -> Table:
+    table = _columns(
+        "hand formula",
+        ("inductance", "right"),
+        ("error", "right"),
+        ("inside", "left"),
+        ("range", "left"),
+    )
+    inductances = with_common_unit(
+        (result.inductance.value, *(row.estimate.inductance for row in result.hand)), "H"
+    )
+    for row, inductance in zip(result.hand, inductances[1:], strict=True):
+        estimate = row.estimate
+        inside = "yes" if estimate.in_range else "no"
+        table.add_row(estimate.name, inductance, f"{row.error:+.1%}", inside, estimate.range)
+    return table
+
+
+def _columns(first: str, *others: tuple[str, str]) -> Table:
+    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
+    table.add_column(first, min_width=20)
+    for name, justify in others:
+        table.add_column(name, justify="right" if justify == "right" else "left", overflow="fold")
+    return table
+
+
+def _provenance(result: Result) -> str:
+    rest = (
+        "The bounds are rigorous for this straight-sided model."
+        if result.design.material.is_linear
+        else "The bounds hold up to the quadrature of the energy densities."
+    )
+    return (
+        f"{result.unknowns} unknowns, {result.refinements} refinements, {result.seconds:.2f} s. "
+        f"{rest} The model is axisymmetric, without slots for the leads."
+    )
+
+
+def _cautions(result: Result) -> str:
+    stored = with_unit(result.inductance.value * result.current**2 / 2, "J", 2)
+    return (
+        f"Caution: about {stored} is stored at {result.current:g} A and becomes a voltage when "
+        "the current is cut. Check insulation from the mains, creepage and hot parts by the codes "
+        "that apply to you, with licensed practice."
+    )

@@ -1,0 +1,59 @@
+"""Imports run one way: each layer knows only those before it."""
+
+import ast
+from pathlib import Path
+
+import pytest
+
+import femag
+
+ROOT = Path(femag.__file__).parent
+LAYERS = (
+    ("units", "errors"),
+    ("materials", "geometry"),
+    ("hand", "design", "mesh"),
+    ("design_file",),
+    ("field",),
+    ("quantities",),
+    ("result",),
+    ("export",),
+    ("plot",),
+    ("answer",),
+    ("cli",),
+)
+DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}
+MODULES = sorted(path for path in ROOT.rglob("*.py") if path != ROOT / "__init__.py")
+
+
+def subject(path: Path) -> str:
+    return path.relative_to(ROOT).parts[0].removesuffix(".py")
+
+
+def imported_subjects(path: Path) -> set[str]:
+    found = set()
+    for node in ast.walk(ast.parse(path.read_text(encoding="utf-8"))):
+        names = [alias.name for alias in node.names] if isinstance(node, ast.Import) else []
+        if isinstance(node, ast.ImportFrom):
+            assert node.level == 0, f"{path}: relative import"
+            names = [node.module or ""]
+        found |= {name.split(".")[1] for name in names if name.startswith("femag.")}
+    return found - {subject(path)}
+
+
+@pytest.mark.parametrize("path", MODULES, ids=lambda path: str(path.relative_to(ROOT)))
+def test_no_import_runs_back(path: Path) -> None:
+    own = DEPTH[subject(path)]
+    same_layer = set(LAYERS[own])
+    for other in imported_subjects(path):
+        assert DEPTH[other] < own or other in same_layer, f"{path.name} imports {other}"
+
+
+def test_one_module_touches_gmsh() -> None:
+    users = [path.name for path in MODULES if "import gmsh" in path.read_text(encoding="utf-8")]
+    assert users == ["mesh.py"]
+
+
+def test_computing_never_plots() -> None:
+    for path in MODULES:
+        if "matplotlib" in path.read_text(encoding="utf-8"):
+            assert subject(path) == "plot"

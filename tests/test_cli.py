@@ -1,0 +1,196 @@
+import json
+import os
+import pty
+import signal
+import subprocess
+import sys
+import time
+from importlib.resources import files
+from pathlib import Path
+
+import pytest
+
+import femag as fm
+from femag import cli
+from femag.field import adapt
+
+DEMO = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
+
+
+@pytest.fixture
+def design(tmp_path: Path) -> Path:
+    file = tmp_path / "design.toml"
+    file.write_text(DEMO)
+    return file
+
+
+def run(capsys: pytest.CaptureFixture[str], *arguments: object) -> tuple[int, str, str]:
+    code = cli.main([str(argument) for argument in arguments])
+    captured = capsys.readouterr()
+    return code, captured.out, captured.err
+
+
+def test_solve_prints_the_answer_in_80_columns(
+    design: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    code, out, err = run(capsys, "solve", design)
+    assert (code, err) == (0, "")
+    assert max(len(line) for line in out.splitlines()) <= 80
+    assert "\x1b" not in out
+    result = fm.solve(fm.read_design(design))
+    lower, upper = str(result.inductance).split("(")[1].rstrip(")").split(" .. ")
+    assert f"between {lower} and {upper}" in out
+    for text in ("apparent", "incremental", "fringing factor", "refinements", "Caution"):
+        assert text in out
+    for row in result.hand:
+        (line,) = [line for line in out.splitlines() if line.startswith(row.estimate.name + " ")]
+        assert f"{row.error:+.1%}" in line
+        assert (" yes " if row.estimate.in_range else " no ") in line
+    for mean in result.section_means:
+        assert f"{mean.flux_density:.4f}" in out
+
+
+def test_json_on_standard_output_is_nothing_but_json(
+    design: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    code, out, _ = run(capsys, "solve", design, "--json", "-", "--current", "500 mA")
+    document = json.loads(out)
+    assert code == 0
+    assert document["current"] == 0.5
+    assert document["inductance"]["lower"] < document["inductance"]["upper"]
+
+
+def test_out_writes_json_and_two_figures(
+    design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder = tmp_path / "deep" / "answer"
+    code, out, _ = run(capsys, "solve", design, "--out", folder, "--json", tmp_path / "r.json")
+    assert code == 0
+    assert sorted(file.name for file in folder.iterdir()) == [
+        "gap.png",
+        "result.json",
+        "section.png",
+    ]
+    assert str(folder) in out
+    one, two = fm.read_result(folder / "result.json"), fm.read_result(tmp_path / "r.json")
+    assert one == two
+
+
+def test_demo_leaves_a_design_to_start_from(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    code, out, _ = run(capsys, "demo", "--out", tmp_path / "demo")
+    assert code == 0
+    assert "(invented)" in out
+    design = fm.read_design(tmp_path / "demo" / "design.toml")
+    assert fm.read_result(tmp_path / "demo" / "result.json").design == design
+
+
+@pytest.mark.parametrize(
+    ("arguments", "text"),
+    [
+        (["solve", "none.toml"], "none.toml: cannot be read (No such file or directory)"),
+        (["solve", "{design}", "--current", "3"], "--current = '3': the unit is missing"),
+        (["solve", "{design}", "--current", "3 mm"], "'mm' is not a unit of this quantity"),
+        (["solve", "{design}", "--json", "{folder}/no/r.json"], "cannot be written"),
+        (["solve", "{design}", "--out", "{design}"], "cannot be made a folder"),
+        (["solve"], "Missing argument"),
+        (["sovle", "{design}"], "sovle"),
+        (["solve", "{design}", "--jason", "-"], "--jason"),
+    ],
+)
+def test_bad_calls_get_one_line_and_exit_code_2(
+    design: Path, capsys: pytest.CaptureFixture[str], arguments: list[str], text: str
+) -> None:
+    filled = [part.format(design=design, folder=design.parent) for part in arguments]
+    code, out, err = run(capsys, *filled)
+    assert (code, out) == (2, "")
+    assert err.count("\n") == 1
+    assert err.startswith("gapfield: ")
+    assert text in err
+    assert list(design.parent.iterdir()) == [design]
+
+
+def test_a_bad_design_leaves_nothing_behind(
+    design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    design.write_text(DEMO.replace('length = "0.6 mm"', 'length = "60 mm"'))
+    code, out, err = run(
+        capsys, "solve", design, "--json", tmp_path / "r.json", "--out", tmp_path / "o"
+    )
+    assert (code, out) == (2, "")
+    assert err == (
+        f"gapfield: {design}: gap.length = '60 mm': the gap is longer than the post; "
+        "accepted: less than the window height, 13.2 mm\n"
+    )
+    assert list(tmp_path.iterdir()) == [design]
+
+
+def test_a_tolerance_out_of_reach_exits_with_3_and_its_bracket(
+    design: Path,
+    tmp_path: Path,
+    capsys: pytest.CaptureFixture[str],
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr(adapt, "MAXIMUM_UNKNOWNS", 4_000)
+    design.write_text(DEMO.replace("tolerance = 1e-3", "tolerance = 1e-6"))
+    code, out, err = run(capsys, "solve", design, "--json", tmp_path / "r.json")
+    assert (code, out) == (3, "")
+    assert err.count("\n") == 1
+    assert "tolerance 1e-06 not reached" in err
+    assert "uH (" in err
+    assert list(tmp_path.iterdir()) == [design]
+
+
+def test_help_and_version_leave_with_0(capsys: pytest.CaptureFixture[str]) -> None:
+    for arguments in ([], ["--help"], ["solve", "--help"], ["demo", "--help"], ["--version"]):
+        code, out, err = run(capsys, *arguments)
+        assert (code, err) == (0, "")
+        assert out.strip()
+
+
+def test_help_imports_no_library_behind_the_numbers() -> None:
+    code = (
+        "import sys; from femag.cli import main; main(['--help']); "
+        "print(sorted({'numpy', 'gmsh', 'skfem', 'matplotlib', 'pint', 'pydantic', 'scipy'} "
+        "& set(sys.modules)))"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert done.stdout.splitlines()[-1] == "[]"
+
+
+def slow_run(design: Path, stderr: int) -> subprocess.Popen[str]:
+    """Start a solution that takes several seconds."""
+    design.write_text(DEMO.replace("tolerance = 1e-3", "tolerance = 1e-6"))
+    return subprocess.Popen(
+        [sys.executable, "-m", "femag.cli", "solve", str(design), "--json", "r.json"],
+        stdout=subprocess.PIPE,
+        stderr=stderr,
+        text=True,
+        cwd=design.parent,
+        env=os.environ | {"TERM": "xterm", "COLUMNS": "80"},
+    )
+
+
+def test_interrupt_ends_cleanly(design: Path) -> None:
+    process = slow_run(design, subprocess.PIPE)
+    time.sleep(2.0)
+    process.send_signal(signal.SIGINT)
+    out, err = process.communicate(timeout=20)
+    assert (process.returncode, out, err) == (130, "", "gapfield: stopped\n")
+    assert list(design.parent.iterdir()) == [design]
+
+
+def test_progress_shows_on_a_terminal(design: Path) -> None:
+    terminal, ours = pty.openpty()
+    process = slow_run(design, ours)
+    os.close(ours)
+    shown = b""
+    while b"unknowns" not in shown:
+        try:
+            shown += os.read(terminal, 4096)
+        except OSError:
+            break
+    process.kill()
+    process.communicate()
+    assert b"uH (" in shown
