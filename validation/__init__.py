@@ -1,0 +1,1 @@
+"""Validation: outside references beside what Gapfield makes of them, one folder a reference."""

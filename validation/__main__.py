@@ -1,0 +1,48 @@
+"""Print the validation table: ``python -m validation``, exit code 0 if every row passes."""
+
+from __future__ import annotations
+
+import importlib
+from collections.abc import Iterator
+
+from validation.rows import Row
+from validation.table import HEADER, LEGEND, row_line
+
+FOLDERS = (
+    "uniform_field",
+    "air_coils",
+    "sphere",
+    "nonlinear_pot",
+    "round_post_fringing",
+    "finite_post",
+    "pot_core_26_16",
+)
+"""In order of what they rest on: closed forms first."""
+
+
+def folder_rows(folder: str) -> tuple[Row, ...]:
+    """Return the rows of a folder; this solves its problems."""
+    rows: tuple[Row, ...] = importlib.import_module(f"validation.{folder}.run").rows()
+    return rows
+
+
+def printed_rows() -> Iterator[Row]:
+    """Print the table folder by folder and yield its rows."""
+    for folder in FOLDERS:
+        print(f"\n{folder}\n{HEADER}")
+        for row in folder_rows(folder):
+            print(row_line(row), flush=True)
+            yield row
+
+
+def main() -> int:
+    """Print the whole table and return the exit code."""
+    print(LEGEND)
+    rows = tuple(printed_rows())
+    failed = [f"{row.case}, {row.quantity}" for row in rows if not row.passed]
+    print(f"\n{len(rows)} rows, {len(failed)} failed" + "".join(f"\n  {name}" for name in failed))
+    return 1 if failed else 0
+
+
+if __name__ == "__main__":
+    raise SystemExit(main())

@@ -1,0 +1,1 @@
+"""Air coils of rectangular section in open space: self and mutual inductance."""

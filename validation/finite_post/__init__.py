@@ -1,0 +1,1 @@
+"""A gapped post of finite permeability between ideal plates, linear and saturating."""
