@@ -1,0 +1,68 @@
+"""What the documents say is run and compared."""
+
+import re
+from pathlib import Path
+
+import pytest
+
+from femag.design_file import DesignTable
+from femag.hand import FORMULAS
+
+ROOT = Path(__file__).parents[1]
+
+
+def python_blocks(name: str) -> list[str]:
+    text = (ROOT / name).read_text(encoding="utf-8")
+    return re.findall(r"```python\n(.*?)```", text, re.DOTALL)
+
+
+@pytest.mark.parametrize("name", ["README.md", "docs/guide.md"])
+def test_python_in_a_document_runs_and_prints_what_it_says(
+    name: str,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    names: dict[str, object] = {}
+    for block in python_blocks(name):
+        exec(compile(block, name, "exec"), names)
+    printed = capsys.readouterr().out
+    assert printed
+    if name == "docs/guide.md":
+        assert printed in (ROOT / name).read_text(encoding="utf-8")
+    assert any(file.suffix in (".png", ".svg") for file in tmp_path.iterdir())
+
+
+def test_every_key_of_the_design_file_is_documented() -> None:
+    text = (ROOT / "docs/files-and-commands.md").read_text(encoding="utf-8")
+    schema = DesignTable.model_json_schema()
+    tables = [schema, *schema["$defs"].values()]
+    for key in {key for table in tables for key in table["properties"]}:
+        assert re.search(rf"[`.\[ ]{key}\b", text), key
+
+
+def test_every_hand_formula_is_documented_with_its_range() -> None:
+    text = (ROOT / "docs/hand-formulas.md").read_text(encoding="utf-8")
+    for formula in FORMULAS:
+        assert f"| {formula.name} |" in text
+
+
+def test_readme_has_two_set_up_commands_and_ci_runs_the_second() -> None:
+    readme = (ROOT / "README.md").read_text(encoding="utf-8")
+    commands = [line for line in readme.splitlines() if "apt-get install" in line]
+    assert len(commands) == 2
+    assert commands[0].endswith("gapfield demo")
+    assert commands[1].endswith("/pytest")
+    ci = (ROOT / ".ci/run").read_text(encoding="utf-8")
+    (pattern,) = re.findall(r'grep -m1 -F "(.*)" README.md', ci)
+    assert [line for line in readme.splitlines() if pattern in line] == [commands[1]]
+
+
+@pytest.mark.parametrize("name", ["README.md", "DEVELOPERS.md", *sorted(
+    str(path.relative_to(ROOT)) for path in (ROOT / "docs").glob("*.md")
+)])  # fmt: skip
+def test_links_between_documents_lead_somewhere(name: str) -> None:
+    text = (ROOT / name).read_text(encoding="utf-8")
+    for target in re.findall(r"\]\(([^)#:]+)\)", text):
+        assert (ROOT / name).parent.joinpath(target).exists(), target
