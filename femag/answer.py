@@ -53,11 +53,10 @@ def _inductances(result: Result) -> Table:
     table.add_column(no_wrap=True)
     table.add_column(justify="right", no_wrap=True)
     table.add_column()
-    half_width = f"half width {100 * bounds.relative_half_width:.2g} %"
+    between = f"between {interval.rstrip(')').replace(' .. ', ' and ')}"
+    table.add_row(Text("inductance", style="bold"), Text(middle, style="bold"), between)
     table.add_row(
-        Text("inductance", style="bold"),
-        Text(middle, style="bold"),
-        f"between {interval.rstrip(')').replace(' .. ', ' and ')} ({half_width})",
+        "  half width", f"{100 * bounds.relative_half_width:.2g} %", "half the distance of the bounds"
     )
     apparent, incremental, plain = with_common_unit(
         (result.apparent_inductance, result.incremental_inductance, result.plain_inductance), "H"
