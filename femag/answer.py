@@ -56,7 +56,9 @@ def _inductances(result: Result) -> Table:
     between = f"between {interval.rstrip(')').replace(' .. ', ' and ')}"
     table.add_row(Text("inductance", style="bold"), Text(middle, style="bold"), between)
     table.add_row(
-        "  half width", f"{100 * bounds.relative_half_width:.2g} %", "half the distance of the bounds"
+        "  half width",
+        f"{100 * bounds.relative_half_width:.2g} %",
+        "half the distance of the bounds",
     )
     apparent, incremental, plain = with_common_unit(
         (result.apparent_inductance, result.incremental_inductance, result.plain_inductance), "H"

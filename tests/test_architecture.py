@@ -9,7 +9,7 @@ import femag
 
 ROOT = Path(femag.__file__).parent
 LAYERS = (
-    ("units", "errors"),
+    ("units", "errors", "line_search"),
     ("materials", "geometry"),
     ("hand", "design", "mesh"),
     ("design_file",),

@@ -14,6 +14,7 @@ image restoration", SIAM J. Sci. Comput. 20 (1999) 1964, for the same difficulty
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,6 +23,7 @@ from scipy.sparse.linalg import splu
 
 from femag.errors import NewtonError, NumericalError
 from femag.field.side import Side, linearised
+from femag.line_search import step_length
 
 Array = NDArray[np.float64]
 
@@ -98,7 +100,7 @@ def minimum(
         toward = _toward(field, secant, flow) if side.flattens else None
         step = solved(side.hessian(field, secant, tangent, toward), -gradient)
         decrement = float(-gradient @ step)
-        length = _step_length(side, x, step, current, decrement)
+        length = step_length(partial(_slope, side, x, step, current), decrement)
         change = side.field(step, 0.0)
         flow = secant[:, None] * field + linearised(field, secant, tangent, change, toward)
         x = x + length * step
@@ -160,29 +162,7 @@ def _first_iterate(side: Side, current: float, start: Array) -> Array:
     return solved(side.hessian(start, secant, tangent), load)
 
 
-def _step_length(side: Side, x: Array, step: Array, current: float, decrement: float) -> float:
-    """Return a step length where at most half of the energy's slope along the step is left.
-
-    The functional is convex, so its slope rises along the step from -decrement: a full step is
-    kept unless the slope has turned well upwards there, else the zero is bracketed.
-    """
-
-    def slope_at(length: float) -> float:
-        field = side.field(x + length * step, current)
-        secant, _ = side.coefficients(field)
-        return float(side.gradient(field, secant, current) @ step)
-
-    low, high, slope_low, slope_high = 0.0, 1.0, -decrement, slope_at(1.0)
-    if slope_high <= 0.5 * decrement or decrement <= 0.0:
-        return 1.0
-    for _ in range(60):
-        share = slope_low / (slope_low - slope_high)
-        length = low + min(max(share, 0.1), 0.9) * (high - low)
-        slope = slope_at(length)
-        if abs(slope) <= 0.5 * decrement:
-            return length
-        if slope < 0.0:
-            low, slope_low = length, slope
-        else:
-            high, slope_high = length, slope
-    return length
+def _slope(side: Side, x: Array, step: Array, current: float, length: float) -> float:
+    field = side.field(x + length * step, current)
+    secant, _ = side.coefficients(field)
+    return float(side.gradient(field, secant, current) @ step)

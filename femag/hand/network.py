@@ -14,6 +14,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +22,7 @@ from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 
 from femag.errors import InputError, NewtonError, NumericalError
+from femag.line_search import step_length
 from femag.materials import AIR, MagnetisationCurve
 from femag.units import MU_0
 
@@ -141,7 +143,8 @@ def network_state(branches: Sequence[Branch]) -> NetworkState:
             return _state(tubes, potential + step, history)
         if len(history) == MAXIMUM_ITERATIONS:
             raise NewtonError("Newton's method did not converge on the network", history)
-        potential = potential + _step_length(tubes, potential, step, decrement) * step
+        length = step_length(partial(_slope, tubes, potential, step), decrement)
+        potential = potential + length * step
 
 
 @dataclass(frozen=True)
@@ -230,34 +233,8 @@ def _first_potential(tubes: _Tubes) -> Array:
     return _solved(matrix, -tubes.drop.T @ (initial * tubes.area / tubes.length * tubes.mmf))
 
 
-def _step_length(tubes: _Tubes, potential: Array, step: Array, decrement: float) -> float:
-    """Return a step length where at most half of the co-energy's slope along the step is left.
-
-    The slope rises along the step from -decrement. Where it is still steep after a full step the
-    step is doubled, which the flat stretches of a saturated network need; then the zero is
-    bracketed.
-    """
-
-    def slope_at(length: float) -> float:
-        return float(_outflow(tubes, potential + length * step) @ step)
-
-    low, high, slope_low, slope_high = 0.0, 1.0, -decrement, slope_at(1.0)
-    while slope_high < -0.5 * decrement and high < 2.0**40:
-        low, slope_low, high = high, slope_high, 2.0 * high
-        slope_high = slope_at(high)
-    if abs(slope_high) <= 0.5 * decrement:
-        return high
-    for _ in range(100):
-        share = slope_low / (slope_low - slope_high)
-        length = low + min(max(share, 0.1), 0.9) * (high - low)
-        slope = slope_at(length)
-        if abs(slope) <= 0.5 * decrement:
-            return length
-        if slope < 0.0:
-            low, slope_low = length, slope
-        else:
-            high, slope_high = length, slope
-    return length
+def _slope(tubes: _Tubes, potential: Array, step: Array, length: float) -> float:
+    return float(_outflow(tubes, potential + length * step) @ step)
 
 
 def _solved(matrix: Array, load: Array) -> Array:
