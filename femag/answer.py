@@ -25,10 +25,10 @@ def print_answer(result: Result, console: Console) -> None:
     if design.title:
         lines.append(Text(design.title, style="bold"))
     lines += [_described(design), "", _inductances(result), "", _flux_densities(result), ""]
-    lines += [_hand_formulas(result), Text(HAND_NOTE), ""]
+    lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
     lines += [Text(_provenance(result)), "", Text(_cautions(result))]
     for line in lines:
-        console.print(line, width=min(console.width, WIDTH), highlight=False)
+        console.print(line, highlight=False)
 
 
 def _described(design: Design) -> Text:
@@ -63,10 +63,9 @@ def _inductances(result: Result) -> Table:
     apparent, incremental, plain = with_common_unit(
         (result.apparent_inductance, result.incremental_inductance, result.plain_inductance), "H"
     )
-    table.add_row("  apparent", apparent, "flux linkage over current; an estimate")
-    table.add_row(
-        "  incremental", incremental, f"small changes at {result.current:g} A; an estimate"
-    )
+    linkages, increments = result.flux_linkage_of_sides, result.incremental_inductance_of_sides
+    table.add_row("  apparent", apparent, f"flux linkage over current; {_apart(linkages)}")
+    table.add_row("  incremental", incremental, f"for small changes; {_apart(increments)}")
     table.add_row(
         "AL value", with_unit(bounds.value / turns_squared, "H"), "inductance over turns squared"
     )
@@ -78,6 +77,12 @@ def _inductances(result: Result) -> Table:
             "gap factor", f"{result.gap_factor:.4f}", "plain gap reluctance over the field's"
         )
     return table
+
+
+def _apart(of_sides: tuple[float, float]) -> str:
+    """Say how far two estimates are apart: no bound, but what there is to judge them by."""
+    share = abs(of_sides[1] - of_sides[0]) / abs(sum(of_sides) / 2)
+    return f"estimates {100 * share:.1g} % apart"
 
 
 def _flux_densities(result: Result) -> Table:
@@ -103,6 +108,21 @@ def _hand_formulas(result: Result) -> Table:
         inside = "yes" if estimate.in_range else "no"
         table.add_row(estimate.name, inductance, f"{row.error:+.1%}", inside, estimate.range)
     return table
+
+
+def _hand_caveat(result: Result) -> list[Text]:
+    """Say where the errors are not the fringing formulas' own."""
+    factor = result.gap_factor
+    saturated = result.incremental_inductance < 0.5 * result.inductance.value
+    if not saturated and (factor is None or factor > 1.0):
+        return []
+    return [
+        Text(
+            "Here the core saturates or hardly guides the flux, so that much of it passes beside "
+            "the core. The network leaves that out, whatever the formula; the ranges are about "
+            "the shape of the gap only."
+        )
+    ]
 
 
 def _columns(first: str, *others: tuple[str, str]) -> Table:

@@ -6,8 +6,9 @@ import os
 import sys
 import time
 from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+from contextlib import ExitStack, contextmanager
 from dataclasses import replace
+from io import TextIOWrapper
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
@@ -72,6 +73,10 @@ def solve_command(
     """
     from femag.design_file import read_design
 
+    if json and Path(json).exists() and Path(json).samefile(design):
+        raise InputError(
+            "is the design itself", key="--json", value=json, accepted="another file, or -"
+        )
     _answer(_with_current(read_design(design), current), json, out)
 
 
@@ -91,11 +96,15 @@ def demo_command(
     from femag.export.whole_file import whole_file
 
     text = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
-    _make_folder(out)
-    with whole_file(out / "design.toml") as temporary:
-        temporary.write_text(text, encoding="utf-8")
+    file = out / "design.toml"
+    if file.exists() and file.read_text(encoding="utf-8", errors="replace") != text:
+        raise InputError(
+            "holds a design of your own", file=str(file), accepted="another folder with --out"
+        )
     _answer(design_from_toml(text, "demo.toml"), None, out)
-    typer.echo(f"Change {out / 'design.toml'} and run: gapfield solve {out / 'design.toml'}")
+    with whole_file(file) as temporary:
+        temporary.write_text(text, encoding="utf-8")
+    typer.echo(f"Change {file} and run: gapfield solve {file}")
 
 
 def _with_current(design: Design, current: str | None) -> Design:
@@ -115,22 +124,10 @@ def _answer(design: Design, json: str | None, out: Path | None) -> None:
     """Solve, then write files, then print."""
     from femag.result import solve
 
-    if out is not None:
-        _make_folder(out)
+    _check_targets(json, out)
     with _shown_progress() as progress:
         result = solve(design, progress=progress)
-    if out is not None:
-        _write_folder(result, out)
-    if json is not None and json != "-":
-        from femag.export.result_file import write_result
-
-        write_result(result, json)
-    _print(result, json)
-    if out is not None and json != "-":
-        typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
-
-
-def _print(result: Result, json: str | None) -> None:
+    _write(result, json, out)
     if json == "-":
         from femag.export.result_file import result_json
 
@@ -138,9 +135,46 @@ def _print(result: Result, json: str | None) -> None:
         return
     from rich.console import Console
 
-    from femag.answer import print_answer
+    from femag.answer import WIDTH, print_answer
 
-    print_answer(result, Console())
+    print_answer(result, Console(width=WIDTH))
+    if out is not None:
+        typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
+
+
+def _check_targets(json: str | None, out: Path | None) -> None:
+    """Refuse before the work what cannot be written after it."""
+    if json is not None and json != "-":
+        folder = Path(json).parent
+        if not json or Path(json).is_dir() or not folder.is_dir():
+            raise InputError(
+                "cannot be written", key="--json", value=json,
+                accepted="a file in a folder that exists, or -",
+            )  # fmt: skip
+    if out is not None and out.exists() and not out.is_dir():
+        raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
+
+
+def _write(result: Result, json: str | None, out: Path | None) -> None:
+    """Write all files that were asked for; each is renamed only when all are written."""
+    from femag.export.result_file import result_json
+    from femag.export.whole_file import whole_file
+
+    with ExitStack() as stack:
+        if json is not None and json != "-":
+            target = stack.enter_context(whole_file(json))
+            target.write_text(result_json(result), encoding="utf-8")
+        if out is None:
+            return
+        from femag.plot import flux_map, gap_map, write_figure
+
+        _make_folder(out)
+        document, section, gap = (
+            stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
+        )
+        document.write_text(result_json(result), encoding="utf-8")
+        write_figure(lambda ax: flux_map(result, ax), section)
+        write_figure(lambda ax: gap_map(result, ax), gap)
 
 
 def _make_folder(out: Path) -> None:
@@ -152,20 +186,10 @@ def _make_folder(out: Path) -> None:
         ) from error
 
 
-def _write_folder(result: Result, out: Path) -> None:
-    from femag.export.result_file import write_result
-    from femag.plot import flux_map, gap_map, write_figure
-
-    json, section, gap = FOLDER_FILES
-    write_result(result, out / json)
-    write_figure(lambda ax: flux_map(result, ax), out / section)
-    write_figure(lambda ax: gap_map(result, ax), out / gap)
-
-
 @contextmanager
 def _shown_progress() -> Iterator[Callable[[FieldSolution], None] | None]:
     """Give a callback that shows the bracket on a terminal when it takes long; None if piped."""
-    if not sys.stderr.isatty():
+    if sys.stderr is None or not sys.stderr.isatty():
         yield None
         return
     from rich.console import Console
@@ -192,12 +216,18 @@ def main(argv: Sequence[str] | None = None) -> int:
     argv : sequence of str, optional
         Arguments without the program's name; those of the process when left out.
     """
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, TextIOWrapper):
+            stream.reconfigure(errors="replace")
     try:
         code = _run(argv)
-        sys.stdout.flush()
-    except BrokenPipeError:
+        if sys.stdout is not None:
+            sys.stdout.flush()
+    except OSError as error:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return 0
+        if isinstance(error, BrokenPipeError):
+            return 0
+        return _said(f"nothing can be printed ({error.strerror})", 2)
     return code
 
 

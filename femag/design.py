@@ -8,9 +8,7 @@ from collections.abc import Sequence
 from dataclasses import asdict, dataclass, replace
 from typing import Any
 
-import numpy as np
-
-from femag.errors import InputError
+from femag.errors import InputError, number
 from femag.geometry import (
     Block,
     Gap,
@@ -29,6 +27,10 @@ from femag.materials import MagnetisationCurve
 
 FAR_RADIUS = 60.0
 """Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
+
+
+CURRENTS = (1e-12, 1e9)
+"""Smallest and largest current that is solved, A."""
 
 
 @dataclass(frozen=True)
@@ -65,21 +67,33 @@ class Design:
     title: str = ""
 
     def __post_init__(self) -> None:
-        for name in ("windings", "gaps", "driven"):
-            object.__setattr__(self, name, tuple(getattr(self, name)))
+        for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
+            value = getattr(self, name)
+            entries = (value,) if isinstance(value, kind) else tuple(value)
+            object.__setattr__(self, name, entries)
         _check_names(self.windings, self.driven)
-        if not 1e-6 <= self.tolerance < 1.0:
+        _check_core(self.core, self.material)
+        if not isinstance(self.title, str) or not self.title.isprintable():
+            raise InputError(
+                "not printable", key="title", value=self.title,
+                accepted="one line of printable text",
+            )  # fmt: skip
+        accepted = "a number from 1e-6 to below 1, such as 1e-3"
+        if not 1e-6 <= number(self.tolerance, "solve.tolerance", accepted) < 1.0:
             raise InputError(
                 "tolerance out of range",
                 key="solve.tolerance",
                 value=self.tolerance,
-                accepted="a number from 1e-6 to below 1, such as 1e-3",
+                accepted=accepted,
             )
-        if not (np.isfinite(self.current) and self.current != 0.0):
+        accepted = f"{CURRENTS[0]:g} A to {CURRENTS[1]:g} A, of either sign"
+        if not CURRENTS[0] <= abs(number(self.current, "drive.current", accepted)) <= CURRENTS[1]:
             raise InputError(
-                "a drive current is needed", key="drive.current", value=self.current,
-                accepted="a current that is not 0",
-            )  # fmt: skip
+                "a drive current is needed",
+                key="drive.current",
+                value=self.current,
+                accepted=accepted,
+            )
         whole_section(self)
 
     @property
@@ -134,7 +148,8 @@ def turns_per_area(design: Design) -> dict[str, float]:
 
 def design_hash(design: Design) -> str:
     """Return a hexadecimal digest of everything in the design that can move a result."""
-    content = asdict(replace(design, title=""))
+    driven = tuple(winding.name for winding in design.driven_windings)
+    content = asdict(replace(design, title="", driven=driven))
     content["material"]["kind"] = type(design.material).__name__
     text = json.dumps(_with_floats(content), sort_keys=True)
     return hashlib.sha256(text.encode()).hexdigest()
@@ -149,6 +164,16 @@ def _with_floats(content: Any) -> Any:
     return content if content is None or isinstance(content, str) else float(content)
 
 
+def _check_core(core: object, material: object) -> None:
+    if not isinstance(core, PotCore):
+        raise InputError("not a core", key="core", value=core, accepted="a PotCore")
+    if not hasattr(material, "coenergy_density"):
+        raise InputError(
+            "not a material", key="core.material", value=material,
+            accepted="a magnetisation curve, such as LinearCurve(2000)",
+        )  # fmt: skip
+
+
 def _check_names(windings: Sequence[Winding], driven: Sequence[str]) -> None:
     if not windings:
         raise InputError("no winding", key="winding", accepted="at least one winding")
@@ -160,6 +185,11 @@ def _check_names(windings: Sequence[Winding], driven: Sequence[str]) -> None:
                 accepted="names that differ",
             )  # fmt: skip
     for name in driven:
+        if driven.count(name) > 1:
+            raise InputError(
+                "a winding is named twice", key="drive.winding", value=name,
+                accepted="each winding once",
+            )  # fmt: skip
         if name not in names:
             raise InputError(
                 "no winding has this name",

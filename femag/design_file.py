@@ -97,7 +97,7 @@ class BlockTable(_Table):
 class WindingTable(_Table):
     """One winding."""
 
-    turns: int = Field(description="a whole number of at least 1")
+    turns: int = Field(description="a whole number from 1 to 1000000")
     name: str = Field(default="main", description="a name in quotes")
     block: BlockTable | None = Field(
         default=None, description="a table of lengths, [winding.block]"
@@ -137,7 +137,7 @@ def read_design(path: str | Path) -> Design:
         If the file cannot be read or used; it names the file, the key and the value.
     """
     try:
-        text = Path(path).read_text(encoding="utf-8")
+        text = Path(path).read_text(encoding="utf-8-sig")
     except UnicodeDecodeError as error:
         raise InputError("not UTF-8 text", file=str(path), accepted="a TOML file") from error
     except OSError as error:
@@ -155,7 +155,7 @@ def design_from_toml(text: str, file: str | None = None) -> Design:
     """
     try:
         document = tomllib.loads(text)
-    except tomllib.TOMLDecodeError as error:
+    except (ValueError, RecursionError) as error:  # ValueError: also numbers too long to read
         problem = " ".join(str(error).split())
         raise InputError(f"not valid TOML ({problem})", file=file) from error
     return design_from_document(document, file)
@@ -241,7 +241,9 @@ def _design(table: DesignTable) -> Design:
 
 def _curve(table: MaterialTable) -> MagnetisationCurve:
     if table.saturation is not None:
-        return FroehlichCurve(table.permeability, table.saturation, table.exponent or 1.0)
+        return FroehlichCurve(
+            table.permeability, table.saturation, 1.0 if table.exponent is None else table.exponent
+        )
     if table.exponent is not None:
         raise InputError(
             "an exponent needs a saturation", key="exponent", value=table.exponent,
@@ -318,7 +320,8 @@ def _first_error(error: ValidationError, file: str | None) -> InputError:
         near = difflib.get_close_matches(str(location[-1]), known, n=1, cutoff=0.5)
         accepted = f"nearest known key: {near[0]!r}" if near else ", ".join(known)
         return InputError("unknown key", key=key, accepted=accepted, file=file)
-    description = _fields_at(location[:-1])[str(location[-1])] if location else "a table"
+    named = _up_to_last_name(location)
+    description = _fields_at(named[:-1])[str(named[-1])] if named else "a table"
     if first["type"] == "missing":
         return InputError("missing", key=key, accepted=description, file=file)
     problem = first["msg"] if first["type"] == "quantity" else "not usable"
@@ -328,6 +331,12 @@ def _first_error(error: ValidationError, file: str | None) -> InputError:
 def _unknown_keys_first(error: Mapping[str, Any]) -> int:
     """A misspelt key is also a missing one: name the misspelling."""
     return 0 if error["type"] == "extra_forbidden" else 1
+
+
+def _up_to_last_name(location: Sequence[int | str]) -> Sequence[int | str]:
+    """Return a location without the numbers at its end: an entry is described with its list."""
+    length = max((i for i, part in enumerate(location, 1) if isinstance(part, str)), default=0)
+    return location[:length]
 
 
 def _dotted(location: Sequence[int | str]) -> str:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
+from numbers import Real
 
 
 class GapfieldError(Exception):
@@ -51,10 +53,30 @@ class InputError(GapfieldError):
 
     def __str__(self) -> str:
         where = ": ".join(part for part in (self.file, self.key) if part)
-        shown = "" if self.value is None else f" = {self.value!r}"
+        shown = "" if self.value is None else f" = {_shortened(repr(self.value))}"
         accepted = f"; accepted: {self.accepted}" if self.accepted else ""
         head = f"{where}{shown}: " if where else ""
         return f"{head}{self.problem}{accepted}"
+
+
+def _shortened(text: str, length: int = 120) -> str:
+    return text if len(text) <= length else f"{text[: length - 4]} ..."
+
+
+def number(value: object, key: str, accepted: str) -> float:
+    """Return a value as a float.
+
+    Raises
+    ------
+    InputError
+        If it is no real number; texts with units belong into design files.
+    """
+    if isinstance(value, bool) or not isinstance(value, Real):
+        raise InputError("not a number", key=key, value=value, accepted=accepted)
+    try:
+        return float(value)
+    except OverflowError:
+        return math.inf
 
 
 def entry_key(name: str, index: int) -> str:

@@ -31,6 +31,10 @@ Index = NDArray[np.int64]
 
 COARSENESS = 1.1
 """Element size at a corner over the room around it."""
+FINENESS = 1e-3
+"""Smallest element size along thin parts over the extent; their triangles are long then."""
+THINNEST = 1e-5
+"""Smallest width of a part over the extent."""
 CORNER_ROUNDS = 2
 """How often elements at singular corners are divided before the first solution."""
 GROWTH = 0.5
@@ -87,14 +91,9 @@ def coarse_mesh(section: Section) -> SectionMesh:
     MissingLibraryError
         If gmsh or a system library that it needs is missing.
     """
+    _check_thickness(section)
     unit = 2.0 ** np.ceil(np.log2(parts_extent(section)))  # gmsh's tolerances are absolute
-    drawn = scaled_section(section, 1.0 / unit)
-    with _gmsh_session() as gmsh:
-        surfaces = _build_surfaces(gmsh, drawn)
-        _set_corner_sizes(gmsh, drawn)
-        _limit_growth(gmsh, drawn)
-        gmsh.model.mesh.generate(2)
-        points, corners, region = _read_triangles(gmsh, surfaces)
+    points, corners, region = _drawn_mesh(scaled_section(section, 1.0 / unit))
     triangles = MeshTri(points * unit, corners)
     singular = singular_corners(section)
     for _ in range(CORNER_ROUNDS):
@@ -103,6 +102,21 @@ def coarse_mesh(section: Section) -> SectionMesh:
     mesh = SectionMesh(section, triangles, region, names)
     _check_areas(mesh)
     return mesh
+
+
+def _drawn_mesh(section: Section) -> tuple[Array, Index, Index]:
+    """Return points (2, n), triangles (3, m) and the region of each triangle, from gmsh."""
+    with _gmsh_session() as gmsh:
+        try:
+            surfaces = _build_surfaces(gmsh, section)
+            _set_corner_sizes(gmsh, section)
+            _limit_growth(gmsh, section)
+            gmsh.model.mesh.generate(2)
+            return _read_triangles(gmsh, surfaces)
+        except InputError:
+            raise
+        except Exception as error:  # gmsh raises bare exceptions
+            raise NumericalError(f"gmsh cannot mesh this section ({error})") from error
 
 
 def refined_mesh(mesh: SectionMesh, marked: Index) -> tuple[SectionMesh, Index]:
@@ -232,9 +246,32 @@ def _corner_sizes(section: Section, points: Array) -> Array:
     start = _corners(section)
     polygons = (section.domain, *(region.polygon for region in section.regions))
     end = np.vstack([np.roll(polygon, -1, axis=0) for polygon in polygons])
+    room = COARSENESS * _room_around(points, start, end)
+    return np.maximum(room, FINENESS * parts_extent(section))
+
+
+def _room_around(points: Array, start: Array, end: Array) -> Array:
+    """Return the distance of each point to the nearest segment that does not hold it."""
     distance = _distances(points, start, end)
     distance[distance < 1e-9 * np.ptp(start)] = np.inf
-    return np.asarray(COARSENESS * distance.min(axis=1))
+    return np.asarray(distance.min(axis=1))
+
+
+def _check_thickness(section: Section) -> None:
+    """Refuse parts so thin that coordinates do not resolve them."""
+    least = THINNEST * parts_extent(section)
+    for region in section.regions:
+        polygon = np.asarray(region.polygon)
+        room = _distances(polygon, polygon, np.roll(polygon, -1, axis=0))
+        for corner in range(len(polygon)):
+            room[corner, [corner, corner - 1]] = np.inf
+        if room.min() < least:
+            raise InputError(
+                "too thin to be meshed",
+                key=region.name,
+                value=f"{1e3 * room.min():.3g} mm",
+                accepted=f"at least {1e3 * least:.3g} mm, or none at all",
+            )
 
 
 def _distances(points: Array, start: Array, end: Array) -> Array:
@@ -273,8 +310,9 @@ def _check_areas(mesh: SectionMesh) -> None:
         mesh.region, weights=np.abs(r1 * z2 - r2 * z1) / 2, minlength=len(mesh.names)
     )
     wanted = np.array([region_areas(mesh.section)[name] for name in mesh.names])
-    worst = int(np.argmax(np.abs(meshed - wanted)))
-    if abs(meshed[worst] - wanted[worst]) > 1e-9 * wanted[1:].sum():
+    excess = np.abs(meshed - wanted) - 1e-9 * wanted - 1e-14 * wanted.sum()
+    worst = int(np.argmax(excess))
+    if excess[worst] > 0.0:
         raise NumericalError(
             f"the mesh of {mesh.names[worst]} has {meshed[worst]:.6e} m2 instead of "
             f"{wanted[worst]:.6e} m2"

@@ -16,7 +16,7 @@ from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
     SectionMean,
     gap_factor,
-    incremental_inductance,
+    incremental_inductance_of_sides,
     section_means,
 )
 
@@ -54,8 +54,8 @@ class Result:
     flux_linkage_of_sides : tuple of float
         Flux linkage in Wb from the flux side and from the potential side; the difference
         estimates the error and bounds nothing.
-    incremental_inductance : float
-        d(flux linkage)/dI at the current, H, mean of both sides' tangent problems; an estimate.
+    incremental_inductance_of_sides : tuple of float
+        d(flux linkage)/dI in H at the current from the tangent problem of either side; estimates.
     plain_inductance : float
         Reluctance network without fringing, H (energy inductance).
     gap_factor : float or None
@@ -80,7 +80,7 @@ class Result:
     inductance: Bounds
     coenergy: Bounds
     flux_linkage_of_sides: tuple[float, float]
-    incremental_inductance: float
+    incremental_inductance_of_sides: tuple[float, float]
     plain_inductance: float
     gap_factor: float | None
     hand: tuple[Comparison, ...]
@@ -101,6 +101,11 @@ class Result:
     def flux_linkage(self) -> float:
         """Flux linkage, Wb: mean of both sides."""
         return sum(self.flux_linkage_of_sides) / 2
+
+    @property
+    def incremental_inductance(self) -> float:
+        """Incremental inductance, H: mean of both sides."""
+        return sum(self.incremental_inductance_of_sides) / 2
 
     @property
     def apparent_inductance(self) -> float:
@@ -162,7 +167,7 @@ def solve(
         inductance=inductance,
         coenergy=solution.coenergy,
         flux_linkage_of_sides=solution.flux_linkage_of_sides,
-        incremental_inductance=incremental_inductance(solution),
+        incremental_inductance_of_sides=incremental_inductance_of_sides(solution),
         plain_inductance=plain_inductance(*hand_input),
         gap_factor=gap_factor(design, solution),
         hand=tuple(

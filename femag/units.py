@@ -10,7 +10,7 @@ import difflib
 import math
 import re
 from collections.abc import Sequence
-from decimal import Decimal
+from decimal import Decimal, DecimalException
 from functools import cache
 from typing import TYPE_CHECKING
 
@@ -64,7 +64,9 @@ def _registry() -> pint.UnitRegistry[float]:
     return registry
 
 
-_NUMBER_AND_UNIT = re.compile(r"\s*([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*(\S.*?)?\s*")
+_NUMBER_AND_UNIT = re.compile(
+    r"\s*([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)\s*(\S.*?)?\s*"
+)
 
 ACCEPTED = {
     "m": "a length with its unit, such as '0.5 mm' or '26 mil'",
@@ -103,9 +105,13 @@ def si_value(text: object, unit: str) -> float:
     number, name = match.groups()
     if name is None:
         raise InputError("the unit is missing", value=text, accepted=accepted)
-    value = float(Decimal(number) * Decimal(repr(_si_factor(name, unit, text, accepted))))
+    factor = _si_factor(name, unit, text, accepted)
+    try:
+        value = float(Decimal(number) * Decimal(repr(factor)))
+    except DecimalException:
+        value = math.inf
     if not math.isfinite(value):
-        raise InputError("the number is too large", value=text, accepted=accepted)
+        raise InputError("the number is out of range", value=text, accepted=accepted)
     return value
 
 

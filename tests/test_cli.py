@@ -93,7 +93,10 @@ def test_demo_leaves_a_design_to_start_from(
         (["solve", "{design}", "--current", "3"], "--current = '3': the unit is missing"),
         (["solve", "{design}", "--current", "3 mm"], "'mm' is not a unit of this quantity"),
         (["solve", "{design}", "--json", "{folder}/no/r.json"], "cannot be written"),
-        (["solve", "{design}", "--out", "{design}"], "cannot be made a folder"),
+        (["solve", "{design}", "--out", "{design}"], "is no folder"),
+        (["solve", "{design}", "--json", ""], "--json = '': cannot be written"),
+        (["solve", "{design}", "--json", "{folder}"], "cannot be written"),
+        (["solve", "{design}", "--json", "{design}"], "is the design itself"),
         (["solve"], "Missing argument"),
         (["sovle", "{design}"], "sovle"),
         (["solve", "{design}", "--jason", "-"], "--jason"),
@@ -140,6 +143,74 @@ def test_a_tolerance_out_of_reach_exits_with_3_and_its_bracket(
     assert "tolerance 1e-06 not reached" in err
     assert "uH (" in err
     assert list(tmp_path.iterdir()) == [design]
+
+
+def test_nothing_is_left_when_one_of_the_files_cannot_be_written(
+    design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    os.mkfifo(tmp_path / "pipe")
+    code, out, err = run(
+        capsys, "solve", design, "--out", tmp_path / "o", "--json", tmp_path / "pipe"
+    )
+    assert (code, out) == (2, "")
+    assert "pipe: is no regular file" in err
+    assert sorted(file.name for file in tmp_path.iterdir()) == ["design.toml", "pipe"]
+
+
+def test_a_link_is_written_through(
+    design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "target.json").write_text("old")
+    (tmp_path / "link.json").symlink_to(tmp_path / "target.json")
+    assert run(capsys, "solve", design, "--json", tmp_path / "link.json")[0] == 0
+    assert (tmp_path / "link.json").is_symlink()
+    assert fm.read_result(tmp_path / "target.json").current == 4.0
+
+
+def test_demo_keeps_a_design_that_was_changed(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    folder = tmp_path / "demo"
+    assert run(capsys, "demo", "--out", folder)[0] == 0
+    assert run(capsys, "demo", "--out", folder)[0] == 0
+    own = DEMO.replace("turns = 36", "turns = 40")
+    (folder / "design.toml").write_text(own)
+    code, out, err = run(capsys, "demo", "--out", folder)
+    assert (code, out) == (2, "")
+    assert "holds a design of your own" in err
+    assert (folder / "design.toml").read_text() == own
+
+
+def test_saturated_cores_come_with_a_word_about_the_hand_formulas(
+    design: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    _, calm, _ = run(capsys, "solve", design)
+    _, saturated, _ = run(capsys, "solve", design, "--current", "100 A")
+    assert "the core saturates" not in calm
+    assert "the core saturates" in saturated
+
+
+@pytest.mark.parametrize(
+    ("shell", "code"),
+    [
+        ("{run} solve {design} > /dev/full", 2),
+        ("{run} solve {design} >&-", 0),
+        ("{run} solve {design} --json - 2>&-", 0),
+        ("COLUMNS=0 {run} solve {design}", 0),
+        ("PYTHONIOENCODING=ascii {run} solve {design}", 0),
+    ],
+)
+def test_odd_terminals_get_no_traceback(design: Path, shell: str, code: int) -> None:
+    design.write_text(DEMO.replace("(invented)", "für Öl Ω"), encoding="utf-8")
+    program = f"{sys.executable} -m femag.cli"
+    done = subprocess.run(
+        shell.format(run=program, design=design), shell=True, capture_output=True, text=True
+    )
+    assert done.returncode == code
+    assert "Traceback" not in done.stderr
+    assert done.stderr.count("\n") <= 1
+    if "json" in shell or "COLUMNS" in shell or "ascii" in shell:
+        assert "inductance" in done.stdout
 
 
 def test_help_and_version_leave_with_0(capsys: pytest.CaptureFixture[str]) -> None:

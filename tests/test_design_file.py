@@ -64,7 +64,7 @@ def test_toml_out_and_in_is_the_same_design(saturating_26_16: fm.Design) -> None
         windings=halves,
         driven=("outer", "inner"),
         gaps=(fm.Gap(0.1e-3 / 3, "all"), fm.Gap(0.5e-3)),
-        title='quotes " and \\ and\nlines',
+        title='quotes " and \\ and <tags>',
     )
     again = design_from_toml(fm.design_toml(design))
     assert again == design
@@ -92,7 +92,7 @@ BAD = [
     ('"0.5 mm"', '"0,5 mm"', "gap.length = '0,5 mm': a decimal comma"),
     ('"0.5 mm"', '"0.5 A"', "gap.length = '0.5 A': 'A' is not a unit of this quantity"),
     ('"0.5 mm"', '"-0.5 mm"', "gap.length = '-0.5 mm': the gap must be positive"),
-    ("turns = 50", "turns = 0", "winding.turns = 0: a winding needs turns"),
+    ("turns = 50", "turns = 0", "winding.turns = 0: turns out of range"),
     ("turns = 50", "turns = 5.5", "winding.turns = 5.5: not usable; accepted: a whole number"),
     ('"10.0 mm"', '"11 mm"', "winding.block.outer_radius = '11 mm': the winding reaches into the"),
     (
@@ -122,6 +122,18 @@ BAD = [
     ('"pot"', '"cup"', "core.family = 'cup': not usable; accepted: 'pot'"),
     ("[drive]", '[drive]\nwinding = ["x"]', "drive.winding = 'x': no winding has this name"),
     ('"two posts"', "two posts", "not valid TOML"),
+    ('"two posts"', '"two\\nlines"', "title = 'two\\nlines': not printable"),
+    ("[drive]", "[drive]\nwinding = [3]", "drive.winding = 3: not usable; accepted: a list of"),
+    ("[drive]", '[drive]\nwinding = ["main", "main"]', "a winding is named twice"),
+    ("turns = 50", f"turns = {10**25}", "turns out of range"),
+    ("turns = 50", f"turns = {'9' * 5001}", "not valid TOML"),
+    ("= 2000", '= 2000, saturation = "1 T", exponent = 0', "core.material.exponent = 0"),
+    ("= 2000", "= 1e7", "core.material.permeability = 10000000.0: relative permeability out of"),
+    ('"1 A"', '"1e200 A"', "drive.current = '1e200 A': a drive current is needed"),
+    ('"1 A"', '"1e-170 A"', "drive.current = '1e-170 A': a drive current is needed"),
+    ('"0.5 mm"', '"1e9999999999999999999 mm"', "the number is out of range"),
+    ('"5.5 mm"', '"-1 mm"', "accepted: a length of 0 or more"),
+    ('name = "main"', 'name = ""', "winding.name = '': not a name"),
 ]
 
 
@@ -152,6 +164,16 @@ def test_a_file_that_cannot_be_read_is_named(tmp_path: Path) -> None:
     (tmp_path / "binary.toml").write_bytes(b"\xff\xfe\x00")
     with pytest.raises(fm.InputError, match="not UTF-8 text"):
         fm.read_design(tmp_path / "binary.toml")
+
+
+def test_deep_nesting_is_one_line_too(tmp_path: Path) -> None:
+    with pytest.raises(fm.InputError, match="not valid TOML"):
+        design_from_toml("title = " + "[" * 5000 + "]" * 5000)
+
+
+def test_a_byte_order_mark_is_read_over(tmp_path: Path, pot_26_16: fm.Design) -> None:
+    (tmp_path / "bom.toml").write_text("\ufeff" + TEXT, encoding="utf-8")
+    assert fm.read_design(tmp_path / "bom.toml") == replace(pot_26_16, title="two posts")
 
 
 def test_nothing_in_a_file_is_executed() -> None:

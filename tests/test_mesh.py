@@ -56,10 +56,22 @@ def test_uniform_refinement_divides_every_region_into_four(pot_26_16: fm.Design)
     np.testing.assert_allclose(meshed_areas(fine), meshed_areas(coarse), rtol=1e-12)
 
 
-@pytest.mark.parametrize("gap", [pytest.param(1e-6, marks=pytest.mark.slow), 5e-6, 0.5e-3, 10.9e-3])
-def test_extreme_gaps_mesh(pot_26_16: fm.Design, gap: float) -> None:
+@pytest.mark.parametrize("gap", [1e-6, 5e-6, 0.5e-3, 10.9e-3])
+def test_extreme_gaps_mesh_with_few_elements(pot_26_16: fm.Design, gap: float) -> None:
     mesh = coarse_mesh(meshed_section(replace(pot_26_16, gaps=(fm.Gap(gap),))))
-    assert len(mesh.elements_of("post gap")) > 0
+    assert 0 < len(mesh.elements_of("post gap")) < mesh.triangles.nelements < 12_000
+
+
+@pytest.mark.parametrize(
+    ("gap", "part"), [(1e-9, "post gap"), (1e-7, "post gap"), (11e-3 - 1e-12, "upper post")]
+)
+def test_parts_that_cannot_be_resolved_are_named(
+    pot_26_16: fm.Design, gap: float, part: str
+) -> None:
+    design = replace(pot_26_16, gaps=(fm.Gap(gap),))
+    with pytest.raises(fm.InputError, match="too thin to be meshed") as caught:
+        coarse_mesh(meshed_section(design))
+    assert caught.value.key == part
 
 
 def test_overlapping_regions_are_refused() -> None:

@@ -36,7 +36,10 @@ def test_text_becomes_si(text: str, unit: str, value: float) -> None:
         ("a bit", "not a number with a unit"),
         (None, "not a number with a unit"),
         (True, "not a number with a unit"),
-        ("1e400 mm", "the number is too large"),
+        ("1e400 mm", "the number is out of range"),
+        ("1e99999999999999999999 mm", "the number is out of range"),
+        ("1e999999 Mm", "the number is out of range"),
+        ("\u0660.\u0666 mm", "not a number with a unit"),
         ("1 mm; import os", "unknown unit"),
     ],
 )

@@ -7,6 +7,7 @@ from typing import Any, Literal
 
 from pydantic import BaseModel, ConfigDict, ValidationError
 
+from femag.design import design_hash
 from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
 from femag.export.whole_file import whole_file
@@ -19,7 +20,7 @@ FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
 
 
 class _Entry(BaseModel):
-    model_config = ConfigDict(frozen=True, allow_inf_nan=False)
+    model_config = ConfigDict(frozen=True, allow_inf_nan=False, extra="forbid")
 
 
 class BoundsEntry(_Entry):
@@ -61,6 +62,7 @@ class ResultDocument(_Entry):
     inductance: BoundsEntry
     apparent_inductance: float
     incremental_inductance: float
+    incremental_inductance_of_sides: tuple[float, float]
     flux_linkage: float
     flux_linkage_of_sides: tuple[float, float]
     coenergy: BoundsEntry
@@ -112,7 +114,32 @@ def read_result(path: str | Path) -> Result:
             accepted="JSON as written by 'gapfield solve --json'",
             file=str(path),
         ) from error
-    return _result(document, str(path))
+    result = _result(document, str(path))
+    _check_against_design(document, result, str(path))
+    return result
+
+
+def _check_against_design(document: ResultDocument, result: Result, file: str) -> None:
+    """Refuse a file whose numbers were not all written together."""
+    for key, bounds in (("inductance", document.inductance), ("coenergy", document.coenergy)):
+        if not bounds.lower <= bounds.value <= bounds.upper:
+            raise InputError("bounds out of order", key=key, file=file)
+    if document.plain_inductance <= 0.0:
+        raise InputError("not positive", key="plain_inductance", file=file)
+    design = result.design
+    for key, value in (
+        ("design_hash", design_hash(design)),
+        ("current", design.current),
+        ("tolerance", design.tolerance),
+    ):
+        if getattr(document, key) != value:
+            raise InputError(
+                "does not belong to the design beside it",
+                key=key,
+                value=getattr(document, key),
+                accepted=f"{value!r}",
+                file=file,
+            )
 
 
 def _document(result: Result) -> ResultDocument:
@@ -126,6 +153,7 @@ def _document(result: Result) -> ResultDocument:
         inductance=_bounds_entry(result.inductance),
         apparent_inductance=result.apparent_inductance,
         incremental_inductance=result.incremental_inductance,
+        incremental_inductance_of_sides=result.incremental_inductance_of_sides,
         flux_linkage=result.flux_linkage,
         flux_linkage_of_sides=result.flux_linkage_of_sides,
         coenergy=_bounds_entry(result.coenergy),
@@ -150,7 +178,7 @@ def _result(document: ResultDocument, file: str) -> Result:
         inductance=Bounds(document.inductance.lower, document.inductance.upper, "H"),
         coenergy=Bounds(document.coenergy.lower, document.coenergy.upper, "J"),
         flux_linkage_of_sides=document.flux_linkage_of_sides,
-        incremental_inductance=document.incremental_inductance,
+        incremental_inductance_of_sides=document.incremental_inductance_of_sides,
         plain_inductance=document.plain_inductance,
         gap_factor=document.gap_factor,
         hand=tuple(

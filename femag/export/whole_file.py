@@ -15,16 +15,22 @@ from femag.errors import InputError
 def whole_file(path: str | Path) -> Iterator[Path]:
     """Give a temporary path beside `path` to write to; rename it when the block succeeds.
 
+    Links are followed. Devices and pipes cannot be renamed onto and are refused.
+
     Raises
     ------
     InputError
         If the file cannot be written.
     """
-    target = Path(path)
+    target = Path(path).resolve()
+    if target.exists() and not target.is_file():
+        raise InputError("is no regular file", file=str(path), accepted="a file to write to")
+    if target.exists() and not os.access(target, os.W_OK):
+        raise InputError("cannot be written (write-protected)", file=str(path))
     temporary: Path | None = None
     try:
         handle, name = tempfile.mkstemp(
-            dir=target.parent, prefix=f".{target.stem}-", suffix=target.suffix
+            dir=target.parent, prefix=".gapfield-", suffix=target.suffix
         )
         temporary = Path(name)
         os.close(handle)

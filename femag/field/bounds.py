@@ -62,16 +62,17 @@ class Bounds:
 
     @property
     def relative_half_width(self) -> float:
-        """Half width over the value."""
-        return self.half_width / abs(self.value)
+        """Half width over the value; infinite where the value is zero."""
+        return self.half_width / abs(self.value) if self.value else math.inf
 
     def scaled(self, factor: float, unit: str) -> Bounds:
         """Return the bounds of a positive multiple."""
         return Bounds(self.lower * factor, self.upper * factor, unit)
 
     def __str__(self) -> str:
-        digits = 1 - math.floor(math.log10(max(self.relative_half_width, 1e-9)))
-        texts = with_common_unit((self.value, self.lower, self.upper), self.unit, min(digits, 9))
+        known = min(max(self.relative_half_width, 1e-9), 1.0)
+        digits = min(1 - math.floor(math.log10(known)), 9)
+        texts = with_common_unit((self.value, self.lower, self.upper), self.unit, digits)
         lower, upper = (text.split()[0] for text in texts[1:])
         return f"{texts[0]} ({lower} .. {upper})"
 

@@ -8,7 +8,7 @@ from typing import Literal
 
 import numpy as np
 
-from femag.errors import InputError
+from femag.errors import InputError, number
 
 Leg = Literal["post", "all"]
 
@@ -29,12 +29,13 @@ class Gap:
     leg: Leg = "post"
 
     def __post_init__(self) -> None:
-        if not (np.isfinite(self.length) and self.length > 0):
+        accepted = "a length above 0; leave the gap out for an ungapped core"
+        if not 0.0 < number(self.length, "gap.length", accepted) < np.inf:
             raise InputError(
                 "the gap must be positive",
                 key="gap.length",
                 value=self.length,
-                accepted="a length above 0; leave the gap out for an ungapped core",
+                accepted=accepted,
             )
         if self.leg not in ("post", "all"):
             raise InputError(

@@ -7,9 +7,11 @@ from dataclasses import dataclass, fields
 
 import numpy as np
 
-from femag.errors import InputError, entry_key
+from femag.errors import InputError, entry_key, number
 from femag.geometry.gaps import Gap, gap_length
 from femag.geometry.section import Cut, Region, rectangle
+
+LENGTH = "a length above 0"
 
 
 @dataclass(frozen=True)
@@ -37,10 +39,11 @@ class PotCore:
 
     def __post_init__(self) -> None:
         for field in fields(self):
-            value = getattr(self, field.name)
-            least_is_allowed = field.name == "hole_diameter"
-            if not np.isfinite(value) or value < 0 or (value == 0 and not least_is_allowed):
-                raise _dimension_error("must be positive", field.name, value, "a length above 0")
+            accepted = "a length of 0 or more" if field.name == "hole_diameter" else LENGTH
+            key = f"core.dimensions.{field.name}"
+            value = number(getattr(self, field.name), key, accepted)
+            if not 0.0 <= value < np.inf or (value == 0.0 and accepted == LENGTH):
+                raise _dimension_error("out of range", field.name, value, accepted)
         for smaller, larger in (
             ("hole_diameter", "post_diameter"),
             ("post_diameter", "window_diameter"),

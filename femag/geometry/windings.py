@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
-import numpy as np
-
-from femag.errors import InputError, entry_key
+from femag.errors import InputError, entry_key, number
 from femag.geometry.section import Region, rectangle
+
+MOST_TURNS = 1_000_000
 
 
 @dataclass(frozen=True)
@@ -28,6 +28,8 @@ class Block:
     top: float
 
     def __post_init__(self) -> None:
+        for side in fields(self):
+            number(getattr(self, side.name), f"winding.block.{side.name}", "a length")
         for low, high in (("inner_radius", "outer_radius"), ("bottom", "top")):
             if not getattr(self, low) < getattr(self, high):
                 raise InputError(
@@ -62,13 +64,21 @@ class Winding:
     name: str = "main"
 
     def __post_init__(self) -> None:
-        if not (np.isfinite(self.turns) and self.turns >= 1 and self.turns == int(self.turns)):
+        accepted = f"a whole number from 1 to {MOST_TURNS}"
+        turns = number(self.turns, "winding.turns", accepted)
+        if not (1 <= turns <= MOST_TURNS and turns == int(turns)):
             raise InputError(
-                "a winding needs turns",
-                key="winding.turns",
-                value=self.turns,
-                accepted="a whole number of at least 1",
+                "turns out of range", key="winding.turns", value=self.turns, accepted=accepted
             )
+        if self.block is not None and not isinstance(self.block, Block):
+            raise InputError(
+                "not a block", key="winding.block", value=self.block, accepted="a Block"
+            )
+        if not isinstance(self.name, str) or not self.name.strip() or not self.name.isprintable():
+            raise InputError(
+                "not a name", key="winding.name", value=self.name,
+                accepted="printable text that is not empty",
+            )  # fmt: skip
 
 
 def winding_region(winding: Winding, window: Block, index: int) -> Region:

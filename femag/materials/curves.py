@@ -14,10 +14,14 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.special import beta, betainc, betaincc
 
-from femag.errors import InputError
+from femag.errors import InputError, number
 from femag.units import MU_0
 
 Array = NDArray[np.float64]
+
+
+HIGHEST_PERMEABILITY = 1e6
+"""Of any soft magnetic material; beyond it the fields of an ungapped core lose digits."""
 
 
 class MagnetisationCurve(Protocol):
@@ -52,12 +56,14 @@ class MagnetisationCurve(Protocol):
 
 
 def _require_permeability(value: float, *, above: bool = False) -> None:
-    if not np.isfinite(value) or value < 1.0 or (above and value == 1.0):
+    accepted = f"a number {'above' if above else 'from'} 1 up to {HIGHEST_PERMEABILITY:g}"
+    size = number(value, "permeability", accepted)
+    if not 1.0 <= size <= HIGHEST_PERMEABILITY or (above and size == 1.0):
         raise InputError(
             "relative permeability out of range",
             key="permeability",
             value=value,
-            accepted="a number above 1" if above else "a number of at least 1",
+            accepted=accepted,
         )
 
 
@@ -147,19 +153,21 @@ class FroehlichCurve:
 
     def __post_init__(self) -> None:
         _require_permeability(self.permeability, above=True)
-        if not (np.isfinite(self.saturation) and self.saturation > 0):
+        saturation = "a positive flux density, such as 0.45 T"
+        if not 0.0 < number(self.saturation, "saturation", saturation) < np.inf:
             raise InputError(
                 "saturation polarisation must be positive",
                 key="saturation",
                 value=self.saturation,
-                accepted="a positive flux density, such as 0.45 T",
+                accepted=saturation,
             )
-        if not 1.0 <= self.exponent <= 20.0:
+        exponent = "1 (soft knee) to 20 (sharp)"
+        if not 1.0 <= number(self.exponent, "exponent", exponent) <= 20.0:
             raise InputError(
                 "knee exponent out of range",
                 key="exponent",
                 value=self.exponent,
-                accepted="1 (soft knee) to 20 (sharp)",
+                accepted=exponent,
             )
 
     @property

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import warnings
 from collections.abc import Callable
 from pathlib import Path
 
@@ -33,5 +34,6 @@ def write_figure(draw: Callable[[Axes], Axes], path: str | Path) -> None:
     figure = Figure(figsize=(6.4, 6.4), layout="constrained")
     FigureCanvasAgg(figure)
     draw(figure.add_subplot())
-    with whole_file(path) as temporary:
+    with whole_file(path) as temporary, warnings.catch_warnings():
+        warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         figure.savefig(temporary, dpi=RESOLUTION)

@@ -2,7 +2,7 @@
 
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
 from femag.quantities.fringing import core_coenergy_share, gap_factor, plain_gap_reluctance
-from femag.quantities.inductance import incremental_inductance, incremental_inductance_of_sides
+from femag.quantities.inductance import incremental_inductance_of_sides
 from femag.quantities.section_means import (
     SectionMean,
     flux_through_discs,
@@ -17,7 +17,6 @@ __all__ = [
     "field_map",
     "flux_through_discs",
     "gap_factor",
-    "incremental_inductance",
     "incremental_inductance_of_sides",
     "mean_flux_densities",
     "plain_gap_reluctance",

@@ -26,8 +26,3 @@ def incremental_inductance_of_sides(solution: FieldSolution) -> tuple[float, flo
     coupling = side.tested(flow, np.ones_like(potential.secant))
     from_potential = float(stiff - coupling @ solved(side.hessian(*state), coupling))
     return from_flux, from_potential
-
-
-def incremental_inductance(solution: FieldSolution) -> float:
-    """Return d(flux linkage)/dI in H, the mean of both sides' tangent problems."""
-    return sum(incremental_inductance_of_sides(solution)) / 2

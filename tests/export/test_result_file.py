@@ -72,6 +72,28 @@ def test_another_file_is_no_result(tmp_path: Path, text: str) -> None:
     assert "\n" not in str(caught.value)
 
 
+@pytest.mark.parametrize(
+    ("key", "value"),
+    [
+        ("current", 5.0),
+        ("tolerance", 0.5),
+        ("design_hash", "0" * 64),
+        ("inductance", {"lower": 2.0, "value": 1.5, "upper": 1.0}),
+        ("plain_inductance", 0.0),
+        ("unheard_of", 1.0),
+        ("unknowns", "many"),
+    ],
+)
+def test_a_result_that_was_changed_is_refused(
+    tmp_path: Path, result: fm.Result, key: str, value: object
+) -> None:
+    document = json.loads(result_json(result)) | {key: value}
+    (tmp_path / "changed.json").write_text(json.dumps(document))
+    with pytest.raises(fm.InputError) as caught:
+        fm.read_result(tmp_path / "changed.json")
+    assert key in str(caught.value)
+
+
 def test_a_result_without_fields_cannot_be_drawn(tmp_path: Path, result: fm.Result) -> None:
     from matplotlib.figure import Figure
 

@@ -139,7 +139,7 @@ def test_parts_that_do_not_fit_are_refused(
 
 @pytest.mark.parametrize("turns", [0, -3, 2.5, np.nan])
 def test_turns_that_cannot_be_wound_are_refused(turns: float) -> None:
-    with pytest.raises(fm.InputError, match="a winding needs turns"):
+    with pytest.raises(fm.InputError, match="turns out of range"):
         fm.Winding(turns)
 
 
@@ -155,3 +155,46 @@ def test_singular_corners_are_those_of_the_core_outline(pot_26_16: fm.Design) ->
 def test_a_solid_post_has_no_corner_on_the_axis(pot_26_16: fm.Design) -> None:
     design = replace(pot_26_16, core=replace(pot_26_16.core, hole_diameter=0.0))
     assert np.all(singular_corners(meshed_section(design))[:, 0] > 0.0)
+
+
+@pytest.mark.parametrize(
+    ("make", "key"),
+    [
+        (lambda: fm.Gap("1 mm"), "gap.length"),
+        (lambda: fm.Winding("36"), "winding.turns"),
+        (lambda: fm.Winding(True), "winding.turns"),
+        (lambda: fm.Winding(5, (1, 2, 3, 4)), "winding.block"),
+        (lambda: fm.Winding(5, name=None), "winding.name"),
+        (lambda: fm.Block("1", 2, 0, 1), "winding.block.inner_radius"),
+        (lambda: fm.LinearCurve("2000"), "permeability"),
+        (lambda: fm.FroehlichCurve(2000, "0.4 T"), "saturation"),
+        (lambda: fm.PotCore(**(DIMENSIONS | {"height": "16 mm"})), "core.dimensions.height"),
+    ],
+)
+def test_texts_in_place_of_numbers_are_refused(make, key: str) -> None:
+    with pytest.raises(fm.InputError) as caught:
+        make()
+    assert caught.value.key == key
+
+
+@pytest.mark.parametrize(
+    ("change", "key"),
+    [
+        ({"current": "1 A"}, "drive.current"),
+        ({"tolerance": None}, "solve.tolerance"),
+        ({"core": None}, "core"),
+        ({"material": 2000}, "core.material"),
+    ],
+)
+def test_a_design_of_the_wrong_things_is_refused(
+    pot_26_16: fm.Design, change: dict[str, object], key: str
+) -> None:
+    with pytest.raises(fm.InputError) as caught:
+        replace(pot_26_16, **change)
+    assert caught.value.key == key
+
+
+def test_one_gap_winding_or_name_may_stand_for_a_list_of_one(pot_26_16: fm.Design) -> None:
+    single = replace(pot_26_16, gaps=fm.Gap(0.5e-3), windings=fm.Winding(50), driven="main")
+    assert (single.gaps, single.driven) == ((fm.Gap(0.5e-3),), ("main",))
+    assert single.windings == (fm.Winding(50),)
