@@ -31,7 +31,7 @@ Index = NDArray[np.int64]
 
 COARSENESS = 1.1
 """Element size at a corner over the room around it."""
-FINENESS = 1e-3
+FINENESS = 8e-3
 """Smallest element size along thin parts over the extent; their triangles are long then."""
 THINNEST = 1e-5
 """Smallest width of a part over the extent."""
