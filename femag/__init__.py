@@ -25,7 +25,7 @@ if TYPE_CHECKING:
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
     from femag.field.bounds import Bounds
-    from femag.geometry import Block, Gap, PotCore, Winding
+    from femag.geometry import Block, Gap, PotCore, Winding, catalogue, catalogue_core
     from femag.materials import FroehlichCurve, LinearCurve
     from femag.result import Result, solve
 
@@ -43,6 +43,8 @@ _HOME = {
     "Result": "femag.result",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
+    "catalogue": "femag.geometry",
+    "catalogue_core": "femag.geometry",
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
     "read_result": "femag.export.result_file",
@@ -64,6 +66,8 @@ __all__ = [
     "Result",
     "ToleranceError",
     "Winding",
+    "catalogue",
+    "catalogue_core",
     "design_toml",
     "plot",
     "read_design",

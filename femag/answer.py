@@ -37,6 +37,7 @@ def _described(design: Design) -> Text:
     gaps = [f"{1e3 * post:g} mm gap in the post"] if post else []
     gaps += [f"{1e3 * spacer:g} mm spacer in all legs"] if spacer else []
     parts = [
+        *([core.name] if core.name else []),
         f"pot core {1e3 * core.outer_diameter:g} x {1e3 * core.height:g} mm",
         *(gaps or ["no gap"]),
         f"{design.turns} turns",

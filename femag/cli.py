@@ -107,6 +107,41 @@ def demo_command(
     typer.echo(f"Change {file} and run: gapfield solve {file}")
 
 
+@app.command("cores")
+def cores_command(
+    size: Annotated[
+        str, typer.Argument(metavar="[SIZE]", help="A size, or a part of one to filter by.")
+    ] = "",
+    out: Annotated[
+        Path | None, typer.Option("--out", metavar="FILE", help="Draw the core into a file.")
+    ] = None,
+) -> None:
+    """List the cores of the catalogue, or show one.
+
+    Every number comes with its source.
+    """
+    from rich.console import Console
+
+    from femag.answer import WIDTH
+    from femag.core_answer import print_core, print_core_list
+    from femag.geometry import catalogue, matching_cores
+
+    found = matching_cores(catalogue(), size)
+    if out is not None:
+        if len(found) != 1:
+            raise InputError(
+                f"{len(found)} cores are meant", key="SIZE", value=size, accepted="one size"
+            )
+        from femag.plot import core_drawing, write_figure
+
+        write_figure(lambda ax: core_drawing(found[0].core(), ax), out)
+    console = Console(width=WIDTH)
+    if len(found) == 1:
+        print_core(found[0], console)
+    else:
+        print_core_list(found, console)
+
+
 def _with_current(design: Design, current: str | None) -> Design:
     if current is None:
         return design

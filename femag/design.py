@@ -149,7 +149,8 @@ def turns_per_area(design: Design) -> dict[str, float]:
 def design_hash(design: Design) -> str:
     """Return a hexadecimal digest of everything in the design that can move a result."""
     driven = tuple(winding.name for winding in design.driven_windings)
-    content = asdict(replace(design, title="", driven=driven))
+    core = replace(design.core, name="")
+    content = asdict(replace(design, title="", driven=driven, core=core))
     content["material"]["kind"] = type(design.material).__name__
     text = json.dumps(_with_floats(content), sort_keys=True)
     return hashlib.sha256(text.encode()).hexdigest()

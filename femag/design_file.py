@@ -21,7 +21,16 @@ from pydantic_core import PydanticCustomError
 
 from femag.design import Design
 from femag.errors import InputError, entry_key
-from femag.geometry import Block, Gap, PotCore, Winding
+from femag.geometry import (
+    DIMENSIONS,
+    LIMITS,
+    Block,
+    Gap,
+    Limit,
+    PotCore,
+    Winding,
+    catalogue_core,
+)
 from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
 from femag.units import ACCEPTED, exact_text, si_value
 
@@ -70,12 +79,18 @@ class PotDimensionsTable(_Table):
 class CoreTable(_Table):
     """The core."""
 
-    family: Literal["pot"] = Field(description="'pot'")
+    size: str | None = Field(default=None, description="a size of the catalogue, such as 'P 26/16'")
+    limit: Limit = Field(default="nominal", description=" or ".join(map(repr, LIMITS)))
+    catalogue: str | None = Field(default=None, description="the path of a catalogue file")
+    family: Literal["pot"] | None = Field(default=None, description="'pot'")
+    name: str = Field(default="", description="text in quotes")
     material: MaterialTable = Field(
         description="a table, such as { permeability = 2000 } or "
         "{ permeability = 2000, saturation = '0.45 T', exponent = 2 }"
     )
-    dimensions: PotDimensionsTable = Field(description="a table of lengths, [core.dimensions]")
+    dimensions: PotDimensionsTable | None = Field(
+        default=None, description="a table of lengths, [core.dimensions]"
+    )
 
 
 class GapTable(_Table):
@@ -170,10 +185,13 @@ def design_from_document(document: Mapping[str, Any], file: str | None = None) -
         If a key or a value cannot be used.
     """
     try:
-        return _design(DesignTable.model_validate(document))
+        folder = Path(file).parent if file else Path()
+        return _design(DesignTable.model_validate(document), folder)
     except ValidationError as error:
         raise _first_error(error, file) from error
     except InputError as error:
+        if error.file is not None:  # another file than the design's
+            raise
         value = written_value(document, error.key)
         raise InputError(
             error.problem,
@@ -186,11 +204,12 @@ def design_from_document(document: Mapping[str, Any], file: str | None = None) -
 
 def design_document(design: Design) -> Document:
     """Return the nested mapping that `design_from_document` turns into an equal design."""
-    lengths = {name: exact_text(value, "m", "m") for name, value in asdict(design.core).items()}
+    lengths = {name: exact_text(getattr(design.core, name), "m", "m") for name in DIMENSIONS}
     document: Document = {
         "title": design.title,
         "core": {
             "family": "pot",
+            "name": design.core.name,
             "material": _material_document(design.material),
             "dimensions": lengths,
         },
@@ -224,11 +243,11 @@ def written_value(document: Mapping[str, Any], key: str | None) -> object:
     return None if isinstance(found, Mapping | list) else found
 
 
-def _design(table: DesignTable) -> Design:
+def _design(table: DesignTable, folder: Path) -> Design:
     with _keyed("permeability saturation exponent", "core.material."):
         material = _curve(table.core.material)
     return Design(
-        core=PotCore(**table.core.dimensions.model_dump()),
+        core=_core(table.core, folder),
         windings=tuple(_winding(entry, index) for index, entry in enumerate(table.winding)),
         material=material,
         gaps=tuple(_gap(entry, index) for index, entry in enumerate(table.gap)),
@@ -237,6 +256,30 @@ def _design(table: DesignTable) -> Design:
         driven=tuple(table.drive.winding),
         title=table.title,
     )
+
+
+def _core(table: CoreTable, folder: Path) -> PotCore:
+    """Return the core of a size or of dimensions; paths resolve against the design file."""
+    if table.size is not None:
+        for key in ("family", "dimensions", "name"):
+            if key in table.model_fields_set:
+                raise InputError(
+                    "stands beside core.size", key=f"core.{key}", accepted="one of the two"
+                )
+        extra = () if table.catalogue is None else (folder / table.catalogue,)
+        return catalogue_core(table.size, extra).core(table.limit)
+    for key in ("limit", "catalogue"):
+        if key in table.model_fields_set:
+            raise InputError(
+                "needs core.size", key=f"core.{key}", accepted="core.size = 'P 26/16' beside it"
+            )
+    for key in ("family", "dimensions"):
+        if getattr(table, key) is None:
+            raise InputError(
+                "missing", key=f"core.{key}", accepted="core.size, or family and dimensions"
+            )
+    assert table.dimensions is not None
+    return PotCore(**table.dimensions.model_dump(), name=table.name)
 
 
 def _curve(table: MaterialTable) -> MagnetisationCurve:

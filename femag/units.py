@@ -68,11 +68,15 @@ _NUMBER_AND_UNIT = re.compile(
     r"\s*([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)\s*(\S.*?)?\s*"
 )
 
+_POWER = re.compile(r"(?<=[a-zA-Z])2$")
+
 ACCEPTED = {
     "m": "a length with its unit, such as '0.5 mm' or '26 mil'",
     "A": "a current with its unit, such as '1 A'",
     "T": "a flux density with its unit, such as '0.45 T' or '4500 G'",
     "A/m": "a field strength with its unit, such as '250 A/m' or '3 Oe'",
+    "m2": "an area with its unit, such as '63.4 mm2'",
+    "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
 }
@@ -120,7 +124,8 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
 
     registry = _registry()
     try:
-        factor = registry.Quantity(1.0, registry.parse_units(name)).to(unit).magnitude
+        units = (registry.parse_units(_POWER.sub("**2", text)) for text in (name, unit))
+        factor = registry.Quantity(1.0, next(units)).to(next(units)).magnitude
     except pint.DimensionalityError as error:
         raise InputError(
             f"{name!r} is not a unit of this quantity", value=text, accepted=accepted

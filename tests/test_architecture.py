@@ -18,7 +18,7 @@ LAYERS = (
     ("result",),
     ("export",),
     ("plot",),
-    ("answer",),
+    ("answer", "core_answer"),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

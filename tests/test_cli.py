@@ -268,3 +268,30 @@ def test_progress_shows_on_a_terminal(design: Path) -> None:
     process.kill()
     process.communicate()
     assert b"uH (" in shown
+
+
+def test_cores_lists_filters_and_shows_one(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    code, out, err = run(capsys, "cores")
+    assert (code, err) == (0, "")
+    assert max(len(line) for line in out.splitlines()) <= 80
+    assert "P 22/13" in out
+    assert "memory" in out
+    _, some, _ = run(capsys, "cores", "P 2")
+    assert "P 26/16" in some
+    assert "P 36/22" not in some
+    code, one, _ = run(capsys, "cores", "p36/22", "--out", tmp_path / "core.png")
+    assert code == 0
+    for text in ("IEC 63093-2", "35.000", "36.200", "35.600", "memory", "data sheet", "0.26"):
+        assert text in one
+    assert (tmp_path / "core.png").stat().st_size > 10_000
+
+
+def test_drawing_several_cores_into_one_file_is_refused(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    code, _, err = run(capsys, "cores", "P 2", "--out", tmp_path / "core.png")
+    assert code == 2
+    assert "2 cores are meant" in err
+    assert not list(tmp_path.iterdir())

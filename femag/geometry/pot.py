@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -12,6 +12,15 @@ from femag.geometry.gaps import Gap, gap_length
 from femag.geometry.section import Cut, Region, rectangle
 
 LENGTH = "a length above 0"
+DIMENSIONS = (
+    "outer_diameter",
+    "window_diameter",
+    "post_diameter",
+    "hole_diameter",
+    "height",
+    "window_height",
+)
+"""Names of a pot core's dimensions."""
 
 
 @dataclass(frozen=True)
@@ -28,6 +37,8 @@ class PotCore:
         Overall height of the set.
     window_height : float
         Height of the winding space of the set.
+    name : str
+        For print.
     """
 
     outer_diameter: float
@@ -36,14 +47,14 @@ class PotCore:
     height: float
     window_height: float
     hole_diameter: float = 0.0
+    name: str = field(default="", compare=False)
 
     def __post_init__(self) -> None:
-        for field in fields(self):
-            accepted = "a length of 0 or more" if field.name == "hole_diameter" else LENGTH
-            key = f"core.dimensions.{field.name}"
-            value = number(getattr(self, field.name), key, accepted)
+        for name in DIMENSIONS:
+            accepted = "a length of 0 or more" if name == "hole_diameter" else LENGTH
+            value = number(getattr(self, name), f"core.dimensions.{name}", accepted)
             if not 0.0 <= value < np.inf or (value == 0.0 and accepted == LENGTH):
-                raise _dimension_error("out of range", field.name, value, accepted)
+                raise _dimension_error("out of range", name, value, accepted)
         for smaller, larger in (
             ("hole_diameter", "post_diameter"),
             ("post_diameter", "window_diameter"),

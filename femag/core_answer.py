@@ -1,0 +1,98 @@
+"""The catalogue on the terminal: all cores in a list, or one with the source of every number."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+from femag.geometry import DIMENSIONS, LIMITS, CatalogueCore
+from femag.hand import EffectiveParameters, effective_parameters
+
+
+def print_core_list(cores: Sequence[CatalogueCore], console: Console) -> None:
+    """Print a line for each core: nominal dimensions, effective parameters, source."""
+    table = _table("size", "outside", "post", "hole", "window", "Ae", "le", "C1", "source")
+    for entry in cores:
+        core, effective = entry.core(), effective_parameters(entry.core())
+        table.add_row(
+            entry.size,
+            f"{_mm(core.outer_diameter)} x {_mm(core.height)}",
+            _mm(core.post_diameter),
+            _mm(core.hole_diameter),
+            f"{_mm(core.window_diameter)} x {_mm(core.window_height)}",
+            f"{1e6 * effective.area:.1f}",
+            f"{1e3 * effective.length:.1f}",
+            f"{1e-3 * effective.c1:.3f}",
+            ", ".join(sorted(set(entry.sources.values()))),
+        )
+    console.print(table, highlight=False)
+    console.print(
+        Text(
+            "mm, mm2, 1/mm; means of the limits, diameter x height. Ae, le and C1 by the rules of "
+            "IEC 60205 without slots for the leads, so that C1 comes out lower than published. "
+            "'memory' marks numbers that nobody has confirmed."
+        )
+    )
+
+
+def print_core(entry: CatalogueCore, console: Console) -> None:
+    """Print one core: limits and source of every dimension, and the effective parameters."""
+    console.print(Text(f"{entry.size}, {entry.standard}", style="bold"))
+    console.print(Text(f"from {entry.file}"))
+    table = _table("dimension", "from, mm", "to, mm", "nominal, mm", "source")
+    for name in DIMENSIONS:
+        limits = entry.dimensions[name]
+        numbers = (limits.low, limits.high, limits.nominal)
+        texts = [f"{1e3 * number:.3f}" for number in numbers]
+        table.add_row(name.replace("_", " "), *texts, entry.sources[name])
+    console.print(table, highlight=False)
+    console.print()
+    console.print(_effective_table(entry), highlight=False)
+    console.print(
+        Text(
+            "Computed by the rules of IEC 60205 without slots. minimum and maximum: least and most "
+            "core material within the limits."
+        )
+    )
+
+
+def _mm(length: float) -> str:
+    return f"{round(1e3 * length, 2):g}"
+
+
+def _effective_table(entry: CatalogueCore) -> Table:
+    table = _table("effective parameter", *LIMITS, "published")
+    values = [effective_parameters(entry.core(limit)) for limit in LIMITS]
+    for label, key, scale, digits in (
+        ("core factor C1, 1/mm", "core_factor", 1e-3, 4),
+        ("length le, mm", "effective_length", 1e3, 2),
+        ("area Ae, mm2", "effective_area", 1e6, 2),
+        ("least area, mm2", "least_area", 1e6, 2),
+    ):
+        published = entry.published.get(key)
+        table.add_row(
+            label,
+            *(f"{scale * _parameter(value, key):.{digits}f}" for value in values),
+            "-" if published is None else f"{scale * published:g}",
+        )
+    return table
+
+
+def _parameter(effective: EffectiveParameters, key: str) -> float:
+    return {
+        "core_factor": effective.c1,
+        "effective_length": effective.length,
+        "effective_area": effective.area,
+        "least_area": effective.least_area,
+    }[key]
+
+
+def _table(*columns: str) -> Table:
+    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
+    words = ("size", "source", "dimension", "effective parameter")
+    for name in columns:
+        table.add_column(name, justify="left" if name in words else "right")
+    return table
