@@ -7,7 +7,8 @@ from dataclasses import dataclass, field
 
 from femag.design import Design, meshed_section, turns_per_area
 from femag.geometry import Section
-from femag.materials import AIR, MagnetisationCurve
+from femag.geometry.pot import gap_permeabilities
+from femag.materials import AIR, LinearCurve, MagnetisationCurve
 
 
 @dataclass(frozen=True)
@@ -36,5 +37,15 @@ class FieldProblem:
 def field_problem(design: Design, section: Section | None = None) -> FieldProblem:
     """Return the field problem of a design, on `section` instead of its meshed one if given."""
     section = section or meshed_section(design)
-    curves = {region.name: design.material for region in section.regions if region.role == "core"}
+    fillings = {
+        name: LinearCurve(permeability)
+        for name, permeability in gap_permeabilities(design.core, design.gaps).items()
+        if permeability != 1.0
+    }
+    curves: dict[str, MagnetisationCurve] = {}
+    for region in section.regions:
+        if region.role == "core":
+            curves[region.name] = design.material
+        elif region.name in fillings:
+            curves[region.name] = fillings[region.name]
     return FieldProblem(section, curves, turns_per_area(design))

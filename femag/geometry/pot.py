@@ -2,13 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
+from types import MappingProxyType
 
 import numpy as np
 
-from femag.errors import InputError, entry_key, number
-from femag.geometry.gaps import Gap, gap_length
+from femag.errors import InputError, number
+from femag.geometry.gaps import (
+    Gap,
+    GapPiece,
+    gap_length,
+    piece_names,
+    post_pieces,
+    ring_pieces,
+)
 from femag.geometry.section import Cut, Region, rectangle
 
 LENGTH = "a length above 0"
@@ -102,15 +110,22 @@ def half_window_height(core: PotCore, gaps: Sequence[Gap]) -> float:
 
 
 def pot_regions(core: PotCore, gaps: Sequence[Gap]) -> tuple[Region, ...]:
-    """Return post, plates, ring, gaps and window as regions, z = 0 in the middle."""
-    spacer = gap_length(gaps, "all")
-    post_gap = spacer + gap_length(gaps, "post")
-    _check_gap(core, gaps)
+    """Return post, plates, ring, gaps and window as regions, z = 0 in the middle.
+
+    A leg with one opening has an upper and a lower part, unless the opening lies at a plate;
+    the parts and openings of one with several are numbered from below.
+
+    Raises
+    ------
+    InputError
+        If a gap does not fit.
+    """
     half_window = half_window_height(core, gaps)
     half_height = half_window + core.plate_thickness
+    in_post, in_ring = post_pieces(gaps, core.window_height), ring_pieces(gaps)
     return (
-        *_leg(core.hole_radius, core.post_radius, half_window, post_gap, "post"),
-        *_leg(core.window_radius, core.outer_radius, half_window, spacer, "ring"),
+        *_leg(core.hole_radius, core.post_radius, half_window, in_post, "post"),
+        *_leg(core.window_radius, core.outer_radius, half_window, in_ring, "ring"),
         Region(
             "upper plate",
             "core",
@@ -131,11 +146,10 @@ def pot_regions(core: PotCore, gaps: Sequence[Gap]) -> tuple[Region, ...]:
 
 def pot_cuts(core: PotCore, gaps: Sequence[Gap]) -> tuple[Cut, ...]:
     """Return the cuts through the upper half whose mean flux density is reported."""
-    face = (gap_length(gaps, "all") + gap_length(gaps, "post")) / 2
     half_window = half_window_height(core, gaps)
     half_height = half_window + core.plate_thickness
     return (
-        Cut("post, at the gap", (core.hole_radius, face), (core.post_radius, face)),
+        _cut_at_gap(core, post_pieces(gaps, core.window_height), half_window),
         Cut("post, at the plate", (core.hole_radius, half_window), (core.post_radius, half_window)),
         Cut("plate, at the post", (core.post_radius, half_window), (core.post_radius, half_height)),
         Cut(
@@ -151,24 +165,59 @@ def pot_cuts(core: PotCore, gaps: Sequence[Gap]) -> tuple[Cut, ...]:
     )
 
 
-def _leg(r0: float, r1: float, half_window: float, gap: float, name: str) -> Iterator[Region]:
-    if gap == 0.0:
-        yield Region(name, "core", rectangle(r0, r1, -half_window, half_window))
-        return
-    yield Region(f"upper {name}", "core", rectangle(r0, r1, gap / 2, half_window))
-    yield Region(f"{name} gap", "air", rectangle(r0, r1, -gap / 2, gap / 2))
-    yield Region(f"lower {name}", "core", rectangle(r0, r1, -half_window, -gap / 2))
+class CutWithoutTwin(Cut):
+    """A cut whose mirror image lies at nothing that deserves its name."""
+
+    def mirrored(self) -> Cut:
+        """Return the cut itself."""
+        return self
 
 
-def _check_gap(core: PotCore, gaps: Sequence[Gap]) -> None:
-    for index, gap in enumerate(gaps):
-        if gap.leg == "post" and gap.length >= core.window_height:
-            raise InputError(
-                "the gap is longer than the post",
-                key=f"{entry_key('gap', index)}.length",
-                value=gap.length,
-                accepted=f"less than the window height, {core.window_height * 1e3:g} mm",
-            )
+def _cut_at_gap(core: PotCore, pieces: Sequence[GapPiece], half_window: float) -> Cut:
+    """Return the cut along the outermost face that is not at a plate, above rather than below."""
+    faces = [face for piece in pieces for face in (piece.bottom, piece.top)]
+    face = max((face for face in faces if abs(face) < half_window), key=lambda z: (abs(z), z),
+               default=0.0)  # fmt: skip
+    lopsided = bool(pieces) and pieces[-1].top != -pieces[0].bottom
+    kind = CutWithoutTwin if lopsided else Cut
+    return kind("post, at the gap", (core.hole_radius, face), (core.post_radius, face))
+
+
+def gap_permeabilities(core: PotCore, gaps: Sequence[Gap]) -> Mapping[str, float]:
+    """Return the relative permeability of the region of every gap, by its name."""
+    legs = {"post": post_pieces(gaps, core.window_height), "ring": ring_pieces(gaps)}
+    return MappingProxyType(
+        {
+            name: piece.permeability
+            for leg, pieces in legs.items()
+            for name, piece in zip(piece_names(pieces, leg), pieces, strict=True)
+        }
+    )
+
+
+def _leg(
+    r0: float, r1: float, half_window: float, pieces: Sequence[GapPiece], leg: str
+) -> Iterator[Region]:
+    """Yield the parts and openings of a leg from above."""
+    floors = (-half_window, *(piece.top for piece in pieces))
+    ceilings = (*(piece.bottom for piece in pieces), half_window)
+    if not pieces:
+        names: tuple[str, ...] = (leg,)
+    elif len(pieces) == 1:
+        names = (f"lower {leg}", f"upper {leg}")
+    else:
+        first = 1 if ceilings[0] > floors[0] else 0
+        names = tuple(f"{leg} {place}" for place in range(first, first + len(floors)))
+    parts = [
+        Region(name, "core", rectangle(r0, r1, floor, ceiling))
+        for name, floor, ceiling in zip(names, floors, ceilings, strict=True)
+        if ceiling > floor
+    ]
+    openings = [
+        Region(name, "air", rectangle(r0, r1, piece.bottom, piece.top))
+        for name, piece in zip(piece_names(pieces, leg), pieces, strict=True)
+    ]
+    yield from sorted((*parts, *openings), key=lambda part: -part.polygon[0][1])
 
 
 def _dimension_error(problem: str, name: str, value: float, accepted: str) -> InputError:

@@ -4,15 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
 from femag.errors import InputError
 from femag.geometry import Gap, PotCore, gap_length, half_window_height
+from femag.geometry.gaps import GapPiece, piece_names, post_pieces, ring_pieces
 from femag.hand.effective import core_sections
 from femag.hand.fringing import FORMULAS, GapShape, no_fringing
 from femag.hand.network import Branch, network_state
-from femag.materials import AIR, MagnetisationCurve
+from femag.materials import AIR, LinearCurve, MagnetisationCurve
 
 Tube = tuple[float, float, MagnetisationCurve]
 """Length in m, area in m2, and curve of one branch."""
@@ -72,13 +74,15 @@ def hand_estimates(
     NumericalError
         If the network cannot be solved.
     """
-    shapes = gap_shapes(core, gaps)
-    formulas = FORMULAS if shapes else FORMULAS[:1]
+    openings = _openings(core, gaps)
+    formulas = FORMULAS if openings else FORMULAS[:1]
     return tuple(
         HandEstimate(
             name=formula.name,
             inductance=_inductance(core, gaps, turns, current, curve, formula.factor),
-            in_range=all(formula.in_range(shape) for shape in shapes),
+            in_range=all(
+                formula.in_range(opening.shape) and not opening.at_plate for opening in openings
+            ),
             range=formula.range,
             source=formula.source,
         )
@@ -101,18 +105,52 @@ def plain_inductance(
 
 
 def gap_shapes(core: PotCore, gaps: Sequence[Gap]) -> tuple[GapShape, ...]:
-    """Return the shape of the gap in the post and of that in the ring, as far as there are any.
+    """Return the shape of every opening: those of the post from below, then that of the ring.
 
-    A spacer opens both legs in the middle, so that in the post it adds to the gap that is ground.
+    A spacer opens both legs in the middle; in the post it adds to a gap that is ground there. The
+    height of a shape ends where the nearer side of its post does: at the plate, or in the middle of
+    the core towards the next gap. A gap at a plate has the height of its other side.
     """
-    spacer, half_height = gap_length(gaps, "all"), half_window_height(core, gaps)
-    post = spacer + gap_length(gaps, "post")
-    shapes = []
-    if post > 0.0:
-        shapes.append(GapShape(post, core.post_radius, core.hole_radius, half_height, "post"))
-    if spacer > 0.0:
-        shapes.append(GapShape(spacer, core.outer_radius, core.window_radius, half_height, "ring"))
-    return tuple(shapes)
+    return tuple(opening.shape for opening in _openings(core, gaps))
+
+
+@dataclass(frozen=True)
+class _Opening:
+    """A gap in the network: its node, its shape, what fills its block, whether it is at a plate."""
+
+    node: str
+    shape: GapShape
+    filling: MagnetisationCurve
+    at_plate: bool = False
+
+
+def _openings(core: PotCore, gaps: Sequence[Gap]) -> tuple[_Opening, ...]:
+    half_height, in_ring = half_window_height(core, gaps), ring_pieces(gaps)
+    in_post = post_pieces(gaps, core.window_height)
+    found = []
+    for node, piece, sides in zip(
+        piece_names(in_post, "post"), in_post, _heights(in_post, half_height), strict=True
+    ):
+        at_plate = abs(piece.bottom) == half_height or abs(piece.top) == half_height
+        height = max(sides) if at_plate else min(sides)
+        shape = GapShape(piece.length, core.post_radius, core.hole_radius, height, "post")
+        found.append(_Opening(node, shape, LinearCurve(piece.permeability), at_plate))
+    for node, piece in zip(piece_names(in_ring, "ring"), in_ring, strict=True):
+        shape = GapShape(piece.length, core.outer_radius, core.window_radius, half_height, "ring")
+        found.append(_Opening(node, shape, LinearCurve(piece.permeability)))
+    return tuple(found)
+
+
+def _heights(pieces: Sequence[GapPiece], half_height: float) -> list[tuple[float, float]]:
+    """Return the room below and above each piece's middle in m: to mid core or to the plate."""
+    if not pieces:
+        return []
+    between = [0.5 * (low.top + high.bottom) for low, high in pairwise(pieces)]
+    ends = [-half_height, *between, half_height]
+    return [
+        (piece.middle - low, high - piece.middle)
+        for piece, (low, high) in zip(pieces, pairwise(ends), strict=True)
+    ]
 
 
 def pot_network(
@@ -135,22 +173,30 @@ def pot_network(
     curve : MagnetisationCurve
         What the core is made of.
     factor : callable
-        Fringing factor of a gap; its excess over 1 is a branch parallel to the gap's block.
+        Fringing factor of a gap; its excess over 1 is a branch of air parallel to the gap's
+        block, which has the permeability of what fills it.
     """
-    shapes: dict[str, GapShape] = {shape.leg: shape for shape in gap_shapes(core, gaps)}
+    openings = _openings(core, gaps)
     links: list[tuple[str, list[Tube]]] = []
     for section in core_sections(core, gap_length(gaps, "post")):
         links.append((section.name, [(section.length, section.area, curve)]))
-        if (shape := shapes.get(section.name)) is not None:
-            areas = (shape.area, shape.area * (factor(shape) - 1.0))
-            gap_tubes: list[Tube] = [(shape.length, area, AIR) for area in areas if area > 0.0]
-            links.append((f"{section.name} gap", gap_tubes))
+        for opening in openings:
+            if opening.shape.leg == section.name:
+                links.append((opening.node, _gap_tubes(opening, factor)))
     nodes = [name for name, _ in links]
     return tuple(
         Branch(node, end, length, area, law, mmf if node == "post" else 0.0)
         for (node, tubes), end in zip(links, nodes[1:] + nodes[:1], strict=True)
         for length, area, law in tubes
     )
+
+
+def _gap_tubes(opening: _Opening, factor: Callable[[GapShape], float]) -> list[Tube]:
+    """Return the block between the faces and, if there is any, the air beside it."""
+    shape = opening.shape
+    block = (shape.length, shape.area, opening.filling)
+    beside = shape.area * (factor(shape) - 1.0)
+    return [block, (shape.length, beside, AIR)] if beside > 0.0 else [block]
 
 
 def _inductance(

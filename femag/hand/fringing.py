@@ -22,7 +22,7 @@ from femag.units import MU_0
 
 @dataclass(frozen=True)
 class GapShape:
-    """A gap between two equal faces, in the middle of the window.
+    """A gap between two equal faces.
 
     Parameters
     ----------

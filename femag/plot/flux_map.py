@@ -13,6 +13,7 @@ from matplotlib.tri import Triangulation
 
 from femag.design import whole_section
 from femag.geometry import Region
+from femag.geometry.gaps import GapPiece, post_pieces
 from femag.quantities import FieldMap, field_map, typical_peak
 from femag.result import Result
 
@@ -52,6 +53,8 @@ def flux_map(result: Result, ax: Axes, lines: int = 18) -> Axes:
 def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
     """Draw flux lines over |B| around the outer edge of the post's gap, with the copper beside it.
 
+    Of several gaps in the post the top one is drawn.
+
     Parameters
     ----------
     result : Result
@@ -67,13 +70,15 @@ def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
         If the result was read from a file and holds no fields.
     """
     core = result.design.core
-    gap = sum(gap.length for gap in result.design.gaps)
+    gap = (GapPiece(0.0, 0.0), *post_pieces(result.design.gaps, core.window_height))[-1]
     copper = min(
         r for region in _regions(result) if region.role == "winding" for r, _ in region.polygon
     )
     room = core.window_radius - core.post_radius
-    reach = min(max(2.5 * gap, 2.0 * (copper - core.post_radius), 0.15 * core.post_radius), room)
-    window = (max(core.post_radius - reach, 0.0), core.post_radius + reach, -reach, reach)
+    beside = 2.0 * (copper - core.post_radius)
+    reach = min(max(2.5 * gap.length, beside, 0.15 * core.post_radius), room)
+    left, right = max(core.post_radius - reach, 0.0), core.post_radius + reach
+    window = (left, right, gap.middle - reach, gap.middle + reach)
     return _drawn_map(result, ax, window, lines)
 
 

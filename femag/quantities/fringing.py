@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from femag.design import Design
 from femag.field.bounds import FieldSolution
-from femag.geometry import gap_length
+from femag.geometry.gaps import GapPiece, post_pieces, ring_pieces
 from femag.units import MU_0
 
 
@@ -26,12 +28,17 @@ def gap_factor(design: Design, solution: FieldSolution) -> float | None:
 
 
 def plain_gap_reluctance(design: Design) -> float:
-    """Return the sum of length over mu0 area of the gaps in 1/H, without fringing."""
-    core = design.core
-    spacer = gap_length(design.gaps, "all")
+    """Return the sum of length over mu area of all openings in 1/H, without fringing."""
+    core, gaps = design.core, design.gaps
     post = np.pi * (core.post_radius**2 - core.hole_radius**2)
     ring = np.pi * (core.outer_radius**2 - core.window_radius**2)
-    return float(((spacer + gap_length(design.gaps, "post")) / post + spacer / ring) / MU_0)
+    in_post = _length_in_air(post_pieces(gaps, core.window_height))
+    return float((in_post / post + _length_in_air(ring_pieces(gaps)) / ring) / MU_0)
+
+
+def _length_in_air(pieces: Sequence[GapPiece]) -> float:
+    """Return the length of air in m that has the plain reluctance of all pieces."""
+    return sum(piece.length / piece.permeability for piece in pieces)
 
 
 def core_coenergy_share(solution: FieldSolution) -> float:

@@ -9,6 +9,7 @@ from femag.design import whole_section
 from femag.field.adapt import adapted_solution, inductance_bounds, refinements
 from femag.field.bounds import Bounds, FieldSolution
 from femag.field.problem import field_problem
+from femag.geometry import DIMENSIONS
 
 SATURATIONS = [0.01, 6.0, 60.0]
 
@@ -98,7 +99,7 @@ def test_scaling_lengths_and_current_scales_a_saturating_core(
 
 
 def scaled(design: fm.Design, scale: float) -> fm.Design:
-    core = fm.PotCore(**{name: scale * value for name, value in vars(design.core).items()})
+    core = fm.PotCore(**{name: scale * getattr(design.core, name) for name in DIMENSIONS})
     block = fm.Block(**{name: scale * v for name, v in vars(design.windings[0].block).items()})
     gaps = tuple(fm.Gap(scale * gap.length, gap.leg) for gap in design.gaps)
     return replace(design, core=core, windings=(fm.Winding(50, block),), gaps=gaps)
