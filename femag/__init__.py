@@ -25,12 +25,31 @@ if TYPE_CHECKING:
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
     from femag.field.bounds import Bounds
-    from femag.geometry import Block, Gap, PotCore, Winding, catalogue, catalogue_core
+    from femag.geometry import (
+        ALUMINIUM,
+        COPPER,
+        Block,
+        Foil,
+        Former,
+        Gap,
+        LitzWire,
+        PotCore,
+        RoundWire,
+        Winding,
+        catalogue,
+        catalogue_core,
+    )
     from femag.materials import FroehlichCurve, LinearCurve
     from femag.result import Result, solve
 
 _HOME = {
+    "ALUMINIUM": "femag.geometry",
     "Block": "femag.geometry",
+    "COPPER": "femag.geometry",
+    "Foil": "femag.geometry",
+    "Former": "femag.geometry",
+    "LitzWire": "femag.geometry",
+    "RoundWire": "femag.geometry",
     "Bounds": "femag.field.bounds",
     "Design": "femag.design",
     "FroehlichCurve": "femag.materials",
@@ -53,17 +72,23 @@ _HOME = {
 }
 
 __all__ = [
+    "ALUMINIUM",
+    "COPPER",
     "Block",
     "Bounds",
     "Design",
+    "Foil",
+    "Former",
     "FroehlichCurve",
     "Gap",
     "GapfieldError",
     "InputError",
     "LinearCurve",
+    "LitzWire",
     "NumericalError",
     "PotCore",
     "Result",
+    "RoundWire",
     "ToleranceError",
     "Winding",
     "catalogue",

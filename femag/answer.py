@@ -7,7 +7,7 @@ from rich.table import Table
 from rich.text import Text
 
 from femag.design import Design
-from femag.geometry import gap_length
+from femag.geometry import Gap
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
 
@@ -25,6 +25,8 @@ def print_answer(result: Result, console: Console) -> None:
     if design.title:
         lines.append(Text(design.title, style="bold"))
     lines += [_described(design), "", _inductances(result), "", _flux_densities(result), ""]
+    if result.copper:
+        lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
     lines += [Text(_provenance(result)), "", Text(_cautions(result))]
     for line in lines:
@@ -33,9 +35,7 @@ def print_answer(result: Result, console: Console) -> None:
 
 def _described(design: Design) -> Text:
     core = design.core
-    post, spacer = gap_length(design.gaps, "post"), gap_length(design.gaps, "all")
-    gaps = [f"{1e3 * post:g} mm gap in the post"] if post else []
-    gaps += [f"{1e3 * spacer:g} mm spacer in all legs"] if spacer else []
+    gaps = [_described_gap(gap) for gap in design.gaps]
     parts = [
         *([core.name] if core.name else []),
         f"pot core {1e3 * core.outer_diameter:g} x {1e3 * core.height:g} mm",
@@ -44,6 +44,19 @@ def _described(design: Design) -> Text:
         f"{design.current:g} A",
     ]
     return Text(f"{', '.join(parts)}\n{design.material.label}")
+
+
+def _described_gap(gap: Gap) -> str:
+    words = [f"{1e3 * gap.length:g} mm gap in the post"]
+    if gap.leg == "all":
+        words = [f"{1e3 * gap.length:g} mm spacer in all legs"]
+    if gap.pieces > 1:
+        words.append(f"in {gap.pieces} pieces")
+    if gap.offset:
+        words.append(f"{1e3 * gap.offset:+g} mm off the middle")
+    if gap.permeability != 1.0:
+        words.append(f"of permeability {gap.permeability:g}")
+    return " ".join(words)
 
 
 def _inductances(result: Result) -> Table:
@@ -90,6 +103,29 @@ def _flux_densities(result: Result) -> Table:
     table = _columns("mean flux density", ("T", "right"), ("section, mm2", "right"))
     for mean in result.section_means:
         table.add_row(mean.name, f"{mean.flux_density:.4f}", f"{1e6 * mean.area:.1f}")
+    return table
+
+
+def _copper(result: Result) -> Table:
+    table = _columns(
+        "winding",
+        ("turns", "right"),
+        ("layers", "right"),
+        ("fill", "right"),
+        ("mean turn", "right"),
+        ("wire", "right"),
+        ("resistance", "left"),
+    )
+    for copper in result.copper:
+        table.add_row(
+            copper.name,
+            f"{copper.turns}",
+            f"{copper.layers}",
+            f"{copper.fill:.2f}",
+            f"{1e3 * copper.mean_turn_length:.1f} mm",
+            f"{copper.wire_length:.3g} m",
+            f"{with_unit(copper.resistance, 'ohm', 3)} at {copper.temperature:g} C",
+        )
     return table
 
 

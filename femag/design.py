@@ -8,20 +8,24 @@ from collections.abc import Sequence
 from dataclasses import asdict, dataclass, replace
 from typing import Any
 
-from femag.errors import InputError, number
+from femag.errors import InputError, entry_key, number
 from femag.geometry import (
     Block,
+    Former,
     Gap,
+    Layers,
     PotCore,
     Region,
     Section,
     Winding,
     half_window_height,
     is_mirror_symmetric,
+    laid_turns,
     open_section,
     pot_regions,
     upper_half,
     winding_region,
+    winding_room,
 )
 from femag.materials import MagnetisationCurve
 
@@ -118,14 +122,55 @@ def whole_section(design: Design) -> Section:
     """
     core, gaps = design.core, design.gaps
     half_window = half_window_height(core, gaps)
-    window = Block(core.post_radius, core.window_radius, -half_window, half_window)
+    window = _window(core, gaps)
     regions = pot_regions(core, gaps)
     coils = tuple(
-        winding_region(winding, window, index) for index, winding in enumerate(design.windings)
+        winding_region(_with_laid_block(winding, window, gaps, index), window, index)
+        for index, winding in enumerate(design.windings)
     )
     _check_coils(coils)
     extent = max(core.outer_radius, half_window + core.plate_thickness)
     return open_section((*regions, *coils), FAR_RADIUS * extent)
+
+
+def laid_windings(design: Design) -> dict[str, Layers]:
+    """Return the layers of every winding that has a conductor, by name.
+
+    Raises
+    ------
+    InputError
+        If turns do not fit.
+    """
+    window = _window(design.core, design.gaps)
+    return {
+        winding.name: _laid(winding, window, design.gaps, index)
+        for index, winding in enumerate(design.windings)
+        if winding.conductor is not None
+    }
+
+
+def _window(core: PotCore, gaps: Sequence[Gap]) -> Block:
+    half_window = half_window_height(core, gaps)
+    return Block(core.post_radius, core.window_radius, -half_window, half_window)
+
+
+def _with_laid_block(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Winding:
+    if winding.conductor is None:
+        return winding
+    return replace(winding, block=_laid(winding, window, gaps, index).block)
+
+
+def _laid(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Layers:
+    assert winding.conductor is not None
+    own = entry_key("winding", index)
+    try:
+        room = winding.block or winding_room(winding.former or Former(), window, gaps)
+        return laid_turns(winding.turns, winding.conductor, room)
+    except InputError as error:
+        key = f"{own}.{(error.key or 'conductor').removeprefix('winding.')}"
+        raise InputError(
+            error.problem, key=key, value=error.value, accepted=error.accepted
+        ) from error
 
 
 def meshed_section(design: Design) -> Section:

@@ -22,24 +22,40 @@ from pydantic_core import PydanticCustomError
 from femag.design import Design
 from femag.errors import InputError, entry_key
 from femag.geometry import (
+    ALUMINIUM,
+    COPPER,
     DIMENSIONS,
     LIMITS,
     Block,
+    Conductor,
+    Foil,
+    Former,
     Gap,
     Limit,
+    LitzWire,
     PotCore,
+    RoundWire,
     Winding,
     catalogue_core,
 )
 from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
-from femag.units import ACCEPTED, exact_text, si_value
+from femag.units import ACCEPTED, TEMPERATURE, celsius, exact_text, si_value
 
 Document = dict[str, Any]
+
+METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
 
 
 def _read_quantity(unit: str, text: object) -> float:
     try:
         return si_value(text, unit)
+    except InputError as error:
+        raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
+
+
+def _read_temperature(text: object) -> float:
+    try:
+        return celsius(text)
     except InputError as error:
         raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
 
@@ -50,6 +66,7 @@ Length = Annotated[
 Current = Annotated[
     float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
+Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
 FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
 
 
@@ -98,6 +115,10 @@ class GapTable(_Table):
 
     length: Length
     leg: Literal["post", "all"] = Field(default="post", description="'post' or 'all'")
+    pieces: int = Field(default=1, description="a whole number from 1 to 100")
+    pitch: Length | None = Field(default=None, description=ACCEPTED["m"])
+    offset: Length = 0.0
+    permeability: float = Field(default=1.0, description="relative permeability, 1 or more")
 
 
 class BlockTable(_Table):
@@ -109,6 +130,44 @@ class BlockTable(_Table):
     top: Length
 
 
+class LitzTable(_Table):
+    """A bundle of strands; bare strands."""
+
+    strands: int = Field(description="a whole number from 2")
+    strand: Length
+    packing: float | None = Field(
+        default=None, description="share of metal in the bundle, such as 0.5"
+    )
+    outer_diameter: Length | None = Field(default=None, description=ACCEPTED["m"])
+
+
+class ConductorTable(_Table):
+    """What is wound: bare sizes, one of round, litz and foil."""
+
+    round: Length | None = Field(default=None, description=ACCEPTED["m"])
+    litz: LitzTable | None = Field(
+        default=None, description="a table such as { strands = 60, strand = '0.1 mm' }"
+    )
+    foil: Length | None = Field(default=None, description=ACCEPTED["m"])
+    width: Length | None = Field(default=None, description=ACCEPTED["m"])
+    insulation: Length = 0.0
+    metal: Literal["copper", "aluminium"] = Field(
+        default="copper", description="'copper' or 'aluminium'"
+    )
+    temperature: Temperature = 20.0
+
+
+class FormerTable(_Table):
+    """What keeps the conductor away from the core."""
+
+    wall: Length = 0.0
+    flange: Length = 0.0
+    post_clearance: Length = 0.0
+    plate_clearance: Length = 0.0
+    ring_clearance: Length = 0.0
+    gap_clearance: Length = 0.0
+
+
 class WindingTable(_Table):
     """One winding."""
 
@@ -116,6 +175,12 @@ class WindingTable(_Table):
     name: str = Field(default="main", description="a name in quotes")
     block: BlockTable | None = Field(
         default=None, description="a table of lengths, [winding.block]"
+    )
+    conductor: ConductorTable | None = Field(
+        default=None, description="a table such as { round = '0.3 mm' }, [winding.conductor]"
+    )
+    former: FormerTable | None = Field(
+        default=None, description="a table of lengths, [winding.former]"
     )
 
 
@@ -213,7 +278,7 @@ def design_document(design: Design) -> Document:
             "material": _material_document(design.material),
             "dimensions": lengths,
         },
-        "gap": [{"leg": g.leg, "length": exact_text(g.length, "m", "m")} for g in design.gaps],
+        "gap": [_gap_document(gap) for gap in design.gaps],
         "winding": [_winding_document(winding) for winding in design.windings],
         "drive": {"current": exact_text(design.current, "A")},
         "solve": {"tolerance": float(design.tolerance)},
@@ -297,13 +362,48 @@ def _curve(table: MaterialTable) -> MagnetisationCurve:
 
 def _gap(table: GapTable, index: int) -> Gap:
     with _renumbered("gap", index):
-        return Gap(table.length, table.leg)
+        return Gap(**table.model_dump())
 
 
 def _winding(table: WindingTable, index: int) -> Winding:
     with _renumbered("winding", index):
         block = None if table.block is None else Block(**table.block.model_dump())
-        return Winding(table.turns, block, table.name)
+        former = None if table.former is None else Former(**table.former.model_dump())
+        if table.conductor is None:
+            return Winding(table.turns, block, table.name, former=former)
+        conductor = _conductor(table.conductor)
+        return Winding(
+            table.turns,
+            block,
+            table.name,
+            conductor,
+            former,
+            METALS[table.conductor.metal],
+            table.conductor.temperature,
+        )
+
+
+def _conductor(table: ConductorTable) -> Conductor:
+    kinds = [kind for kind in ("round", "litz", "foil") if getattr(table, kind) is not None]
+    if len(kinds) != 1:
+        raise InputError(
+            f"{len(kinds)} kinds of conductor", key="conductor",
+            accepted="one of round, litz and foil",
+        )  # fmt: skip
+    if table.width is not None and table.foil is None:
+        raise InputError("only foil has a width", key="conductor.width", accepted="foil beside it")
+    if table.round is not None:
+        return RoundWire(table.round, table.insulation)
+    if table.foil is not None:
+        return Foil(table.foil, table.width, table.insulation)
+    assert table.litz is not None
+    return LitzWire(
+        table.litz.strands,
+        table.litz.strand,
+        table.litz.packing,
+        table.insulation,
+        table.litz.outer_diameter,
+    )
 
 
 def _material_document(curve: MagnetisationCurve) -> Document:
@@ -320,12 +420,52 @@ def _material_document(curve: MagnetisationCurve) -> Document:
             raise TypeError(f"{type(curve).__name__} has no place in a design file")
 
 
+def _gap_document(gap: Gap) -> Document:
+    document: Document = {"leg": gap.leg, "length": exact_text(gap.length, "m", "m")}
+    if gap.pieces != 1:
+        document["pieces"] = int(gap.pieces)
+    if gap.pitch is not None:
+        document["pitch"] = exact_text(gap.pitch, "m", "m")
+    if gap.offset != 0.0:
+        document["offset"] = exact_text(gap.offset, "m", "m")
+    if gap.permeability != 1.0:
+        document["permeability"] = float(gap.permeability)
+    return document
+
+
 def _winding_document(winding: Winding) -> Document:
     document: Document = {"name": winding.name, "turns": int(winding.turns)}
     if winding.block is not None:
-        block = asdict(winding.block)
-        document["block"] = {name: exact_text(value, "m", "m") for name, value in block.items()}
+        document["block"] = _lengths_document(asdict(winding.block))
+    if winding.conductor is not None:
+        document["conductor"] = _conductor_document(winding.conductor) | {
+            "metal": next(name for name, metal in METALS.items() if metal == winding.metal),
+            "temperature": f"{float(winding.temperature)!r} C",
+        }
+    if winding.former is not None:
+        document["former"] = _lengths_document(asdict(winding.former))
     return document
+
+
+def _conductor_document(conductor: Conductor) -> Document:
+    insulation = {"insulation": exact_text(conductor.insulation, "m", "m")}
+    match conductor:
+        case RoundWire(diameter):
+            return {"round": exact_text(diameter, "m", "m")} | insulation
+        case LitzWire(strands, strand, packing, _, outer):
+            litz: Document = {"strands": int(strands), "strand": exact_text(strand, "m", "m")}
+            if packing is not None:
+                litz["packing"] = float(packing)
+            if outer is not None:
+                litz["outer_diameter"] = exact_text(outer, "m", "m")
+            return {"litz": litz} | insulation
+        case Foil(thickness, width):
+            foil = {"foil": exact_text(thickness, "m", "m")} | insulation
+            return foil if width is None else foil | {"width": exact_text(width, "m", "m")}
+
+
+def _lengths_document(lengths: Mapping[str, float]) -> Document:
+    return {name: exact_text(value, "m", "m") for name, value in lengths.items()}
 
 
 @contextmanager
@@ -347,7 +487,8 @@ def _renumbered(name: str, index: int) -> Iterator[None]:
     try:
         yield
     except InputError as error:
-        key = entry_key(name, index) + (error.key or name).removeprefix(name)
+        inside = (error.key or "").removeprefix(name).lstrip(".")
+        key = f"{entry_key(name, index)}.{inside}".rstrip(".")
         raise InputError(
             error.problem, key=key, value=error.value, accepted=error.accepted
         ) from error

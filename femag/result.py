@@ -15,9 +15,11 @@ from femag.field.problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
     SectionMean,
+    WoundCopper,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
+    wound_copper,
 )
 
 LIBRARIES = ("gapfield", "numpy", "scipy", "scikit-fem", "gmsh")
@@ -64,6 +66,8 @@ class Result:
         Every hand formula beside the field.
     section_means : tuple of SectionMean
         Mean flux density through cuts of the core, T, from the flux side.
+    copper : tuple of WoundCopper
+        Layers, wire and resistance of every winding that has a conductor.
     unknowns, refinements : int
         Unknowns of both sides on the last mesh; number of refinements.
     seconds : float
@@ -85,6 +89,7 @@ class Result:
     gap_factor: float | None
     hand: tuple[Comparison, ...]
     section_means: tuple[SectionMean, ...]
+    copper: tuple[WoundCopper, ...]
     unknowns: int
     refinements: int
     seconds: float
@@ -175,6 +180,7 @@ def solve(
             for estimate in hand_estimates(*hand_input)
         ),
         section_means=section_means(design, solution),
+        copper=wound_copper(design),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,

@@ -68,6 +68,7 @@ _NUMBER_AND_UNIT = re.compile(
     r"\s*([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)\s*(\S.*?)?\s*"
 )
 
+TEMPERATURE = "a temperature in degrees Celsius, such as '100 C'"
 _POWER = re.compile(r"(?<=[a-zA-Z])2$")
 
 ACCEPTED = {
@@ -140,6 +141,20 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
 def _names() -> list[str]:
     return ["mm", "cm", "um", "m", "mil", "inch", "in", "A", "mA", "kA", "T", "mT", "G", "gauss",
             "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz"]  # fmt: skip
+
+
+def celsius(text: object) -> float:
+    """Return the degrees Celsius of a text such as ``"100 C"``.
+
+    Raises
+    ------
+    InputError
+        If it does not read.
+    """
+    match = _NUMBER_AND_UNIT.fullmatch(text) if isinstance(text, str) else None
+    if match is None or match.group(2) not in ("C", "degC", "°C"):
+        raise InputError("not a temperature", value=text, accepted=TEMPERATURE)
+    return float(match.group(1))
 
 
 def exact_text(value: float, unit: str, prefix: str = "") -> str:

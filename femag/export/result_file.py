@@ -13,7 +13,7 @@ from femag.errors import InputError
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
-from femag.quantities import SectionMean
+from femag.quantities import SectionMean, WoundCopper
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -50,6 +50,19 @@ class SectionMeanEntry(_Entry):
     flux_density: float
 
 
+class CopperEntry(_Entry):
+    """Conductor of a winding: m, ohm, degrees Celsius."""
+
+    name: str
+    turns: int
+    layers: int
+    fill: float
+    mean_turn_length: float
+    wire_length: float
+    resistance: float
+    temperature: float
+
+
 class ResultDocument(_Entry):
     """Everything in a result but the fields, SI."""
 
@@ -70,6 +83,7 @@ class ResultDocument(_Entry):
     gap_factor: float | None
     plain_inductance: float
     section_means: list[SectionMeanEntry]
+    copper: list[CopperEntry]
     hand: list[HandEntry]
     unknowns: int
     refinements: int
@@ -161,6 +175,7 @@ def _document(result: Result) -> ResultDocument:
         gap_factor=result.gap_factor,
         plain_inductance=result.plain_inductance,
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
+        copper=[CopperEntry(**vars(copper)) for copper in result.copper],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         unknowns=result.unknowns,
         refinements=result.refinements,
@@ -186,6 +201,7 @@ def _result(document: ResultDocument, file: str) -> Result:
             for entry in document.hand
         ),
         section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
+        copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
         unknowns=document.unknowns,
         refinements=document.refinements,
         seconds=document.seconds,

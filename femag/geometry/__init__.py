@@ -8,7 +8,25 @@ from femag.geometry.catalogue import (
     catalogue_core,
     matching_cores,
 )
+from femag.geometry.conductors import (
+    ALUMINIUM,
+    COPPER,
+    Conductor,
+    Foil,
+    LitzWire,
+    Metal,
+    RoundWire,
+    resistivity,
+)
 from femag.geometry.gaps import Gap, gap_length
+from femag.geometry.layers import (
+    Former,
+    Layers,
+    dc_resistance,
+    laid_turns,
+    missing_room,
+    winding_room,
+)
 from femag.geometry.pot import DIMENSIONS, PotCore, half_window_height, pot_cuts, pot_regions
 from femag.geometry.section import (
     SURROUNDINGS,
@@ -29,25 +47,37 @@ from femag.geometry.section import (
 from femag.geometry.windings import Block, Winding, winding_region
 
 __all__ = [
+    "ALUMINIUM",
+    "COPPER",
     "DIMENSIONS",
     "LIMITS",
     "SURROUNDINGS",
     "Block",
     "CatalogueCore",
+    "Conductor",
     "Cut",
+    "Foil",
+    "Former",
     "Gap",
+    "Layers",
     "Limit",
+    "LitzWire",
+    "Metal",
     "PotCore",
     "Region",
+    "RoundWire",
     "Section",
     "Wall",
     "Winding",
     "catalogue",
     "catalogue_core",
+    "dc_resistance",
     "gap_length",
     "half_window_height",
     "is_mirror_symmetric",
+    "laid_turns",
     "matching_cores",
+    "missing_room",
     "open_section",
     "parts_extent",
     "polygon_area",
@@ -55,8 +85,10 @@ __all__ = [
     "pot_regions",
     "rectangle",
     "region_areas",
+    "resistivity",
     "scaled_section",
     "singular_corners",
     "upper_half",
     "winding_region",
+    "winding_room",
 ]

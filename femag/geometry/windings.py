@@ -3,9 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from typing import TYPE_CHECKING
 
 from femag.errors import InputError, entry_key, number
+from femag.geometry.conductors import COPPER, Conductor, Metal, resistivity
 from femag.geometry.section import Region, rectangle
+
+if TYPE_CHECKING:
+    from femag.geometry.layers import Former
 
 MOST_TURNS = 1_000_000
 
@@ -57,11 +62,24 @@ class Winding:
         Where the copper lies; the whole window when left out.
     name : str
         Unique in the design.
+    conductor : RoundWire, LitzWire or Foil, optional
+        Laid in layers, in the block if there is one, else in what the former leaves of the
+        window; the turns' own block then carries the current.
+    former : Former, optional
+        What keeps the conductor away from the core.
+    metal : Metal
+        What the conductor is made of.
+    temperature : float
+        Of the conductor, degrees Celsius, for its resistance.
     """
 
     turns: int
     block: Block | None = None
     name: str = "main"
+    conductor: Conductor | None = None
+    former: Former | None = None
+    metal: Metal = COPPER
+    temperature: float = 20.0
 
     def __post_init__(self) -> None:
         accepted = f"a whole number from 1 to {MOST_TURNS}"
@@ -79,6 +97,12 @@ class Winding:
                 "not a name", key="winding.name", value=self.name,
                 accepted="printable text that is not empty",
             )  # fmt: skip
+        if self.former is not None and self.conductor is None:
+            raise InputError(
+                "a former needs a conductor", key="winding.former",
+                accepted="winding.conductor beside it",
+            )  # fmt: skip
+        resistivity(self.metal, self.temperature)
 
 
 def winding_region(winding: Winding, window: Block, index: int) -> Region:

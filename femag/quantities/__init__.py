@@ -1,5 +1,6 @@
 """Quantities: what engineers read off the fields."""
 
+from femag.quantities.copper import WoundCopper, wound_copper
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
 from femag.quantities.fringing import core_coenergy_share, gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
@@ -13,6 +14,7 @@ from femag.quantities.section_means import (
 __all__ = [
     "FieldMap",
     "SectionMean",
+    "WoundCopper",
     "core_coenergy_share",
     "field_map",
     "flux_through_discs",
@@ -22,4 +24,5 @@ __all__ = [
     "plain_gap_reluctance",
     "section_means",
     "typical_peak",
+    "wound_copper",
 ]
