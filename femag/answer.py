@@ -35,15 +35,13 @@ def print_answer(result: Result, console: Console) -> None:
 
 def _described(design: Design) -> Text:
     core = design.core
-    gaps = [_described_gap(gap) for gap in design.gaps]
     parts = [
         *([core.name] if core.name else []),
         f"pot core {1e3 * core.outer_diameter:g} x {1e3 * core.height:g} mm",
-        *(gaps or ["no gap"]),
-        f"{design.turns} turns",
-        f"{design.current:g} A",
+        *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
-    return Text(f"{', '.join(parts)}\n{design.material.label}")
+    drive = f"{design.turns} turns, {design.current:g} A"
+    return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
 def _described_gap(gap: Gap) -> str:

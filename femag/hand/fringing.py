@@ -299,15 +299,15 @@ FORMULAS = (
     Formula(
         name="gap added to diameter",
         function=added_gap,
-        limits=lambda gap: gap.length < gap.width / 5,
-        range="gap < leg/5",
+        limits=lambda gap: gap.length < min(gap.width / 5, gap.half_height),
+        range="gap < leg/5, gap < G/2",
         source="textbook rule (from memory); limit: common practice, no source",
     ),
     Formula(
         name="side path ratio (1, 2)",
         function=side_path_ratio,
-        limits=lambda gap: gap.length < gap.width / 5,
-        range="gap < leg/5",
+        limits=lambda gap: gap.length < min(gap.width / 5, gap.half_height),
+        range="gap < leg/5, gap < G/2",
         source="Kazimierczuk (from memory); limit: common practice, no source",
     ),
     Formula(
@@ -321,8 +321,8 @@ FORMULAS = (
     Formula(
         name="probable flux paths",
         function=probable_flux_paths,
-        limits=lambda gap: gap.length < gap.width / 5,
-        range="gap < leg/5",
+        limits=lambda gap: gap.length < min(gap.width / 5, gap.half_height),
+        range="gap < leg/5, gap < G/2",
         source="Roters 1941 (from memory); limit: common practice, no source",
     ),
     Formula(
