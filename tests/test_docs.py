@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from femag.design_file import DesignTable
+from femag.design_file import DesignTable, design_from_toml
 from femag.hand import FORMULAS
 
 ROOT = Path(__file__).parents[1]
@@ -38,6 +38,15 @@ def test_python_in_a_document_runs_and_prints_what_it_says(
         (shown,) = re.findall(r"prints\n\n```\n(.*?)```", text, re.DOTALL)
         assert numbers(printed) == pytest.approx(numbers(shown), rel=2e-3)
     assert any(file.suffix in (".png", ".svg") for file in tmp_path.iterdir())
+
+
+@pytest.mark.parametrize("name", ["docs/guide.md"])
+def test_design_files_in_a_document_are_designs(name: str) -> None:
+    text = (ROOT / name).read_text(encoding="utf-8")
+    blocks = re.findall(r"```toml\n(.*?)```", text, re.DOTALL)
+    assert blocks
+    for block in blocks:
+        assert design_from_toml(block).turns > 0
 
 
 def test_every_key_of_the_design_file_is_documented() -> None:

@@ -117,3 +117,21 @@ def test_typical_peak_is_a_percentile_and_not_a_corner_value(pot_26_16: fm.Desig
     assert typical[1] == pytest.approx(typical[0], rel=0.02)
     core = [fields.flux_density[fields.triangles[fields.role == "core"]].max() for fields in maps]
     assert core[1] > 1.5 * typical[1]
+
+
+@pytest.mark.parametrize(
+    ("size", "least"), [("P 22/13", 58.1e-6), ("P 30/19", 117e-6), ("P 36/22", 173e-6)]
+)
+def test_a_solid_post_saturates_first_where_the_plate_leaves_it(size: str, least: float) -> None:
+    """Least sections as published in data sheets of cores without hole: the ring 2 pi r t."""
+    core = replace(fm.catalogue_core(size).core(), hole_diameter=0.0)
+    design = fm.Design(
+        core=core,
+        gaps=fm.Gap(core.post_diameter / 50),
+        windings=fm.Winding(20),
+        material=fm.LinearCurve(2200),
+    )
+    means = {mean.name: mean for mean in section_means(design, solved(design, 1e-3))}
+    ring = means.pop("plate, at the post")
+    assert ring.area == pytest.approx(least, rel=0.005)
+    assert ring.flux_density > max(mean.flux_density for mean in means.values())
