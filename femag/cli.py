@@ -150,9 +150,7 @@ def _with_current(design: Design, current: str | None) -> Design:
     try:
         return replace(design, current=si_value(current, "A"))
     except InputError as error:
-        raise InputError(
-            error.problem, key="--current", value=current, accepted=error.accepted
-        ) from error
+        raise error.changed(key="--current", value=current) from error
 
 
 def _answer(design: Design, json: str | None, out: Path | None) -> None:

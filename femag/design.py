@@ -168,9 +168,7 @@ def _laid(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> L
         return laid_turns(winding.turns, winding.conductor, room)
     except InputError as error:
         key = f"{own}.{(error.key or 'conductor').removeprefix('winding.')}"
-        raise InputError(
-            error.problem, key=key, value=error.value, accepted=error.accepted
-        ) from error
+        raise error.changed(key=key) from error
 
 
 def meshed_section(design: Design) -> Section:

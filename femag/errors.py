@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from numbers import Real
+from typing import Any
 
 
 class GapfieldError(Exception):
@@ -45,11 +46,16 @@ class InputError(GapfieldError):
         self.accepted, self.file = accepted, file
         super().__init__(problem)
 
-    def in_file(self, file: str) -> InputError:
-        """Return the same error with the file's name filled in."""
-        return InputError(
-            self.problem, key=self.key, value=self.value, accepted=self.accepted, file=file
-        )
+    def changed(self, **parts: object) -> InputError:
+        """Return the error with another key, value or file; None leaves a part as it is."""
+        kept: dict[str, Any] = {
+            "key": self.key,
+            "value": self.value,
+            "accepted": self.accepted,
+            "file": self.file,
+        }
+        kept |= {name: part for name, part in parts.items() if part is not None}
+        return InputError(self.problem, **kept)
 
     def __str__(self) -> str:
         where = ": ".join(part for part in (self.file, self.key) if part)

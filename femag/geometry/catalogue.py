@@ -177,7 +177,7 @@ def cores_of_file(file: Path) -> tuple[CatalogueCore, ...]:
     try:
         return tuple(_core(entry, document, str(file)) for entry in document.get("core", ()))
     except InputError as error:
-        raise error.in_file(str(file)) from error
+        raise error.changed(file=str(file)) from error
 
 
 def _core(entry: Mapping[str, Any], document: Mapping[str, Any], file: str) -> CatalogueCore:
@@ -227,7 +227,7 @@ def _limits(key: str, text: object) -> Limits:
         middle = si_value(f"{base} {unit}", "m")
         room = si_value(f"{tolerance or 0} {unit}", "m")
     except InputError as error:
-        raise InputError(error.problem, key=key, value=text, accepted=error.accepted) from error
+        raise error.changed(key=key, value=text) from error
     return Limits(
         round(middle - room, 9) if sign in ("-", "+-") else middle,
         round(middle + room, 9) if sign in ("+", "+-") else middle,

@@ -1,0 +1,186 @@
+"""Design files in: every error is one line with file, key, value and what is accepted."""
+
+from __future__ import annotations
+
+import tomllib
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from femag.design import Design
+from femag.design_file.messages import first_error, keyed, renumbered, written_value
+from femag.design_file.tables import (
+    METALS,
+    ConductorTable,
+    CoreTable,
+    DesignTable,
+    GapTable,
+    MaterialTable,
+    WindingTable,
+)
+from femag.errors import InputError
+from femag.geometry import (
+    Block,
+    Conductor,
+    Foil,
+    Former,
+    Gap,
+    LitzWire,
+    PotCore,
+    RoundWire,
+    Winding,
+    catalogue_core,
+)
+from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
+
+
+def read_design(path: str | Path) -> Design:
+    """Return the design that a TOML file describes.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be read or used; it names the file, the key and the value.
+    """
+    try:
+        text = Path(path).read_text(encoding="utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise InputError("not UTF-8 text", file=str(path), accepted="a TOML file") from error
+    except OSError as error:
+        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
+    return design_from_toml(text, str(path))
+
+
+def design_from_toml(text: str, file: str | None = None) -> Design:
+    """Return the design that a TOML text describes; `file` is for messages.
+
+    Raises
+    ------
+    InputError
+        If the text cannot be used.
+    """
+    try:
+        document = tomllib.loads(text)
+    except (ValueError, RecursionError) as error:  # ValueError: also numbers too long to read
+        problem = " ".join(str(error).split())
+        raise InputError(f"not valid TOML ({problem})", file=file) from error
+    return design_from_document(document, file)
+
+
+def design_from_document(document: Mapping[str, Any], file: str | None = None) -> Design:
+    """Return the design that a nested mapping describes, quantities being texts with units.
+
+    Raises
+    ------
+    InputError
+        If a key or a value cannot be used.
+    """
+    try:
+        folder = Path(file).parent if file else Path()
+        return _design(DesignTable.model_validate(document), folder)
+    except ValidationError as error:
+        raise first_error(error, file) from error
+    except InputError as error:
+        if error.file is not None:  # another file than the design's
+            raise
+        raise error.changed(value=written_value(document, error.key), file=file) from error
+
+
+def _design(table: DesignTable, folder: Path) -> Design:
+    with keyed("permeability saturation exponent", "core.material."):
+        material = _curve(table.core.material)
+    return Design(
+        core=_core(table.core, folder),
+        windings=tuple(_winding(entry, index) for index, entry in enumerate(table.winding)),
+        material=material,
+        gaps=tuple(_gap(entry, index) for index, entry in enumerate(table.gap)),
+        current=table.drive.current,
+        tolerance=table.solve.tolerance,
+        driven=tuple(table.drive.winding),
+        title=table.title,
+    )
+
+
+def _core(table: CoreTable, folder: Path) -> PotCore:
+    """Return the core of a size or of dimensions; paths resolve against the design file."""
+    if table.size is not None:
+        for key in ("family", "dimensions", "name"):
+            if key in table.model_fields_set:
+                raise InputError(
+                    "stands beside core.size", key=f"core.{key}", accepted="one of the two"
+                )
+        extra = () if table.catalogue is None else (folder / table.catalogue,)
+        return catalogue_core(table.size, extra).core(table.limit)
+    for key in ("limit", "catalogue"):
+        if key in table.model_fields_set:
+            raise InputError(
+                "needs core.size", key=f"core.{key}", accepted="core.size = 'P 26/16' beside it"
+            )
+    for key in ("family", "dimensions"):
+        if getattr(table, key) is None:
+            raise InputError(
+                "missing", key=f"core.{key}", accepted="core.size, or family and dimensions"
+            )
+    assert table.dimensions is not None
+    return PotCore(**table.dimensions.model_dump(), name=table.name)
+
+
+def _curve(table: MaterialTable) -> MagnetisationCurve:
+    if table.saturation is not None:
+        return FroehlichCurve(
+            table.permeability, table.saturation, 1.0 if table.exponent is None else table.exponent
+        )
+    if table.exponent is not None:
+        raise InputError(
+            "an exponent needs a saturation", key="exponent", value=table.exponent,
+            accepted="saturation = '0.45 T' beside it, or no exponent",
+        )  # fmt: skip
+    return LinearCurve(table.permeability)
+
+
+def _gap(table: GapTable, index: int) -> Gap:
+    with renumbered("gap", index):
+        return Gap(**table.model_dump())
+
+
+def _winding(table: WindingTable, index: int) -> Winding:
+    with renumbered("winding", index):
+        block = None if table.block is None else Block(**table.block.model_dump())
+        former = None if table.former is None else Former(**table.former.model_dump())
+        if table.conductor is None:
+            return Winding(table.turns, block, table.name, former=former)
+        conductor = _conductor(table.conductor)
+        return Winding(
+            table.turns,
+            block,
+            table.name,
+            conductor,
+            former,
+            METALS[table.conductor.metal],
+            table.conductor.temperature,
+        )
+
+
+def _conductor(table: ConductorTable) -> Conductor:
+    kinds = [kind for kind in ("round", "litz", "foil") if getattr(table, kind) is not None]
+    if len(kinds) != 1:
+        raise InputError(
+            f"{len(kinds)} kinds of conductor", key="conductor",
+            accepted="one of round, litz and foil",
+        )  # fmt: skip
+    if table.width is not None and table.foil is None:
+        raise InputError("only foil has a width", key="conductor.width", accepted="foil beside it")
+    if table.round is not None:
+        return RoundWire(table.round, table.insulation)
+    if table.foil is not None:
+        return Foil(table.foil, table.width, table.insulation)
+    assert table.litz is not None
+    return LitzWire(
+        table.litz.strands,
+        table.litz.strand,
+        table.litz.packing,
+        table.insulation,
+        table.litz.outer_diameter,
+    )
