@@ -295,3 +295,21 @@ def test_drawing_several_cores_into_one_file_is_refused(
     assert code == 2
     assert "2 cores are meant" in err
     assert not list(tmp_path.iterdir())
+
+
+def test_missing_system_libraries_of_gmsh_are_one_line(design: Path, tmp_path: Path) -> None:
+    """A stand-in for gmsh that fails as the wheel does without libGLU."""
+    stand_in = tmp_path / "path"
+    stand_in.mkdir()
+    (stand_in / "gmsh.py").write_text("raise OSError('libGLU.so.1: cannot open shared object')\n")
+    done = subprocess.run(
+        [sys.executable, "-m", "femag.cli", "solve", str(design), "--json", "r.json"],
+        capture_output=True,
+        text=True,
+        cwd=tmp_path,
+        env=os.environ | {"PYTHONPATH": str(stand_in)},
+    )
+    assert (done.returncode, done.stdout) == (3, "")
+    assert done.stderr.count("\n") == 1
+    assert "on Debian or Ubuntu install libgl1 libglu1-mesa" in done.stderr
+    assert not (tmp_path / "r.json").exists()
