@@ -80,9 +80,7 @@ def hand_estimates(
         HandEstimate(
             name=formula.name,
             inductance=_inductance(core, gaps, turns, current, curve, formula.factor),
-            in_range=all(
-                formula.in_range(opening.shape) and not opening.at_plate for opening in openings
-            ),
+            in_range=all(formula.in_range(opening.shape) for opening in openings),
             range=formula.range,
             source=formula.source,
         )
@@ -109,19 +107,20 @@ def gap_shapes(core: PotCore, gaps: Sequence[Gap]) -> tuple[GapShape, ...]:
 
     A spacer opens both legs in the middle; in the post it adds to a gap that is ground there. The
     height of a shape ends where the nearer side of its post does: at the plate, or in the middle of
-    the core towards the next gap. A gap at a plate has the height of its other side.
+    the core towards the next gap. A gap at a plate has the shape of itself and its mirror image
+    in the plate together, twice as long, whose fringing factor is its own.
     """
     return tuple(opening.shape for opening in _openings(core, gaps))
 
 
 @dataclass(frozen=True)
 class _Opening:
-    """A gap in the network: its node, its shape, what fills its block, whether it is at a plate."""
+    """A gap in the network: its node, length in m, shape for the formulas, and what fills it."""
 
     node: str
+    length: float
     shape: GapShape
     filling: MagnetisationCurve
-    at_plate: bool = False
 
 
 def _openings(core: PotCore, gaps: Sequence[Gap]) -> tuple[_Opening, ...]:
@@ -131,14 +130,22 @@ def _openings(core: PotCore, gaps: Sequence[Gap]) -> tuple[_Opening, ...]:
     for node, piece, sides in zip(
         piece_names(in_post, "post"), in_post, _heights(in_post, half_height), strict=True
     ):
-        at_plate = abs(piece.bottom) == half_height or abs(piece.top) == half_height
-        height = max(sides) if at_plate else min(sides)
-        shape = GapShape(piece.length, core.post_radius, core.hole_radius, height, "post")
-        found.append(_Opening(node, shape, LinearCurve(piece.permeability), at_plate))
+        shape = _post_shape(core, piece, sides, half_height)
+        found.append(_Opening(node, piece.length, shape, LinearCurve(piece.permeability)))
     for node, piece in zip(piece_names(in_ring, "ring"), in_ring, strict=True):
         shape = GapShape(piece.length, core.outer_radius, core.window_radius, half_height, "ring")
-        found.append(_Opening(node, shape, LinearCurve(piece.permeability)))
+        found.append(_Opening(node, piece.length, shape, LinearCurve(piece.permeability)))
     return tuple(found)
+
+
+def _post_shape(
+    core: PotCore, piece: GapPiece, sides: tuple[float, float], half_height: float
+) -> GapShape:
+    """Return the shape of an opening of the post; at a plate, that of it and its mirror image."""
+    at_plate = half_height in (abs(piece.bottom), abs(piece.top))
+    length = 2 * piece.length if at_plate else piece.length
+    height = piece.length / 2 + max(sides) if at_plate else min(sides)
+    return GapShape(length, core.post_radius, core.hole_radius, height, "post")
 
 
 def _heights(pieces: Sequence[GapPiece], half_height: float) -> list[tuple[float, float]]:
@@ -194,9 +201,9 @@ def pot_network(
 def _gap_tubes(opening: _Opening, factor: Callable[[GapShape], float]) -> list[Tube]:
     """Return the block between the faces and, if there is any, the air beside it."""
     shape = opening.shape
-    block = (shape.length, shape.area, opening.filling)
+    block = (opening.length, shape.area, opening.filling)
     beside = shape.area * (factor(shape) - 1.0)
-    return [block, (shape.length, beside, AIR)] if beside > 0.0 else [block]
+    return [block, (opening.length, beside, AIR)] if beside > 0.0 else [block]
 
 
 def _inductance(
