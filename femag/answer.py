@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
@@ -60,7 +62,6 @@ def _described_gap(gap: Gap) -> str:
 def _inductances(result: Result) -> Table:
     bounds = result.inductance
     middle, interval = str(bounds).split(" (")
-    turns_squared = result.design.turns**2
     table = Table.grid(padding=(0, 2))
     table.add_column(no_wrap=True)
     table.add_column(justify="right", no_wrap=True)
@@ -78,9 +79,7 @@ def _inductances(result: Result) -> Table:
     linkages, increments = result.flux_linkage_of_sides, result.incremental_inductance_of_sides
     table.add_row("  apparent", apparent, f"flux linkage over current; {_apart(linkages)}")
     table.add_row("  incremental", incremental, f"for small changes; {_apart(increments)}")
-    table.add_row(
-        "AL value", with_unit(bounds.value / turns_squared, "H"), "inductance over turns squared"
-    )
+    table.add_row("AL value", with_unit(result.al_value, "H"), "inductance over turns squared")
     table.add_row(
         "fringing factor", f"{result.fringing_factor:.4f}", f"over {plain} without fringing"
     )
@@ -98,22 +97,15 @@ def _apart(of_sides: tuple[float, float]) -> str:
 
 
 def _flux_densities(result: Result) -> Table:
-    table = _columns("mean flux density", ("T", "right"), ("section, mm2", "right"))
+    table = columns("mean flux density", "T", "section, mm2", words=["mean flux density"])
     for mean in result.section_means:
         table.add_row(mean.name, f"{mean.flux_density:.4f}", f"{1e6 * mean.area:.1f}")
     return table
 
 
 def _copper(result: Result) -> Table:
-    table = _columns(
-        "winding",
-        ("turns", "right"),
-        ("layers", "right"),
-        ("fill", "right"),
-        ("mean turn", "right"),
-        ("wire", "right"),
-        ("resistance", "left"),
-    )
+    names = ("winding", "turns", "layers", "fill", "mean turn", "wire", "resistance")
+    table = columns(*names, words=["winding", "resistance"])
     for copper in result.copper:
         table.add_row(
             copper.name,
@@ -128,13 +120,8 @@ def _copper(result: Result) -> Table:
 
 
 def _hand_formulas(result: Result) -> Table:
-    table = _columns(
-        "hand formula",
-        ("inductance", "right"),
-        ("error", "right"),
-        ("inside", "left"),
-        ("range", "left"),
-    )
+    names = ("hand formula", "inductance", "error", "inside", "range")
+    table = columns(*names, words=["hand formula", "inside", "range"])
     inductances = with_common_unit(
         (result.inductance.value, *(row.estimate.inductance for row in result.hand)), "H"
     )
@@ -160,11 +147,11 @@ def _hand_caveat(result: Result) -> list[Text]:
     ]
 
 
-def _columns(first: str, *others: tuple[str, str]) -> Table:
+def columns(*names: str, words: Sequence[str]) -> Table:
+    """Return an empty table without lines: columns of `words` to the left, numbers to the right."""
     table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
-    table.add_column(first, min_width=20)
-    for name, justify in others:
-        table.add_column(name, justify="right" if justify == "right" else "left", overflow="fold")
+    for name in names:
+        table.add_column(name, justify="left" if name in words else "right", overflow="fold")
     return table
 
 
@@ -181,7 +168,7 @@ def _provenance(result: Result) -> str:
 
 
 def _cautions(result: Result) -> str:
-    stored = with_unit(result.inductance.value * result.current**2 / 2, "J", 2)
+    stored = with_unit(result.stored_energy, "J", 2)
     return (
         f"Caution: about {stored} is stored at {result.current:g} A and becomes a voltage when "
         "the current is cut. Check insulation from the mains, creepage and hot parts by the codes "

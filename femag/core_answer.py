@@ -8,13 +8,18 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+from femag.answer import columns
 from femag.geometry import DIMENSIONS, LIMITS, CatalogueCore
 from femag.hand import EffectiveParameters, effective_parameters
+
+LIST_COLUMNS = ("size", "outside", "post", "hole", "window", "Ae", "le", "C1", "source")
+CORE_COLUMNS = ("dimension", "from, mm", "to, mm", "nominal, mm", "source")
+EFFECTIVE_COLUMNS = ("effective parameter", *LIMITS, "published")
 
 
 def print_core_list(cores: Sequence[CatalogueCore], console: Console) -> None:
     """Print a line for each core: nominal dimensions, effective parameters, source."""
-    table = _table("size", "outside", "post", "hole", "window", "Ae", "le", "C1", "source")
+    table = columns(*LIST_COLUMNS, words=["size", "source"])
     for entry in cores:
         core, effective = entry.core(), effective_parameters(entry.core())
         table.add_row(
@@ -42,7 +47,7 @@ def print_core(entry: CatalogueCore, console: Console) -> None:
     """Print one core: limits and source of every dimension, and the effective parameters."""
     console.print(Text(f"{entry.size}, {entry.standard}", style="bold"))
     console.print(Text(f"from {entry.file}"))
-    table = _table("dimension", "from, mm", "to, mm", "nominal, mm", "source")
+    table = columns(*CORE_COLUMNS, words=["dimension", "source"])
     for name in DIMENSIONS:
         limits = entry.dimensions[name]
         numbers = (limits.low, limits.high, limits.nominal)
@@ -64,7 +69,7 @@ def _mm(length: float) -> str:
 
 
 def _effective_table(entry: CatalogueCore) -> Table:
-    table = _table("effective parameter", *LIMITS, "published")
+    table = columns(*EFFECTIVE_COLUMNS, words=["effective parameter"])
     values = [effective_parameters(entry.core(limit)) for limit in LIMITS]
     for label, key, scale, digits in (
         ("core factor C1, 1/mm", "core_factor", 1e-3, 4),
@@ -88,11 +93,3 @@ def _parameter(effective: EffectiveParameters, key: str) -> float:
         "effective_area": effective.area,
         "least_area": effective.least_area,
     }[key]
-
-
-def _table(*columns: str) -> Table:
-    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
-    words = ("size", "source", "dimension", "effective parameter")
-    for name in columns:
-        table.add_column(name, justify="left" if name in words else "right")
-    return table

@@ -22,6 +22,7 @@ from femag.geometry import (
     is_mirror_symmetric,
     laid_turns,
     open_section,
+    polygon_area,
     pot_regions,
     upper_half,
     winding_region,
@@ -125,7 +126,7 @@ def whole_section(design: Design) -> Section:
     window = _window(core, gaps)
     regions = pot_regions(core, gaps)
     coils = tuple(
-        winding_region(_with_laid_block(winding, window, gaps, index), window, index)
+        winding_region(winding.name, _turns_block(winding, window, gaps, index), window, index)
         for index, winding in enumerate(design.windings)
     )
     _check_coils(coils)
@@ -154,10 +155,11 @@ def _window(core: PotCore, gaps: Sequence[Gap]) -> Block:
     return Block(core.post_radius, core.window_radius, -half_window, half_window)
 
 
-def _with_laid_block(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Winding:
+def _turns_block(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Block:
+    """Return where the turns lie: as laid, else in their block, else in the whole window."""
     if winding.conductor is None:
-        return winding
-    return replace(winding, block=_laid(winding, window, gaps, index).block)
+        return winding.block or window
+    return _laid(winding, window, gaps, index).block
 
 
 def _laid(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Layers:
@@ -180,13 +182,11 @@ def meshed_section(design: Design) -> Section:
 def turns_per_area(design: Design) -> dict[str, float]:
     """Return the turns per area in 1/m2 of each driven winding's region."""
     driven = {f"winding {winding.name}": winding.turns for winding in design.driven_windings}
-    areas = {
-        region.name: (region.polygon[1][0] - region.polygon[0][0])
-        * (region.polygon[2][1] - region.polygon[1][1])
+    return {
+        region.name: driven[region.name] / polygon_area(region.polygon)
         for region in whole_section(design).regions
         if region.name in driven
     }
-    return {name: turns / areas[name] for name, turns in driven.items()}
 
 
 def design_hash(design: Design) -> str:

@@ -118,6 +118,11 @@ class Result:
         return self.flux_linkage / self.current
 
     @property
+    def stored_energy(self) -> float:
+        """Energy in the field, J: current times flux linkage less the co-energy."""
+        return self.current * self.flux_linkage - self.coenergy.value
+
+    @property
     def al_value(self) -> float:
         """Inductance over turns squared, H."""
         return self.inductance.value / self.design.turns**2

@@ -313,3 +313,10 @@ def test_missing_system_libraries_of_gmsh_are_one_line(design: Path, tmp_path: P
     assert done.stderr.count("\n") == 1
     assert "on Debian or Ubuntu install libgl1 libglu1-mesa" in done.stderr
     assert not (tmp_path / "r.json").exists()
+
+
+def test_the_caution_names_the_energy_that_is_stored(
+    design: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    _, out, _ = run(capsys, "solve", design)
+    assert "Caution: about 3.1 mJ is stored at 4 A" in out

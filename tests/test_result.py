@@ -50,3 +50,23 @@ def test_hand_formulas_stand_beside_the_field(pot_26_16: fm.Design) -> None:
 def test_current_cannot_be_zero(pot_26_16: fm.Design) -> None:
     with pytest.raises(fm.InputError, match="a drive current is needed"):
         fm.solve(pot_26_16, current=0.0)
+
+
+@pytest.mark.parametrize("current", [0.1, 10.0, 100.0])
+def test_stored_energy_is_what_the_coenergy_leaves_of_current_times_linkage(
+    saturating_26_16: fm.Design, current: float
+) -> None:
+    """W + W' = lambda I; a saturated core stores less than L I^2 / 2, which is its co-energy."""
+    result = fm.solve(saturating_26_16, current=current)
+    both = result.stored_energy + result.coenergy.value
+    assert both == pytest.approx(result.flux_linkage * current, rel=1e-12)
+    assert 0.0 < result.stored_energy < result.coenergy.value * (1 + 2e-3)
+    if current > 1.0:
+        assert result.stored_energy < 0.9 * result.coenergy.value
+
+
+def test_a_linear_core_stores_half_of_inductance_times_current_squared(
+    pot_26_16: fm.Design,
+) -> None:
+    result = fm.solve(pot_26_16, current=3.0)
+    assert result.stored_energy == pytest.approx(result.inductance.value * 4.5, rel=1e-9)

@@ -138,3 +138,10 @@ def test_the_winding_that_does_not_fit_is_named_by_its_number() -> None:
     with pytest.raises(fm.InputError) as caught:
         design_from_toml(TEXT + second)
     assert caught.value.key == "winding.1.turns"
+
+
+def test_a_former_beside_a_block_is_refused_and_not_passed_over(pot_26_16: fm.Design) -> None:
+    block = pot_26_16.windings[0].block
+    with pytest.raises(fm.InputError, match="a former beside a block") as caught:
+        fm.Winding(5, block, conductor=fm.RoundWire(0.5e-3), former=fm.Former(wall=1e-3))
+    assert caught.value.key == "winding.former"

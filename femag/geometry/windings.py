@@ -102,16 +102,23 @@ class Winding:
                 "a former needs a conductor", key="winding.former",
                 accepted="winding.conductor beside it",
             )  # fmt: skip
+        if self.former is not None and self.block is not None:
+            raise InputError(
+                "a former beside a block", key="winding.former",
+                accepted="one of the two: the block is the room already",
+            )  # fmt: skip
         resistivity(self.metal, self.temperature)
 
 
-def winding_region(winding: Winding, window: Block, index: int) -> Region:
-    """Return the winding's region, named after it.
+def winding_region(name: str, block: Block, window: Block, index: int) -> Region:
+    """Return the region of a winding, named after it.
 
     Parameters
     ----------
-    winding : Winding
-        The winding.
+    name : str
+        The winding's name.
+    block : Block
+        Where its turns lie.
     window : Block
         The room that the core leaves.
     index : int
@@ -122,7 +129,6 @@ def winding_region(winding: Winding, window: Block, index: int) -> Region:
     InputError
         If the block leaves the window.
     """
-    block = winding.block or window
     slack = 1e-9 * window.outer_radius
     for side, sign, limit_name in (
         ("inner_radius", 1, "the post"),
@@ -139,4 +145,4 @@ def winding_region(winding: Winding, window: Block, index: int) -> Region:
                 accepted=f"{'at least' if sign > 0 else 'at most'} {limit * 1e3:g} mm",
             )
     polygon = rectangle(block.inner_radius, block.outer_radius, block.bottom, block.top)
-    return Region(f"winding {winding.name}", "winding", polygon, parent="window")
+    return Region(f"winding {name}", "winding", polygon, parent="window")

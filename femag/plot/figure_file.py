@@ -10,6 +10,7 @@ from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 
+from femag.errors import InputError
 from femag.export.whole_file import whole_file
 
 RESOLUTION = 150
@@ -29,10 +30,14 @@ def write_figure(draw: Callable[[Axes], Axes], path: str | Path) -> None:
     Raises
     ------
     InputError
-        If the file cannot be written.
+        If the file cannot be written, or its ending names no format.
     """
     figure = Figure(figsize=(6.4, 6.4), layout="constrained")
-    FigureCanvasAgg(figure)
+    known = FigureCanvasAgg(figure).get_supported_filetypes()
+    if Path(path).suffix.removeprefix(".").lower() not in known:
+        raise InputError(
+            "no format of a figure", file=str(path), accepted="an ending such as .png or .svg"
+        )
     draw(figure.add_subplot())
     with whole_file(path) as temporary, warnings.catch_warnings():
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")

@@ -1,3 +1,5 @@
+from pathlib import Path
+
 import pytest
 from matplotlib.figure import Figure
 
@@ -26,3 +28,12 @@ def test_a_solid_post_has_no_hole_to_show() -> None:
     core = fm.PotCore(26e-3, 21e-3, 11e-3, 16e-3, 11e-3)
     ax = fm.plot.core_drawing(core, Figure().add_subplot())
     assert len([text for text in ax.texts if "Ø" in text.get_text()]) == 3
+
+
+@pytest.mark.parametrize("name", ["core", "core.xyz"])
+def test_a_file_without_a_known_ending_is_refused(tmp_path: Path, name: str) -> None:
+    core = fm.catalogue_core("P 9/5").core()
+    with pytest.raises(fm.InputError, match="no format of a figure") as caught:
+        fm.plot.write_figure(lambda ax: fm.plot.core_drawing(core, ax), tmp_path / name)
+    assert ".png" in caught.value.accepted
+    assert not list(tmp_path.iterdir())
