@@ -12,7 +12,7 @@ applications", SIAM J. Numer. Anal. 20 (1983) 485.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -186,8 +186,7 @@ def exact_solution(solution: FieldSolution) -> FieldSolution:
         return solution
     flux = minimum(sides.flux, current, solution.flux.field)
     potential = minimum(sides.potential, current, solution.potential.field)
-    gap = _local_gap(sides, flux, potential)
-    return finely_integrated(FieldSolution(sides, current, flux, potential, gap))
+    return finely_integrated(replace(solution, flux=flux, potential=potential))
 
 
 def finely_integrated(solution: FieldSolution, order: int = FINE_ORDER) -> FieldSolution:

@@ -14,7 +14,7 @@ from femag.hand.effective import (
     effective_parameters,
 )
 from femag.hand.fringing import FORMULAS, Formula, GapShape, block_permeance
-from femag.hand.network import Branch, NetworkState, network_state, permeance_branch
+from femag.hand.network import Branch, NetworkState, network_state
 
 __all__ = [
     "FORMULAS",
@@ -31,7 +31,6 @@ __all__ = [
     "gap_shapes",
     "hand_estimates",
     "network_state",
-    "permeance_branch",
     "plain_inductance",
     "pot_network",
 ]

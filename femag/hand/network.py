@@ -23,7 +23,7 @@ from scipy.sparse.csgraph import connected_components
 
 from femag.errors import InputError, NewtonError, NumericalError
 from femag.line_search import step_length
-from femag.materials import AIR, MagnetisationCurve
+from femag.materials import MagnetisationCurve
 from femag.units import MU_0
 
 Array = NDArray[np.float64]
@@ -72,11 +72,6 @@ class Branch:
                 )  # fmt: skip
         if not np.isfinite(self.mmf):
             raise InputError("ampere turns out of range", key="mmf", value=self.mmf)
-
-
-def permeance_branch(start: str, end: str, permeance: float, mmf: float = 0.0) -> Branch:
-    """Return a branch of constant permeance in H: an air tube 1 m long of the section due."""
-    return Branch(start, end, 1.0, permeance / MU_0, AIR, mmf)
 
 
 @dataclass(frozen=True)

@@ -23,7 +23,7 @@ from femag.materials import MagnetisationCurve
 from femag.result import solve
 from femag.units import MU_0
 
-FIELD = 650.187e-6
+FIELD = 650.1891e-6
 """Pot core 26/16 with 0.5 mm gap, H: computed for this project with a two-sided field solution
 (650.1850 to 650.1921 uH) and NGSolve of order 7 on a graded mesh."""
 

@@ -3,13 +3,18 @@ import pytest
 from scipy.optimize import brentq
 
 from femag.errors import InputError, NewtonError
-from femag.hand import Branch, NetworkState, network_state, permeance_branch
+from femag.hand import Branch, NetworkState, network_state
 from femag.hand import network as network_module
 from femag.materials import AIR, FroehlichCurve, LinearCurve, MagnetisationCurve
 from femag.units import MU_0
 
 SOFT = FroehlichCurve(2000.0, 0.45, 1.0)
 SHARP = FroehlichCurve(1e5, 0.45, 20.0)
+
+
+def permeance_branch(start: str, end: str, permeance: float, mmf: float = 0.0) -> Branch:
+    """Return a branch of constant permeance in H: an air tube 1 m long of the section due."""
+    return Branch(start, end, 1.0, permeance / MU_0, AIR, mmf)
 
 
 def bridge(mmf: float) -> tuple[Branch, ...]:
