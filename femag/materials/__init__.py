@@ -1,5 +1,30 @@
-"""Materials: magnetisation curves with consistent energy densities."""
+"""Materials: magnetisation curves with consistent energy densities, a library, and files."""
 
-from femag.materials.curves import AIR, FroehlichCurve, LinearCurve, MagnetisationCurve
+from femag.materials.curves import (
+    AIR,
+    FroehlichCurve,
+    LinearCurve,
+    MagnetisationCurve,
+    ScaledCurve,
+)
+from femag.materials.diagnosis import curve_through
+from femag.materials.library import library_material, material, material_library
+from femag.materials.material_file import is_material_file, read_material
+from femag.materials.tabulated import TabulatedCurve
+from femag.materials.temperature import Material
 
-__all__ = ["AIR", "FroehlichCurve", "LinearCurve", "MagnetisationCurve"]
+__all__ = [
+    "AIR",
+    "FroehlichCurve",
+    "LinearCurve",
+    "MagnetisationCurve",
+    "Material",
+    "ScaledCurve",
+    "TabulatedCurve",
+    "curve_through",
+    "is_material_file",
+    "library_material",
+    "material",
+    "material_library",
+    "read_material",
+]

@@ -122,6 +122,62 @@ AIR = LinearCurve(1.0)
 
 
 @dataclass(frozen=True)
+class ScaledCurve:
+    """B(H) = B_of(factor H): a material whose paths are `factor` times as short as they look.
+
+    Parameters
+    ----------
+    of : MagnetisationCurve
+        The material.
+    factor : float
+        Above 0.
+    """
+
+    of: MagnetisationCurve
+    factor: float
+
+    def __post_init__(self) -> None:
+        accepted = "a number above 0"
+        if not 0.0 < number(self.factor, "factor", accepted) < np.inf:
+            raise InputError("out of range", key="factor", value=self.factor, accepted=accepted)
+
+    @property
+    def is_linear(self) -> bool:
+        """Whether B is proportional to H."""
+        return self.of.is_linear
+
+    @property
+    def initial_permeability(self) -> float:
+        """Relative permeability at H = 0."""
+        return self.factor * self.of.initial_permeability
+
+    @property
+    def label(self) -> str:
+        """One line for tables and figures."""
+        return f"{self.of.label}, at {self.factor:.4g} H"
+
+    def flux_density(self, field_strength: Array) -> Array:
+        """B in T for H in A/m."""
+        return self.of.flux_density(self.factor * field_strength)
+
+    def field_strength(self, flux_density: Array) -> Array:
+        """H in A/m for B in T."""
+        return self.of.field_strength(flux_density) / self.factor
+
+    def differential_permeability(self, field_strength: Array) -> Array:
+        """dB/dH in H/m at H in A/m."""
+        return self.factor * self.of.differential_permeability(self.factor * field_strength)
+
+    def coenergy_density(self, field_strength: Array) -> Array:
+        """Integral of B dH from 0 to H, J/m3."""
+        return self.of.coenergy_density(self.factor * field_strength) / self.factor
+
+    def energy_density(self, flux_density: Array) -> Array:
+        """Integral of H dB from 0 to B, J/m3."""
+        return self.of.energy_density(flux_density) / self.factor
+
+
+@dataclass(frozen=True)
 class FroehlichCurve:
     r"""Saturating curve of Froehlich-Kennelly type with an exponent for the knee.
 

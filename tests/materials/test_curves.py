@@ -3,6 +3,7 @@ import numpy as np
 import pytest
 
 import femag as fm
+from femag.materials import ScaledCurve, TabulatedCurve
 from femag.units import MU_0
 
 CURVES = [
@@ -14,6 +15,13 @@ CURVES = [
         for js in (0.3, 2.4)
         for n in (1.0, 1.3, 2.0, 6.0, 20.0)
     ),
+    *(ScaledCurve(fm.FroehlichCurve(2000.0, 0.45, 2.0), factor) for factor in (0.4, 1.0, 2.5)),
+    ScaledCurve(fm.LinearCurve(300.0), 1.2),
+    *(curve for material in fm.material_library() for _, curve in material.curves),
+    fm.material("mnzn-power-60C"),
+    ScaledCurve(fm.material("silicon-steel"), 1.7),
+    TabulatedCurve(((10.0, 0.2), (20.0, 0.21), (1e3, 0.21 + MU_0 * 980.0))),
+    TabulatedCurve(((10.0, 1e-3), (20.0, 0.4), (30.0, 0.5), (31.0, 0.9))),
 ]
 H = np.concatenate([[0.0], np.logspace(-3, 7, 300)])
 
@@ -42,12 +50,24 @@ def test_fenchel_young_holds_off_the_curve(curve) -> None:
 
 @pytest.mark.parametrize("curve", CURVES, ids=repr)
 def test_slope_and_energies_are_derivatives(curve) -> None:
-    h = np.logspace(-1, 5, 60)
+    h = 1.03 * np.logspace(-1, 5, 60)  # no point of a table: its slope has kinks there
     step = 1e-5 * h
     slope = (curve.flux_density(h + step) - curve.flux_density(h - step)) / (2 * step)
     np.testing.assert_allclose(curve.differential_permeability(h), slope, rtol=1e-6)
     b = (curve.coenergy_density(h + step) - curve.coenergy_density(h - step)) / (2 * step)
     np.testing.assert_allclose(curve.flux_density(h), b, rtol=1e-6)
+
+
+@pytest.mark.parametrize("curve", CURVES, ids=repr)
+def test_no_material_lets_less_flux_through_than_air(curve) -> None:
+    """At no field is the slope below mu0, and far out it is mu0."""
+    if curve.initial_permeability > 1.0:
+        assert np.all(np.diff(curve.flux_density(H)) > 0.0)
+    slope = curve.differential_permeability(H)
+    factor = getattr(curve, "factor", 1.0)
+    assert np.all(slope >= factor * MU_0 * (1.0 - 1e-12))
+    if not curve.is_linear:
+        assert curve.differential_permeability(np.array(1e13)) == pytest.approx(factor * MU_0)
 
 
 @pytest.mark.parametrize("exponent", [1.0, 1.3, 2.0, 6.0, 20.0])
