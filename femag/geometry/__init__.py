@@ -8,6 +8,7 @@ from femag.geometry.catalogue import (
     catalogue_core,
     matching_cores,
 )
+from femag.geometry.coils import DETAILS, Coil, CoilSection, Detail, coil_regions, laid_coils
 from femag.geometry.conductors import (
     ALUMINIUM,
     COPPER,
@@ -18,6 +19,15 @@ from femag.geometry.conductors import (
     RoundWire,
     resistivity,
 )
+from femag.geometry.effective import (
+    CoreSection,
+    EffectiveParameters,
+    core_factor,
+    core_sections,
+    effective_parameters,
+)
+from femag.geometry.families import FAMILIES, core_of_family
+from femag.geometry.gap_faces import Step
 from femag.geometry.gaps import Gap, gap_length
 from femag.geometry.layers import (
     Former,
@@ -27,7 +37,9 @@ from femag.geometry.layers import (
     missing_room,
     winding_room,
 )
-from femag.geometry.pot import DIMENSIONS, PotCore, half_window_height, pot_cuts, pot_regions
+from femag.geometry.magnets import Magnet
+from femag.geometry.pot import DIMENSIONS, PotCore
+from femag.geometry.round_leg import RoundLegCore
 from femag.geometry.section import (
     SURROUNDINGS,
     Cut,
@@ -44,51 +56,83 @@ from femag.geometry.section import (
     singular_corners,
     upper_half,
 )
-from femag.geometry.windings import Block, Winding, winding_region
+from femag.geometry.turned_core import (
+    Core,
+    TurnedCore,
+    core_cuts,
+    core_regions,
+    gap_permeabilities,
+    gap_remanences,
+    half_window_height,
+    ring_pieces,
+    turned_regions,
+)
+from femag.geometry.windings import Block, Winding
 
 __all__ = [
     "ALUMINIUM",
     "COPPER",
+    "DETAILS",
     "DIMENSIONS",
+    "FAMILIES",
     "LIMITS",
     "SURROUNDINGS",
     "Block",
     "CatalogueCore",
+    "Coil",
+    "CoilSection",
     "Conductor",
+    "Core",
+    "CoreSection",
     "Cut",
+    "Detail",
+    "EffectiveParameters",
     "Foil",
     "Former",
     "Gap",
     "Layers",
     "Limit",
     "LitzWire",
+    "Magnet",
     "Metal",
     "PotCore",
     "Region",
+    "RoundLegCore",
     "RoundWire",
     "Section",
+    "Step",
+    "TurnedCore",
     "Wall",
     "Winding",
     "catalogue",
     "catalogue_core",
+    "coil_regions",
+    "core_cuts",
+    "core_factor",
+    "core_of_family",
+    "core_regions",
+    "core_sections",
     "dc_resistance",
+    "effective_parameters",
     "gap_length",
+    "gap_permeabilities",
+    "gap_remanences",
     "half_window_height",
     "is_mirror_symmetric",
+    "laid_coils",
     "laid_turns",
     "matching_cores",
     "missing_room",
     "open_section",
     "parts_extent",
     "polygon_area",
-    "pot_cuts",
-    "pot_regions",
     "rectangle",
     "region_areas",
     "resistivity",
+    "ring_pieces",
     "scaled_section",
     "singular_corners",
+    "turned_regions",
     "upper_half",
-    "winding_region",
     "winding_room",
 ]

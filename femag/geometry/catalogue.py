@@ -11,20 +11,23 @@ import os
 import re
 import tomllib
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from importlib.metadata import distribution
 from pathlib import Path
 from typing import Any, Literal, get_args
 
 from femag.errors import InputError, MissingLibraryError
-from femag.geometry.pot import DIMENSIONS, PotCore
+from femag.geometry.effective import effective_parameters
+from femag.geometry.families import FAMILIES, core_of_family
+from femag.geometry.pot import PotCore
+from femag.geometry.turned_core import Core
 from femag.units import si_value
 
 FOLDER_VARIABLE = "GAPFIELD_CORES"
 Limit = Literal["minimum", "nominal", "maximum"]
 LIMITS: tuple[Limit, ...] = get_args(Limit)
 
-OUTER = ("outer_diameter", "post_diameter", "height")
+OUTER = ("outer_diameter", "post_diameter", "height", "length", "width", "waist", "front")
 """Dimensions that are large when there is much core material; the others are small then."""
 
 _LIMITS = re.compile(r"\s*([\d.]+)\s*(?:(\+-|\+|-)\s*([\d.]+))?\s*(\S+)\s*")
@@ -72,7 +75,7 @@ class CatalogueCore:
     size : str
         Name, such as ``"P 22/13"``.
     family : str
-        ``"pot"``.
+        A key of `families.FAMILIES`.
     standard : str
         Where its dimensions are standardised.
     dimensions : mapping of str to Limits
@@ -82,6 +85,8 @@ class CatalogueCore:
     published : mapping of str to float
         Published effective parameters, SI: core_factor, effective_length, effective_area,
         least_area, as far as known.
+    published_source : str
+        Where those were found.
     file : str
         The file that holds it.
     """
@@ -92,14 +97,29 @@ class CatalogueCore:
     dimensions: Mapping[str, Limits]
     sources: Mapping[str, str]
     published: Mapping[str, float] = field(default_factory=dict)
+    published_source: str = ""
     file: str = ""
 
-    def core(self, limit: Limit = "nominal") -> PotCore:
-        """Return the core with the least, mean or most material that its limits allow."""
-        sizes = {
+    def core(self, limit: Limit = "nominal") -> Core:
+        """Return the core with the least, mean or most material that its limits allow.
+
+        A published core factor is that of the nominal core; at the limits it changes in the same
+        ratio as the computed one.
+        """
+        core = core_of_family(self.family, self.sizes(limit), name=f"{self.size}, {limit}")
+        published = self.published.get("core_factor")
+        if published is None or isinstance(core, PotCore):
+            return core
+        if limit != "nominal":
+            nominal = core_of_family(self.family, self.sizes("nominal"))
+            published *= effective_parameters(core).c1 / effective_parameters(nominal).c1
+        return replace(core, core_factor=published)
+
+    def sizes(self, limit: Limit) -> dict[str, float]:
+        """Return the dimensions in m with the least, mean or most material."""
+        return {
             name: limits.at(limit, large=name in OUTER) for name, limits in self.dimensions.items()
         }
-        return PotCore(**sizes, name=f"{self.size}, {limit}")
 
 
 def catalogue(extra: Iterable[str | Path] = ()) -> tuple[CatalogueCore, ...]:
@@ -115,12 +135,7 @@ def catalogue(extra: Iterable[str | Path] = ()) -> tuple[CatalogueCore, ...]:
     InputError
         If a file cannot be read or used.
     """
-    folders = [_own_folder()]
-    if os.environ.get(FOLDER_VARIABLE):
-        folders.append(Path(os.environ[FOLDER_VARIABLE]))
-    files = [file for folder in folders for file in sorted(folder.glob("*.toml"))]
-    cores = [core for file in (*files, *map(Path, extra)) for core in cores_of_file(file)]
-    return tuple({_plain(core.size): core for core in cores}.values())
+    return tuple(_core(entry) for entry in _entries(extra).values())
 
 
 def catalogue_core(size: str, extra: Iterable[str | Path] = ()) -> CatalogueCore:
@@ -131,10 +146,10 @@ def catalogue_core(size: str, extra: Iterable[str | Path] = ()) -> CatalogueCore
     InputError
         If there is none; it names the nearest.
     """
-    known = {_plain(core.size): core for core in catalogue(extra)}
+    known = _entries(extra)
     if _plain(size) not in known:
-        raise _unknown_size(size, known.values())
-    return known[_plain(size)]
+        raise _unknown_size(size, [entry.size for entry in known.values()])
+    return _core(known[_plain(size)])
 
 
 def matching_cores(cores: Sequence[CatalogueCore], text: str) -> tuple[CatalogueCore, ...]:
@@ -148,25 +163,38 @@ def matching_cores(cores: Sequence[CatalogueCore], text: str) -> tuple[Catalogue
     exact = tuple(core for core in cores if _plain(core.size) == _plain(text))
     found = exact or tuple(core for core in cores if _plain(text) in _plain(core.size))
     if not found:
-        raise _unknown_size(text, cores)
+        raise _unknown_size(text, [core.size for core in cores])
     return found
 
 
-def _unknown_size(size: str, cores: Iterable[CatalogueCore]) -> InputError:
-    known = {_plain(core.size): core.size for core in cores}
+def _unknown_size(size: str, sizes: Iterable[str]) -> InputError:
+    known = {_plain(other): other for other in sizes}
     near = difflib.get_close_matches(_plain(size), known, n=3, cutoff=0.4)
     accepted = ", ".join(known[name] for name in near) or "a size that 'gapfield cores' lists"
     return InputError("no core of this size", key="core.size", value=size, accepted=accepted)
 
 
-def cores_of_file(file: Path) -> tuple[CatalogueCore, ...]:
-    """Return the cores of one catalogue file.
+@dataclass(frozen=True)
+class _Entry:
+    """A core as its file has it, not yet read."""
 
-    Raises
-    ------
-    InputError
-        If the file cannot be read or used.
-    """
+    size: str
+    table: Mapping[str, Any]
+    document: Mapping[str, Any]
+    file: str
+
+
+def _entries(extra: Iterable[str | Path]) -> dict[str, _Entry]:
+    """Return the entry of each size, by its plain name; later files replace earlier ones."""
+    folders = [_own_folder()]
+    if os.environ.get(FOLDER_VARIABLE):
+        folders.append(Path(os.environ[FOLDER_VARIABLE]))
+    files = [file for folder in folders for file in sorted(folder.glob("*.toml"))]
+    found = [entry for file in (*files, *map(Path, extra)) for entry in _entries_of_file(file)]
+    return {_plain(entry.size): entry for entry in found}
+
+
+def _entries_of_file(file: Path) -> list[_Entry]:
     try:
         document = tomllib.loads(file.read_text(encoding="utf-8"))
     except OSError as error:
@@ -174,44 +202,67 @@ def cores_of_file(file: Path) -> tuple[CatalogueCore, ...]:
     except (UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
         problem = " ".join(str(error).split())
         raise InputError(f"not valid TOML ({problem})", file=str(file)) from error
-    try:
-        return tuple(_core(entry, document, str(file)) for entry in document.get("core", ()))
-    except InputError as error:
-        raise error.changed(file=str(file)) from error
-
-
-def _core(entry: Mapping[str, Any], document: Mapping[str, Any], file: str) -> CatalogueCore:
-    size = entry.get("size")
-    if not isinstance(size, str) or not size.strip():
-        raise InputError("missing", key="core.size", accepted="a name such as 'P 22/13'")
-    if document.get("family") != "pot":
+    if document.get("family") not in FAMILIES:
         raise InputError(
-            "unknown family", key="family", value=document.get("family"), accepted="'pot'"
-        )
-    given = entry.get("dimensions", {})
-    for name in (*DIMENSIONS, *given):
-        if name not in DIMENSIONS or name not in given:
-            problem = "missing" if name in DIMENSIONS else "unknown key"
-            accepted = f"the dimensions {', '.join(DIMENSIONS)}"
+            "unknown family", key="family", value=document.get("family"), file=str(file),
+            accepted=", ".join(map(repr, FAMILIES)),
+        )  # fmt: skip
+    entries = []
+    for table in document.get("core", ()):
+        size = table.get("size")
+        if not isinstance(size, str) or not size.strip():
+            accepted = "a name such as 'P 22/13'"
+            raise InputError("missing", key="core.size", accepted=accepted, file=str(file))
+        entries.append(_Entry(size, table, document, str(file)))
+    return entries
+
+
+def _core(entry: _Entry) -> CatalogueCore:
+    try:
+        return _read_core(entry)
+    except InputError as error:
+        raise error.changed(file=entry.file) from error
+
+
+def _read_core(entry: _Entry) -> CatalogueCore:
+    family, size, table = entry.document["family"], entry.size, entry.table
+    given, names = table.get("dimensions", {}), FAMILIES[family]
+    for name in (*names, *given):
+        if name not in names or name not in given:
+            problem = "missing" if name in names else "unknown key"
+            accepted = f"the dimensions {', '.join(names)}"
             raise InputError(problem, key=f"{size}: dimensions.{name}", accepted=accepted)
-    source, exceptions = str(entry.get("source", "not stated")), entry.get("except", {})
+    source, exceptions = str(table.get("source", "not stated")), table.get("except", {})
+    published = table.get("published", {})
     core = CatalogueCore(
         size=size,
-        family="pot",
-        standard=str(document.get("standard", "not stated")),
-        dimensions={
-            name: _limits(f"{size}: dimensions.{name}", given[name]) for name in DIMENSIONS
-        },
-        sources={name: str(exceptions.get(name, source)) for name in DIMENSIONS},
-        published={
-            name: si_value(text, _PUBLISHED_UNITS[name])
-            for name, text in entry.get("published", {}).items()
-        },
-        file=file,
+        family=family,
+        standard=str(entry.document.get("standard", "not stated")),
+        dimensions={name: _limits(f"{size}: dimensions.{name}", given[name]) for name in names},
+        sources={name: str(exceptions.get(name, source)) for name in names},
+        published=_published(size, published),
+        published_source=str(published.get("source", source)),
+        file=entry.file,
     )
     for limit in LIMITS:
-        core.core(limit)
+        core_of_family(family, core.sizes(limit))
     return core
+
+
+def _published(size: str, table: Mapping[str, Any]) -> dict[str, float]:
+    """Return published effective parameters, SI."""
+    for name in table:
+        if name != "source" and name not in _PUBLISHED_UNITS:
+            accepted = ", ".join(("source", *_PUBLISHED_UNITS))
+            raise InputError("unknown key", key=f"{size}: published.{name}", accepted=accepted)
+    try:
+        return {
+            name: si_value(table[name], unit)
+            for name, unit in _PUBLISHED_UNITS.items()
+            if name in table
+        }
+    except InputError as error:
+        raise error.changed(key=f"{size}: published") from error
 
 
 def _limits(key: str, text: object) -> Limits:

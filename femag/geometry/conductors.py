@@ -6,6 +6,9 @@ import math
 from dataclasses import dataclass, replace
 from typing import TypeAlias
 
+import numpy as np
+from numpy.typing import NDArray
+
 from femag.errors import InputError, number
 
 SIZES = (1e-7, 1.0)
@@ -19,6 +22,9 @@ about 1.28 sqrt(n) strands wide, which fills 0.61 of it, and 0.7 to 0.85 of that
 
 DENSEST_PACKING = math.pi / math.sqrt(12.0)
 """Share of the plane that equal circles can fill (hexagonal); two or more in a circle fill less."""
+
+SIDES = 12
+"""Sides of the polygon that stands for a circle; a multiple of 4."""
 
 TEMPERATURES = (-100.0, 300.0)
 """Where resistivity is taken as linear, C; common practice, no source."""
@@ -166,6 +172,36 @@ class Foil:
 
 
 Conductor: TypeAlias = RoundWire | LitzWire | Foil
+
+
+def current_outline(conductor: Conductor) -> NDArray[np.float64]:
+    """Return the corners (n, 2) in m, about its centre, of what carries a turn's current.
+
+    Parameters
+    ----------
+    conductor : RoundWire, LitzWire or Foil
+        As laid: foil with its width.
+
+    Notes
+    -----
+    A round wire becomes a regular polygon of `SIDES` sides with the area of its metal, litz one
+    with the area of the bundle inside of the wrapping, foil the rectangle of its metal. Sides, not
+    corners, face along r and z, so that a polygon stays inside the square round its circle and
+    bare wires in square order do not overlap.
+    """
+    match conductor:
+        case Foil():
+            half = 0.5 * np.array([conductor.thickness, conductor.axial_size])
+            corners = np.array([[-1.0, -1.0], [1.0, -1.0], [1.0, 1.0], [-1.0, 1.0]])
+            return np.asarray(half * corners)
+        case RoundWire():
+            diameter = conductor.diameter
+        case LitzWire():
+            diameter = conductor.radial_size - 2 * conductor.insulation
+    angle = 2 * np.pi / SIDES
+    radius = 0.5 * diameter * math.sqrt(angle / math.sin(angle))
+    corner = angle * (np.arange(SIDES) + 0.5)
+    return np.asarray(radius * np.column_stack([np.cos(corner), np.sin(corner)]))
 
 
 def as_laid(conductor: Conductor, height: float) -> Conductor:

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from femag.errors import InputError, number
 from femag.geometry.conductors import Conductor, Metal, as_laid, resistivity
 from femag.geometry.gaps import Gap, gap_length
+from femag.geometry.section import Polygon, rectangle
 from femag.geometry.windings import Block, Winding
 
 Array = NDArray[np.float64]
@@ -28,7 +29,7 @@ SHOWN = 1e-7
 
 @dataclass(frozen=True)
 class Former:
-    """What keeps the conductors away from the core, all in m.
+    """What keeps the conductors away from the core and from each other, all in m.
 
     Parameters
     ----------
@@ -44,6 +45,8 @@ class Former:
         Between the outermost conductor and the ring.
     gap_clearance : float
         Least distance between conductors and a leg that has an air gap, measured along r.
+    tape : float
+        Insulation between the winding and the one that it is laid over.
     """
 
     wall: float = 0.0
@@ -52,6 +55,7 @@ class Former:
     plate_clearance: float = 0.0
     ring_clearance: float = 0.0
     gap_clearance: float = 0.0
+    tape: float = 0.0
 
     def __post_init__(self) -> None:
         accepted = "a length of 0 or more"
@@ -89,6 +93,28 @@ class Layers:
     def turns(self) -> int:
         """Number of turns."""
         return len(self.positions)
+
+    @property
+    def outline(self) -> Polygon:
+        """Corners (r, z) in m of what all turns with their insulation cover together.
+
+        It is the block, less what the last layer leaves free at both ends of it: the same room for
+        each turn, so that a uniform current in it is that of the turns, spread evenly.
+        """
+        block, last = self.block, self.turns_in_layers[-1]
+        if last == self.turns_in_layers[0]:
+            return rectangle(block.inner_radius, block.outer_radius, block.bottom, block.top)
+        step = block.inner_radius + (len(self.turns_in_layers) - 1) * self.conductor.radial_size
+        middle, half = _middle(block), 0.5 * last * self.conductor.axial_size
+        upper = (
+            (block.outer_radius, middle + half), (step, middle + half),
+            (step, block.top), (block.inner_radius, block.top),
+        )  # fmt: skip
+        lower = (
+            (block.inner_radius, block.bottom), (step, block.bottom),
+            (step, middle - half), (block.outer_radius, middle - half),
+        )  # fmt: skip
+        return (*lower, *upper)
 
     @property
     def copper_area(self) -> float:
@@ -152,15 +178,17 @@ def winding_room(former: Former, window: Block, gaps: Sequence[Gap] = ()) -> Blo
     for low, high, way in ((inner, outer, "radially"), (bottom, top, "axially")):
         if not low < high:
             raise InputError(
-                f"the former leaves no room {way}: more than {_millimetres(low - high)} missing",
+                f"the former leaves no room {way}: more than {in_millimetres(low - high)} missing",
                 key="former",
                 accepted="a former and clearances that fit in the window",
             )
     return Block(inner, outer, bottom, top)
 
 
-def missing_room(turns: int, conductor: Conductor, room: Block) -> tuple[float, float]:
-    """Return by how much the room is too small along r and along z in m; (0, 0) if all fits.
+def missing_room(
+    turns: int, conductor: Conductor, depth: float, height: float
+) -> tuple[float, float]:
+    """Return by how much a room is too small along r and along z in m; (0, 0) if all fits.
 
     Parameters
     ----------
@@ -168,29 +196,64 @@ def missing_room(turns: int, conductor: Conductor, room: Block) -> tuple[float, 
         Number of turns.
     conductor : RoundWire, LitzWire or Foil
         What they are laid with.
-    room : Block
-        What there is to fill.
+    depth, height : float
+        Of the room along r and z, m; a depth below 0 is that much too little.
 
     Raises
     ------
     InputError
-        If an argument is out of range.
+        If `conductor` is none.
 
     Notes
     -----
     With both lengths added to the room the turns fit, and with any less they do not. Along z no
     more is asked for than one turn takes; what is missing along r is at the height that results.
     """
-    _check_room(room)
-    wanted = Winding(turns).turns
-    depth, height = _extent(room)
     conductor = as_laid(conductor, height)
-    layers = math.ceil(wanted / max(1, _fitting(height, conductor.axial_size)))
+    layers = math.ceil(turns / max(1, _fitting(height, conductor.axial_size)))
     radial = layers * conductor.radial_size - depth
     axial = conductor.axial_size - height
     return (
         radial if radial > SLACK * depth else 0.0,
         axial if axial > SLACK * height else 0.0,
+    )
+
+
+def check_fit(
+    turns: int, conductor: Conductor, depth: float, height: float, sections: int = 1
+) -> None:
+    """Refuse turns for which there is too little room.
+
+    Parameters
+    ----------
+    turns : int
+        Number of turns.
+    conductor : RoundWire, LitzWire or Foil
+        What they are laid with.
+    depth, height : float
+        Of the room of each section along r and z, m; a depth below 0 is that much too little.
+    sections : int
+        Number of equal rooms that the turns are spread over as evenly as may be.
+
+    Raises
+    ------
+    InputError
+        If they do not fit: the message has the missing space of a section along r or z, and how
+        many turns would fit.
+    """
+    radial, axial = missing_room(math.ceil(turns / sections), conductor, depth, height)
+    if not (radial or axial):
+        return
+    laid = as_laid(conductor, height)
+    room_for = _fitting(height, laid.axial_size) * _fitting(max(depth, 0.0), laid.radial_size)
+    wide = f"one turn is too wide for the height by {in_millimetres(axial)}" if axial else ""
+    thick = f"layers too thick by {in_millimetres(radial)}" if radial else ""
+    where = " in their sections" if sections > 1 else ""
+    raise InputError(
+        f"the turns do not fit{where}: {' and '.join(part for part in (wide, thick) if part)}",
+        key="winding.turns",
+        value=turns,
+        accepted=f"at most {sections * room_for} in this room" if room_for else "none in this room",
     )
 
 
@@ -218,13 +281,11 @@ def laid_turns(turns: int, conductor: Conductor, room: Block) -> Layers:
         If the turns do not fit: the message has the missing space along r or z, and how many
         turns would fit; or if an argument is out of range.
     """
-    radial, axial = missing_room(turns, conductor, room)
+    _check_room(room)
     depth, height = _extent(room)
+    check_fit(Winding(turns).turns, conductor, depth, height)
     conductor = as_laid(conductor, height)
     in_full_layer = _fitting(height, conductor.axial_size)
-    if radial or axial:
-        room_for = in_full_layer * _fitting(depth, conductor.radial_size)
-        raise _does_not_fit(turns, room_for, radial, axial)
     layer, place = np.divmod(np.arange(int(turns)), in_full_layer)
     turns_in_layers = np.bincount(layer)
     r = room.inner_radius + (layer + 0.5) * conductor.radial_size
@@ -239,30 +300,23 @@ def laid_turns(turns: int, conductor: Conductor, room: Block) -> Layers:
     )
 
 
-def dc_resistance(layers: Layers, conductor: Conductor, metal: Metal, temperature: float) -> float:
-    """Return the resistance of a winding to direct current in ohm, without its leads.
+def dc_resistance(layers: Layers, metal: Metal, temperature: float) -> float:
+    """Return the resistance of laid turns to direct current in ohm, without their leads.
 
     Parameters
     ----------
     layers : Layers
         The turns.
-    conductor : RoundWire, LitzWire or Foil
-        What they were laid with.
     metal : Metal
-        What it is made of.
+        What their conductor is made of.
     temperature : float
         In degrees Celsius.
 
     Raises
     ------
     InputError
-        If the layers are of another conductor, or the temperature is out of range.
+        If the temperature is out of range.
     """
-    if as_laid(conductor, _extent(layers.room)[1]) != layers.conductor:
-        raise InputError(
-            "not the conductor of these layers", key="conductor", value=conductor,
-            accepted=repr(layers.conductor),
-        )  # fmt: skip
     return resistivity(metal, temperature) * layers.wire_length / layers.conductor.copper_area
 
 
@@ -301,17 +355,6 @@ def _check_room(room: object) -> None:
         raise InputError("out of range", key="room", value=room, accepted=accepted)
 
 
-def _does_not_fit(turns: int, room_for: int, radial: float, axial: float) -> InputError:
-    wide = f"one turn is too wide for the height by {_millimetres(axial)}" if axial else ""
-    thick = f"layers too thick by {_millimetres(radial)}" if radial else ""
-    return InputError(
-        f"the turns do not fit: {' and '.join(part for part in (wide, thick) if part)}",
-        key="winding.turns",
-        value=turns,
-        accepted=f"at most {room_for} in this room" if room_for else "none in this room",
-    )
-
-
-def _millimetres(length: float) -> str:
+def in_millimetres(length: float) -> str:
     """Return a length as text in mm, rounded up so that adding it is enough."""
     return f"{math.ceil(length / SHOWN - 1e-8) * SHOWN * 1e3:.10g} mm"

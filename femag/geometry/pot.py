@@ -2,22 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from types import MappingProxyType
 
 import numpy as np
 
 from femag.errors import InputError, number
-from femag.geometry.gaps import (
-    Gap,
-    GapPiece,
-    gap_length,
-    piece_names,
-    post_pieces,
-    ring_pieces,
-)
-from femag.geometry.section import Cut, Region, rectangle
+from femag.geometry.turned_core import Array, TurnedCore
 
 LENGTH = "a length above 0"
 DIMENSIONS = (
@@ -79,145 +69,66 @@ class PotCore:
                 )
 
     @property
-    def hole_radius(self) -> float:
-        """Radius of the hole, m."""
-        return self.hole_diameter / 2
-
-    @property
-    def post_radius(self) -> float:
-        """Radius of the post, m."""
-        return self.post_diameter / 2
-
-    @property
     def window_radius(self) -> float:
         """Inner radius of the ring, m."""
         return self.window_diameter / 2
 
     @property
-    def outer_radius(self) -> float:
-        """Outer radius of the ring, m."""
-        return self.outer_diameter / 2
+    def family(self) -> str:
+        """Family of cores."""
+        return "pot"
+
+    @property
+    def sizes(self) -> dict[str, float]:
+        """Every dimension, m."""
+        return {name: getattr(self, name) for name in DIMENSIONS}
+
+    @property
+    def description(self) -> str:
+        """Family and size in words."""
+        return f"pot core {1e3 * self.outer_diameter:g} x {1e3 * self.height:g} mm"
+
+    @property
+    def model_note(self) -> str:
+        """What the core of revolution leaves out, in words."""
+        return "The model is axisymmetric, without slots for the leads."
+
+    @property
+    def turned(self) -> TurnedCore:
+        """The core of revolution that is solved: the pot itself, without slots."""
+        hole, outside = self.hole_diameter / 2, self.outer_diameter / 2
+        thickness = self.plate_thickness
+        return TurnedCore(
+            hole_radius=hole,
+            post_radius=self.post_diameter / 2,
+            ring_inner_radius=self.window_radius,
+            ring_outer_radius=outside,
+            plate=((hole, thickness), (outside, thickness)),
+        )
 
     @property
     def plate_thickness(self) -> float:
         """Thickness of each end plate, m."""
         return (self.height - self.window_height) / 2
 
+    @property
+    def leg_area(self) -> float:
+        """Section of the ring, m2."""
+        return self.turned.ring_area
 
-def half_window_height(core: PotCore, gaps: Sequence[Gap]) -> float:
-    """Return half the window height of the gapped set in m: a spacer adds to it."""
-    return (core.window_height + gap_length(gaps, "all")) / 2
+    @property
+    def leg_depth(self) -> float:
+        """How far outside of the window half of the ring's section lies, m."""
+        halving = np.sqrt((self.window_radius**2 + (self.outer_diameter / 2) ** 2) / 2)
+        return float(halving) - self.window_radius
 
+    def plate_width(self, radius: Array) -> Array:
+        """Return the width in m of the plate that flux crosses at radii in m: the circumference."""
+        return 2.0 * np.pi * radius
 
-def pot_regions(core: PotCore, gaps: Sequence[Gap]) -> tuple[Region, ...]:
-    """Return post, plates, ring, gaps and window as regions, z = 0 in the middle.
-
-    A leg with one opening has an upper and a lower part, unless the opening lies at a plate;
-    the parts and openings of one with several are numbered from below.
-
-    Raises
-    ------
-    InputError
-        If a gap does not fit.
-    """
-    half_window = half_window_height(core, gaps)
-    half_height = half_window + core.plate_thickness
-    in_post, in_ring = post_pieces(gaps, core.window_height), ring_pieces(gaps)
-    return (
-        *_leg(core.hole_radius, core.post_radius, half_window, in_post, "post"),
-        *_leg(core.window_radius, core.outer_radius, half_window, in_ring, "ring"),
-        Region(
-            "upper plate",
-            "core",
-            rectangle(core.hole_radius, core.outer_radius, half_window, half_height),
-        ),
-        Region(
-            "lower plate",
-            "core",
-            rectangle(core.hole_radius, core.outer_radius, -half_height, -half_window),
-        ),
-        Region(
-            "window",
-            "air",
-            rectangle(core.post_radius, core.window_radius, -half_window, half_window),
-        ),
-    )
-
-
-def pot_cuts(core: PotCore, gaps: Sequence[Gap]) -> tuple[Cut, ...]:
-    """Return the cuts through the upper half whose mean flux density is reported."""
-    half_window = half_window_height(core, gaps)
-    half_height = half_window + core.plate_thickness
-    return (
-        _cut_at_gap(core, post_pieces(gaps, core.window_height), half_window),
-        Cut("post, at the plate", (core.hole_radius, half_window), (core.post_radius, half_window)),
-        Cut("plate, at the post", (core.post_radius, half_window), (core.post_radius, half_height)),
-        Cut(
-            "plate, at the ring",
-            (core.window_radius, half_window),
-            (core.window_radius, half_height),
-        ),
-        Cut(
-            "ring, at the joint",
-            (core.window_radius, gap_length(gaps, "all") / 2),
-            (core.outer_radius, gap_length(gaps, "all") / 2),
-        ),
-    )
-
-
-class CutWithoutTwin(Cut):
-    """A cut whose mirror image lies at nothing that deserves its name."""
-
-    def mirrored(self) -> Cut:
-        """Return the cut itself."""
-        return self
-
-
-def _cut_at_gap(core: PotCore, pieces: Sequence[GapPiece], half_window: float) -> Cut:
-    """Return the cut along the outermost face that is not at a plate, above rather than below."""
-    faces = [face for piece in pieces for face in (piece.bottom, piece.top)]
-    face = max((face for face in faces if abs(face) < half_window), key=lambda z: (abs(z), z),
-               default=0.0)  # fmt: skip
-    lopsided = bool(pieces) and pieces[-1].top != -pieces[0].bottom
-    kind = CutWithoutTwin if lopsided else Cut
-    return kind("post, at the gap", (core.hole_radius, face), (core.post_radius, face))
-
-
-def gap_permeabilities(core: PotCore, gaps: Sequence[Gap]) -> Mapping[str, float]:
-    """Return the relative permeability of the region of every gap, by its name."""
-    legs = {"post": post_pieces(gaps, core.window_height), "ring": ring_pieces(gaps)}
-    return MappingProxyType(
-        {
-            name: piece.permeability
-            for leg, pieces in legs.items()
-            for name, piece in zip(piece_names(pieces, leg), pieces, strict=True)
-        }
-    )
-
-
-def _leg(
-    r0: float, r1: float, half_window: float, pieces: Sequence[GapPiece], leg: str
-) -> Iterator[Region]:
-    """Yield the parts and openings of a leg from above."""
-    floors = (-half_window, *(piece.top for piece in pieces))
-    ceilings = (*(piece.bottom for piece in pieces), half_window)
-    if not pieces:
-        names: tuple[str, ...] = (leg,)
-    elif len(pieces) == 1:
-        names = (f"lower {leg}", f"upper {leg}")
-    else:
-        first = 1 if ceilings[0] > floors[0] else 0
-        names = tuple(f"{leg} {place}" for place in range(first, first + len(floors)))
-    parts = [
-        Region(name, "core", rectangle(r0, r1, floor, ceiling))
-        for name, floor, ceiling in zip(names, floors, ceilings, strict=True)
-        if ceiling > floor
-    ]
-    openings = [
-        Region(name, "air", rectangle(r0, r1, piece.bottom, piece.top))
-        for name, piece in zip(piece_names(pieces, leg), pieces, strict=True)
-    ]
-    yield from sorted((*parts, *openings), key=lambda part: -part.polygon[0][1])
+    def ring_gap(self, spacer: float, permeability: float = 1.0) -> float:
+        """Return the gap in m of the ring for a spacer of a thickness in m: the same."""
+        return spacer
 
 
 def _dimension_error(problem: str, name: str, value: float, accepted: str) -> InputError:

@@ -5,6 +5,7 @@ Polygons nest: each lies inside its `parent` and may touch, but not overlap, its
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import dataclass, replace
 from typing import Literal
 
@@ -35,12 +36,18 @@ class Region:
         Corners (r, z) in m, in order, r >= 0, without repeating the first.
     parent : str
         Region that it lies in; the surroundings by default.
+    winding : str
+        Name of the winding that it is a part of; empty where it is not one of a design's.
+    turns : int
+        Turns of that winding in it.
     """
 
     name: str
     role: Role
     polygon: Polygon
     parent: str = SURROUNDINGS
+    winding: str = ""
+    turns: int = 0
 
 
 @dataclass(frozen=True)
@@ -215,15 +222,18 @@ def open_section(regions: tuple[Region, ...], radius: float) -> Section:
 
 
 def is_mirror_symmetric(section: Section) -> bool:
-    """Return whether z -> -z maps the section onto itself, each winding onto itself."""
+    """Return whether z -> -z maps the section onto itself, each winding onto itself.
 
-    def key(region: Region, sign: float) -> tuple[str, frozenset[Point]]:
+    A part of a winding may be mapped onto another part with as many turns.
+    """
+
+    def key(region: Region, sign: float) -> tuple[str, int, frozenset[Point]]:
         corners = frozenset((_rounded(r), _rounded(sign * z)) for r, z in region.polygon)
-        return region.name if region.role == "winding" else region.role, corners
+        in_winding = region.winding or region.name
+        return in_winding if region.role == "winding" else region.role, region.turns, corners
 
-    up = sorted((key(region, 1.0) for region in section.regions), key=repr)
-    down = sorted((key(region, -1.0) for region in section.regions), key=repr)
-    return _as_counts(up) == _as_counts(down)
+    up, down = (Counter(key(part, sign) for part in section.regions) for sign in (1.0, -1.0))
+    return up == down
 
 
 def upper_half(section: Section) -> Section:
@@ -264,7 +274,3 @@ def clipped_above_axis_plane(polygon: Polygon) -> Polygon:
 
 def _rounded(value: float) -> float:
     return round(value, 12) + 0.0
-
-
-def _as_counts(keys: list[tuple[str, frozenset[Point]]]) -> dict[tuple[str, frozenset[Point]], int]:
-    return {key: keys.count(key) for key in keys}

@@ -1,18 +1,20 @@
-"""Windings as blocks of uniform current density in the window."""
+"""Windings as they are asked for: turns, conductor, and the room that they have."""
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, fields
 from typing import TYPE_CHECKING
 
-from femag.errors import InputError, entry_key, number
+from femag.errors import InputError, number
 from femag.geometry.conductors import COPPER, Conductor, Metal, resistivity
-from femag.geometry.section import Region, rectangle
 
 if TYPE_CHECKING:
     from femag.geometry.layers import Former
 
 MOST_TURNS = 1_000_000
+
+MOST_SECTIONS = 100
 
 
 @dataclass(frozen=True)
@@ -52,7 +54,7 @@ class Block:
 
 @dataclass(frozen=True)
 class Winding:
-    """Turns in a block.
+    """Turns in a block, or laid from a conductor.
 
     Parameters
     ----------
@@ -64,13 +66,17 @@ class Winding:
         Unique in the design.
     conductor : RoundWire, LitzWire or Foil, optional
         Laid in layers, in the block if there is one, else in what the former leaves of the
-        window; the turns' own block then carries the current.
+        window, over the windings before it that are laid there; the turns then carry the current.
     former : Former, optional
-        What keeps the conductor away from the core.
+        What keeps the conductor away from the core; when left out, that of the winding below.
     metal : Metal
         What the conductor is made of.
     temperature : float
         Of the conductor, degrees Celsius, for its resistance.
+    sections : int
+        Number of equal chambers side by side along z that the turns are spread over.
+    divider : float
+        Thickness of the walls between the sections, m.
     """
 
     turns: int
@@ -80,6 +86,8 @@ class Winding:
     former: Former | None = None
     metal: Metal = COPPER
     temperature: float = 20.0
+    sections: int = 1
+    divider: float = 0.0
 
     def __post_init__(self) -> None:
         accepted = f"a whole number from 1 to {MOST_TURNS}"
@@ -108,41 +116,25 @@ class Winding:
                 accepted="one of the two: the block is the room already",
             )  # fmt: skip
         resistivity(self.metal, self.temperature)
+        self._check_sections()
 
-
-def winding_region(name: str, block: Block, window: Block, index: int) -> Region:
-    """Return the region of a winding, named after it.
-
-    Parameters
-    ----------
-    name : str
-        The winding's name.
-    block : Block
-        Where its turns lie.
-    window : Block
-        The room that the core leaves.
-    index : int
-        Its place in the design from 0, for messages.
-
-    Raises
-    ------
-    InputError
-        If the block leaves the window.
-    """
-    slack = 1e-9 * window.outer_radius
-    for side, sign, limit_name in (
-        ("inner_radius", 1, "the post"),
-        ("outer_radius", -1, "the ring"),
-        ("bottom", 1, "the lower plate"),
-        ("top", -1, "the upper plate"),
-    ):
-        value, limit = getattr(block, side), getattr(window, side)
-        if sign * (value - limit) < -slack:
+    def _check_sections(self) -> None:
+        key, accepted = "winding.sections", f"a whole number from 1 to {MOST_SECTIONS}"
+        sections = number(self.sections, key, accepted)
+        if not (1 <= sections <= MOST_SECTIONS and sections == int(sections)):
             raise InputError(
-                f"the winding reaches into {limit_name}",
-                key=f"{entry_key('winding', index)}.block.{side}",
-                value=value,
-                accepted=f"{'at least' if sign > 0 else 'at most'} {limit * 1e3:g} mm",
+                "sections out of range", key=key, value=self.sections, accepted=accepted
             )
-    polygon = rectangle(block.inner_radius, block.outer_radius, block.bottom, block.top)
-    return Region(f"winding {name}", "winding", polygon, parent="window")
+        if sections > self.turns:
+            raise InputError(
+                "more sections than turns", key=key, value=self.sections,
+                accepted=f"at most {self.turns}, a turn in each",
+            )  # fmt: skip
+        key, accepted = "winding.divider", "a length of 0 or more"
+        if not 0.0 <= number(self.divider, key, accepted) < math.inf:
+            raise InputError("out of range", key=key, value=self.divider, accepted=accepted)
+        if self.divider > 0.0 and sections == 1:
+            raise InputError(
+                "a divider needs sections", key=key, value=self.divider,
+                accepted="winding.sections of 2 or more beside it",
+            )  # fmt: skip

@@ -2,16 +2,10 @@
 
 from femag.hand.comparison import (
     HandEstimate,
+    core_network,
     gap_shapes,
     hand_estimates,
     plain_inductance,
-    pot_network,
-)
-from femag.hand.effective import (
-    CoreSection,
-    EffectiveParameters,
-    core_sections,
-    effective_parameters,
 )
 from femag.hand.fringing import FORMULAS, Formula, GapShape, block_permeance
 from femag.hand.network import Branch, NetworkState, network_state
@@ -19,18 +13,14 @@ from femag.hand.network import Branch, NetworkState, network_state
 __all__ = [
     "FORMULAS",
     "Branch",
-    "CoreSection",
-    "EffectiveParameters",
     "Formula",
     "GapShape",
     "HandEstimate",
     "NetworkState",
     "block_permeance",
-    "core_sections",
-    "effective_parameters",
+    "core_network",
     "gap_shapes",
     "hand_estimates",
     "network_state",
     "plain_inductance",
-    "pot_network",
 ]

@@ -107,6 +107,11 @@ class NetworkState:
         mmf = np.array([branch.mmf for branch in self.branches])
         return float(self.flux @ mmf) / current
 
+    def flux_through(self, node: str) -> float:
+        """Return the flux in Wb that leaves a node along the branches that start there."""
+        starts = np.array([branch.start == node for branch in self.branches])
+        return float(np.sum(self.flux[starts]))
+
     def energy_inductance(self, current: float) -> float:
         """Return 2 W'/I^2 in H for the current (A) behind all mmf."""
         return 2.0 * self.coenergy / current**2

@@ -23,9 +23,11 @@ from femag.geometry import (
     dc_resistance,
     laid_turns,
     missing_room,
+    polygon_area,
     resistivity,
     winding_room,
 )
+from femag.geometry.conductors import as_laid, current_outline
 
 MM = 1e-3
 ROOM = Block(6.4 * MM, 10 * MM, -4.8 * MM, 4.8 * MM)
@@ -52,6 +54,10 @@ def most_turns(conductor: Conductor, room: Block) -> int:
         laid_turns(100_000, conductor, room)
     (count,) = re.findall(r"at most (\d+) in this room", str(caught.value))
     return int(count)
+
+
+def extent(room: Block) -> tuple[float, float]:
+    return room.outer_radius - room.inner_radius, room.top - room.bottom
 
 
 def shown_missing(error: InputError, cause: str) -> float:
@@ -250,8 +256,8 @@ def test_scaling_all_lengths_scales_the_winding(conductor: Conductor, factor: fl
     assert large.positions == pytest.approx(factor * small.positions)
     assert large.fill_of_room == pytest.approx(small.fill_of_room)
     assert large.fill_of_block == pytest.approx(small.fill_of_block)
-    resistance = dc_resistance(small, conductor, COPPER, 60.0)
-    assert dc_resistance(large, large_conductor, COPPER, 60.0) == pytest.approx(resistance / factor)
+    resistance = dc_resistance(small, COPPER, 60.0)
+    assert dc_resistance(large, COPPER, 60.0) == pytest.approx(resistance / factor)
 
 
 def test_moving_the_room_along_the_axis_moves_the_turns() -> None:
@@ -269,7 +275,7 @@ def test_turns_that_fit_are_laid_and_one_more_is_refused(seed: int) -> None:
     count = most_turns(wire, room)
     assert count == int(depth / wire.radial_size) * int(height / wire.axial_size)
     assert laid_turns(count, wire, room).turns == count
-    assert missing_room(count, wire, room) == (0.0, 0.0)
+    assert missing_room(count, wire, *extent(room)) == (0.0, 0.0)
     with pytest.raises(InputError, match="layers too thick by"):
         laid_turns(count + 1, wire, room)
 
@@ -277,7 +283,7 @@ def test_turns_that_fit_are_laid_and_one_more_is_refused(seed: int) -> None:
 @pytest.mark.parametrize("conductor", CONDUCTORS, ids=repr)
 def test_layers_fit_once_the_missing_depth_is_added_and_not_before(conductor: Conductor) -> None:
     turns = 3 * most_turns(conductor, ROOM)
-    radial, axial = missing_room(turns, conductor, ROOM)
+    radial, axial = missing_room(turns, conductor, *extent(ROOM))
     assert radial > 0.0
     assert axial == 0.0
     laid_turns(turns, conductor, replace(ROOM, outer_radius=ROOM.outer_radius + radial))
@@ -303,7 +309,7 @@ def test_the_missing_depth_agrees_with_a_sum_by_hand() -> None:
 def test_a_conductor_too_wide_for_the_height_says_so(conductor: Conductor) -> None:
     with pytest.raises(InputError, match="none in this room") as caught:
         laid_turns(5, conductor, ROOM)
-    radial, axial = missing_room(5, conductor, ROOM)
+    radial, axial = missing_room(5, conductor, *extent(ROOM))
     assert axial == pytest.approx(2.4 * MM)
     assert radial == pytest.approx(5 * conductor.radial_size - 3.6 * MM)
     assert shown_missing(caught.value, "too wide for the height") == pytest.approx(axial, abs=1e-7)
@@ -356,28 +362,44 @@ def test_resistance_of_a_winding_is_that_of_its_straightened_wire() -> None:
     # Layers at 6.65, 7.15 and 7.65 mm: 19 x 6.65 + 19 x 7.15 + 12 x 7.65 = 354 mm.
     length, area = 2 * np.pi * 0.354, np.pi * (0.25 * MM) ** 2
     expected = 1.7241e-8 * (1 + 0.00393 * 80) * length / area
-    assert dc_resistance(layers, RoundWire(0.5 * MM), COPPER, 100.0) == pytest.approx(expected)
+    assert dc_resistance(layers, COPPER, 100.0) == pytest.approx(expected)
 
 
 def test_litz_has_the_resistance_of_its_strands_in_parallel() -> None:
     litz = LitzWire(60, 0.1 * MM, outer_diameter=1.1 * MM)
     strand = RoundWire(0.1 * MM, 0.5 * MM)
-    one = dc_resistance(laid_turns(12, strand, ROOM), strand, COPPER, 20.0)
-    assert dc_resistance(laid_turns(12, litz, ROOM), litz, COPPER, 20.0) == pytest.approx(one / 60)
+    one = dc_resistance(laid_turns(12, strand, ROOM), COPPER, 20.0)
+    assert dc_resistance(laid_turns(12, litz, ROOM), COPPER, 20.0) == pytest.approx(one / 60)
 
 
-def test_resistance_of_another_conductor_than_the_laid_one_is_refused() -> None:
-    foil = Foil(0.1 * MM)
-    layers = laid_turns(10, foil, ROOM)
-    by_given = dc_resistance(layers, foil, ALUMINIUM, 20.0)
-    assert by_given == dc_resistance(layers, layers.conductor, ALUMINIUM, 20.0)
-    with pytest.raises(InputError, match="not the conductor of these layers"):
-        dc_resistance(layers, Foil(0.2 * MM), ALUMINIUM, 20.0)
+@pytest.mark.parametrize("conductor", CONDUCTORS, ids=repr)
+def test_what_carries_the_current_has_its_area_and_stays_in_the_room_of_a_turn(
+    conductor: Conductor,
+) -> None:
+    laid = as_laid(conductor, 9.6 * MM)
+    corners = current_outline(laid)
+    area = laid.copper_area
+    if isinstance(laid, LitzWire):  # the bundle inside of its wrapping
+        area = np.pi / 4 * (laid.radial_size - 2 * laid.insulation) ** 2
+    assert polygon_area(tuple(map(tuple, corners))) == pytest.approx(area, rel=1e-12)
+    room = np.array([laid.radial_size, laid.axial_size])
+    assert np.all(np.abs(corners) <= room / 2 * (1 + 1e-12))
+    assert corners.mean(axis=0) == pytest.approx(0.0, abs=1e-9 * MM)
+
+
+@pytest.mark.parametrize("turns", [5, 19, 20, 50])
+def test_the_outline_of_layers_has_one_room_for_each_turn(turns: int) -> None:
+    layers = laid_turns(turns, RoundWire(0.5 * MM), ROOM)
+    assert polygon_area(layers.outline) == pytest.approx(turns * (0.5 * MM) ** 2)
+    corners = np.array(layers.outline)
+    block = layers.block
+    sides = (block.inner_radius, block.bottom, block.outer_radius, block.top)
+    assert (*corners.min(axis=0), *corners.max(axis=0)) == pytest.approx(sides)
 
 
 def test_the_block_of_a_winding_goes_into_a_symmetric_design(pot_26_16: fm.Design) -> None:
     core = pot_26_16.core
-    window = Block(core.post_radius, core.window_radius, -5.5 * MM, 5.5 * MM)
+    window = Block(core.turned.post_radius, core.window_radius, -5.5 * MM, 5.5 * MM)
     former = Former(wall=0.65 * MM, flange=0.7 * MM, ring_clearance=0.6 * MM)
     layers = laid_turns(50, RoundWire(0.5 * MM, 0.03 * MM), winding_room(former, window))
     assert len(layers.turns_in_layers) == 3

@@ -7,9 +7,8 @@ import pytest
 import femag as fm
 from femag.design import meshed_section, whole_section
 from femag.design_file import design_from_toml
-from femag.geometry import gap_length, pot_cuts, region_areas
+from femag.geometry import core_cuts, gap_length, gap_permeabilities, region_areas
 from femag.geometry.gaps import post_pieces
-from femag.geometry.pot import gap_permeabilities
 
 HALF = 5.5e-3
 """Half the window height of the pot core 26/16, m."""
@@ -152,7 +151,7 @@ def test_permeability_goes_to_every_opening_of_its_gap(pot_26_16: fm.Design) -> 
 def test_the_cut_at_the_gap_lies_at_its_outermost_face_inside_the_post(
     pot_26_16: fm.Design, gaps: tuple[fm.Gap, ...], face: float
 ) -> None:
-    cut = pot_cuts(pot_26_16.core, gaps)[0]
+    cut = core_cuts(pot_26_16.core, gaps)[0]
     assert cut.name == "post, at the gap"
     assert (1e3 * cut.start[1], 1e3 * cut.end[1]) == pytest.approx((face, face))
     mirror = 1.0 if gaps and gaps[0].offset else -1.0

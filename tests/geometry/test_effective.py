@@ -5,8 +5,7 @@ import pytest
 from scipy.integrate import quad
 
 from femag.errors import InputError
-from femag.geometry import PotCore
-from femag.hand import core_sections, effective_parameters
+from femag.geometry import PotCore, core_sections, effective_parameters
 
 
 def pot(
@@ -75,7 +74,12 @@ def test_least_section_can_be_the_ring() -> None:
 def test_sums_equal_the_formulas_of_the_standard(size: str) -> None:
     """IEC 60205, section formulas from memory, both halves of the core in one term each."""
     core = POTS[size]
-    r1, r2, r3, r4 = core.hole_radius, core.post_radius, core.window_radius, core.outer_radius
+    r1, r2, r3, r4 = (
+        core.turned.hole_radius,
+        core.turned.post_radius,
+        core.window_radius,
+        core.turned.ring_outer_radius,
+    )
     t, h2, pi = core.plate_thickness, core.window_height, np.pi
     ring, post = pi * (r4**2 - r3**2), pi * (r2**2 - r1**2)
     s1, s2 = np.sqrt((r3**2 + r4**2) / 2) - r3, r2 - np.sqrt((r1**2 + r2**2) / 2)
@@ -97,7 +101,7 @@ def test_plate_has_the_shares_of_its_rings() -> None:
     for power in (1, 2):
         share, _ = quad(
             lambda r, power=power: (2 * np.pi * r * core.plate_thickness) ** -power,
-            core.post_radius,
+            core.turned.post_radius,
             core.window_radius,
             epsrel=1e-12,
         )

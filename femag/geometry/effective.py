@@ -12,11 +12,15 @@ published; the section formulas are cited from memory, plates and corners derive
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
 from femag.errors import InputError
-from femag.geometry import PotCore
+from femag.geometry.turned_core import Core
+
+NODES = 64
+"""Points of the quadrature along a plate."""
 
 
 @dataclass(frozen=True)
@@ -72,12 +76,12 @@ class EffectiveParameters:
         return self.length * self.area
 
 
-def core_sections(core: PotCore, post_gap: float = 0.0) -> tuple[CoreSection, ...]:
+def core_sections(core: Core, post_gap: float = 0.0) -> tuple[CoreSection, ...]:
     """Return the core's sections in the order of the flux, from the post round to the ring.
 
     Parameters
     ----------
-    core : PotCore
+    core : Core
         Dimensions of the ungapped set.
     post_gap : float
         What is ground away from the post, m. A spacer takes nothing from the core.
@@ -92,20 +96,21 @@ def core_sections(core: PotCore, post_gap: float = 0.0) -> tuple[CoreSection, ..
             "the gap is longer than the post", key="post_gap", value=post_gap,
             accepted=f"0 to less than {core.window_height * 1e3:g} mm",
         )  # fmt: skip
-    post, ring = _post_area(core), _ring_area(core)
-    thickness = core.plate_thickness
-    inner_depth = core.post_radius - np.sqrt((core.hole_radius**2 + core.post_radius**2) / 2)
-    outer_depth = np.sqrt((core.window_radius**2 + core.outer_radius**2) / 2) - core.window_radius
-    inner = np.pi / 8 * (2 * inner_depth + thickness), (post + _plate_area(core)) / 2
-    outer_plate = 2 * np.pi * core.window_radius * thickness
-    outer = np.pi / 8 * (2 * outer_depth + thickness), (ring + outer_plate) / 2
+    thickness, leg = core.plate_thickness, core.leg_area
+    hole_radius, post_radius = _post_radii(core)
+    post = np.pi * (post_radius**2 - hole_radius**2)
+    halving = np.sqrt((hole_radius**2 + post_radius**2) / 2)
+    at_post, at_leg = _plate_ends(core)
+    inner_depth = post_radius - halving
+    inner = np.pi / 8 * (2 * inner_depth + thickness), (post + at_post) / 2
+    outer = np.pi / 8 * (2 * core.leg_depth + thickness), (leg + at_leg) / 2
     plate = _plate(core)
     pieces = (
         ("post", core.window_height - post_gap, post),
         ("upper inner corner", *inner),
         ("upper plate", *plate),
         ("upper outer corner", *outer),
-        ("ring", core.window_height, ring),
+        ("ring", core.window_height, leg),
         ("lower outer corner", *outer),
         ("lower plate", *plate),
         ("lower inner corner", *inner),
@@ -113,35 +118,52 @@ def core_sections(core: PotCore, post_gap: float = 0.0) -> tuple[CoreSection, ..
     return tuple(CoreSection(name, float(length), float(area)) for name, length, area in pieces)
 
 
-def effective_parameters(core: PotCore) -> EffectiveParameters:
-    """Return the effective parameters of an ungapped pot core without slots."""
+@cache
+def effective_parameters(core: Core) -> EffectiveParameters:
+    """Return the effective parameters of an ungapped core without slots."""
     sections = core_sections(core)
     length = np.array([section.length for section in sections])
     area = np.array([section.area for section in sections])
-    least = min(_post_area(core), _ring_area(core), _plate_area(core))
-    return EffectiveParameters(float(np.sum(length / area)), float(np.sum(length / area**2)), least)
+    c1, c2 = float(np.sum(length / area)), float(np.sum(length / area**2))
+    return EffectiveParameters(c1, c2, _least_area(core))
 
 
-def _post_area(core: PotCore) -> float:
-    return float(np.pi * (core.post_radius**2 - core.hole_radius**2))
+def core_factor(core: Core) -> float:
+    """Return the core factor of the ungapped core in 1/m: as published if known, else computed."""
+    published = getattr(core, "core_factor", None)
+    return effective_parameters(core).c1 if published is None else float(published)
 
 
-def _ring_area(core: PotCore) -> float:
-    return float(np.pi * (core.outer_radius**2 - core.window_radius**2))
+@cache
+def _plate_ends(core: Core) -> tuple[float, float]:
+    """Return the section of a plate in m2 where it leaves the post and where it meets the leg."""
+    ends = np.array([_post_radii(core)[1], core.window_radius])
+    at_post, at_leg = core.plate_thickness * core.plate_width(ends)
+    return float(at_post), float(at_leg)
 
 
-def _plate_area(core: PotCore) -> float:
-    """Return the plate's least section, where it leaves the post."""
-    return float(2 * np.pi * core.post_radius * core.plate_thickness)
+def _post_radii(core: Core) -> tuple[float, float]:
+    """Return the radius of the hole and of the post, m."""
+    return core.sizes["hole_diameter"] / 2, core.sizes["post_diameter"] / 2
 
 
-def _plate(core: PotCore) -> tuple[float, float]:
+def _least_area(core: Core) -> float:
+    hole_radius, post_radius = _post_radii(core)
+    radius = np.linspace(post_radius, core.window_radius, NODES)
+    plate = core.plate_thickness * float(core.plate_width(radius).min())
+    return min(float(np.pi * (post_radius**2 - hole_radius**2)), core.leg_area, plate)
+
+
+@cache
+def _plate(core: Core) -> tuple[float, float]:
     """Return length and area of the uniform piece with one plate's shares in C1 and in C2.
 
-    The section of a plate at radius r is 2 pi r t, so the shares are the integrals of 1/(2 pi r t)
-    and of its square from post to ring.
+    The section of a plate at radius r is its width times its thickness, so the shares are the
+    integrals of one over it and of its square from post to leg.
     """
-    r0, r1, thickness = core.post_radius, core.window_radius, core.plate_thickness
-    c1 = np.log(r1 / r0) / (2 * np.pi * thickness)
-    c2 = (r1 - r0) / (4 * np.pi**2 * r0 * r1 * thickness**2)
-    return float(c1**2 / c2), float(c1 / c2)
+    node, weight = np.polynomial.legendre.leggauss(NODES)
+    r0, r1 = _post_radii(core)[1], core.window_radius
+    section = core.plate_thickness * core.plate_width(r0 + (r1 - r0) * (node + 1.0) / 2.0)
+    weight = weight * (r1 - r0) / 2.0
+    c1, c2 = float(np.sum(weight / section)), float(np.sum(weight / section**2))
+    return c1**2 / c2, c1 / c2
