@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +17,7 @@ from femag.field.bounds import (
     exact_solution,
     field_solution,
 )
+from femag.field.current_share import current_share, gaps_to_close
 from femag.field.newton import EXACT
 from femag.field.problem import FieldProblem
 from femag.mesh import SectionMesh, coarse_mesh, refined_mesh
@@ -53,8 +55,8 @@ class ToleranceError(NumericalError):
 
 
 def inductance_bounds(solution: FieldSolution) -> Bounds:
-    """Return the bounds of the energy inductance 2 W'/I^2, H."""
-    return solution.coenergy.scaled(2.0 / solution.current**2, "H")
+    """Return the bounds of the energy inductance in H: 2/I^2 times what the current adds to W'."""
+    return current_share(solution).scaled(2.0 / solution.current**2, "H")
 
 
 def refinements(
@@ -77,13 +79,32 @@ def refinements(
         Mesh to start from; a coarse one when left out.
     """
     sides = both_sides(problem, mesh or coarse_mesh(problem.section))
-    solution = field_solution(sides, current, accuracy=accuracy)
+    solution = _first_solution(sides, current, accuracy)
     while True:
         yield solution
-        mesh, parent = refined_mesh(sides.mesh, marked_elements(solution.local_gap))
+        marked = [marked_elements(gap) for gap in gaps_to_close(solution)]
+        mesh, parent = refined_mesh(sides.mesh, np.unique(np.concatenate(marked)))
         sides = both_sides(problem, mesh)
-        start = transferred_field_strength(solution, sides, parent)
-        solution = field_solution(sides, current, start, accuracy)
+        solution = _next_solution(solution, sides, parent, accuracy)
+
+
+def _first_solution(sides: Sides, current: float, accuracy: float) -> FieldSolution:
+    """Return the fields at a current, with magnets also those without current."""
+    solution = field_solution(sides, current, accuracy=accuracy)
+    if not sides.laws.has_magnets:
+        return solution
+    return replace(solution, idle=field_solution(sides, 0.0, accuracy=accuracy))
+
+
+def _next_solution(
+    coarse: FieldSolution, fine: Sides, parent: Index, accuracy: float
+) -> FieldSolution:
+    """Return the fields of a solution on a finer mesh, started from it."""
+    start = transferred_field_strength(coarse, fine, parent)
+    solution = field_solution(fine, coarse.current, start, accuracy)
+    if coarse.idle is None:
+        return solution
+    return replace(solution, idle=_next_solution(coarse.idle, fine, parent, accuracy))
 
 
 def transferred_field_strength(coarse: FieldSolution, fine: Sides, parent: Index) -> Array | None:
@@ -124,7 +145,7 @@ def adapted_solution(
     current : float
         A.
     tolerance : float
-        Wanted half width of the co-energy over its value.
+        Wanted half width of what the current adds to the co-energy, over its value.
     progress : callable, optional
         Called with every solution.
 
@@ -137,9 +158,9 @@ def adapted_solution(
     for number, solution in enumerate(refinements(problem, current, accuracy)):
         if progress is not None:
             progress(solution)
-        if solution.coenergy.relative_half_width <= tolerance:
+        if current_share(solution).relative_half_width <= tolerance:
             exact = exact_solution(solution)
-            if exact.coenergy.relative_half_width <= tolerance:
+            if current_share(exact).relative_half_width <= tolerance:
                 return exact, number
         if solution.unknowns > MAXIMUM_UNKNOWNS:
             raise ToleranceError(solution, tolerance, f"{solution.unknowns} unknowns in use")

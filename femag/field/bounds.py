@@ -13,6 +13,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -109,21 +110,26 @@ class FieldSolution:
     current : float
         A.
     flux, potential : Minimum
-        Minimisers of the two sides; their fields are B and H.
-    local_gap : array, (elements,)
-        Share of each element in the width of the bracket, J.
+        Minimisers of the two sides; their fields are B and H, less and plus remanence in magnets.
+    idle : FieldSolution, optional
+        Fields without current on the same mesh; with magnets only.
     """
 
     sides: Sides
     current: float
     flux: Minimum
     potential: Minimum
-    local_gap: Array
+    idle: FieldSolution | None = None
 
     @property
     def coenergy(self) -> Bounds:
         """Bounds of the co-energy, J."""
         return Bounds(-self.flux.functional, self.potential.functional, "J")
+
+    @cached_property
+    def local_gap(self) -> Array:
+        """Share of each element in the width of the bracket, J, (elements,)."""
+        return _local_gap(self.sides, self.flux, self.potential)
 
     @property
     def flux_linkage_of_sides(self) -> tuple[float, float]:
@@ -153,7 +159,10 @@ def both_sides(problem: FieldProblem, mesh: SectionMesh, order: int = QUADRATURE
 
 
 def field_solution(
-    sides: Sides, current: float, start: Array | None = None, accuracy: float = EXACT
+    sides: Sides,
+    current: float,
+    start: Array | None = None,
+    accuracy: float = EXACT,
 ) -> FieldSolution:
     """Return both fields at a current.
 
@@ -167,26 +176,36 @@ def field_solution(
         H of a nearby solution to start from.
     accuracy : float
         Accuracy of Newton's method; the bounds hold at any.
-
     Raises
     ------
     NumericalError
         If a side cannot be solved.
     """
     potential = minimum(sides.potential, current, start, accuracy)
-    b_of_h = potential.secant[:, None] * potential.field if sides.laws.saturating else None
-    flux = minimum(sides.flux, current, b_of_h, accuracy)
-    return FieldSolution(sides, current, flux, potential, _local_gap(sides, flux, potential))
+    start_b = _start_of_flux_side(sides, potential) if sides.laws.saturating else None
+    flux = minimum(sides.flux, current, start_b, accuracy)
+    return FieldSolution(sides, current, flux, potential)
+
+
+def _start_of_flux_side(sides: Sides, potential: Minimum) -> Array:
+    """Return B of the potential side, less the remanence of magnets."""
+    b = potential.secant[:, None] * potential.field
+    return b if sides.flux.fixed is None else b + sides.flux.fixed
 
 
 def exact_solution(solution: FieldSolution) -> FieldSolution:
     """Return a solution with Newton's method carried to rounding and energies integrated finely."""
-    sides, current = solution.sides, solution.current
-    if not sides.laws.saturating:
+    if not solution.sides.laws.saturating:
         return solution
+    return finely_integrated(_converged(solution))
+
+
+def _converged(solution: FieldSolution) -> FieldSolution:
+    sides, current = solution.sides, solution.current
     flux = minimum(sides.flux, current, solution.flux.field)
     potential = minimum(sides.potential, current, solution.potential.field)
-    return finely_integrated(replace(solution, flux=flux, potential=potential))
+    idle = _converged(solution.idle) if solution.idle else None
+    return replace(solution, flux=flux, potential=potential, idle=idle)
 
 
 def finely_integrated(solution: FieldSolution, order: int = FINE_ORDER) -> FieldSolution:
@@ -194,18 +213,37 @@ def finely_integrated(solution: FieldSolution, order: int = FINE_ORDER) -> Field
 
     Any admissible field gives a bound, so that fields found with few quadrature points may stay.
     """
-    current, mesh = solution.current, solution.sides.mesh
-    fine = both_sides(solution.sides.problem, mesh, order)
-    flux = evaluated(fine.flux, solution.flux, current)
-    potential = evaluated(fine.potential, solution.potential, current)
-    return FieldSolution(fine, current, flux, potential, _local_gap(fine, flux, potential))
+    return _evaluated_on(both_sides(solution.sides.problem, solution.sides.mesh, order), solution)
+
+
+def coenergy_on(sides: Sides, solution: FieldSolution) -> Bounds:
+    """Return the bounds of the co-energy in J with the quadrature points of other sides."""
+    current = solution.current
+    return Bounds(
+        -sides.flux.functional(solution.flux.x, current),
+        sides.potential.functional(solution.potential.x, current),
+        "J",
+    )
+
+
+def _evaluated_on(sides: Sides, solution: FieldSolution) -> FieldSolution:
+    """Return a solution's fields on the same mesh with other quadrature points."""
+    current = solution.current
+    flux = evaluated(sides.flux, solution.flux, current)
+    potential = evaluated(sides.potential, solution.potential, current)
+    idle = _evaluated_on(sides, solution.idle) if solution.idle else None
+    return FieldSolution(sides, current, flux, potential, idle)
 
 
 def _local_gap(sides: Sides, flux: Minimum, potential: Minimum) -> Array:
+    """Return the integral of w(B) + w'(H) - B . H over each element, J."""
     b, h = flux.field, potential.field
     density = (
         sides.laws.energy_density(np.hypot(b[:, 0], b[:, 1]))
         + sides.laws.coenergy_density(np.hypot(h[:, 0], h[:, 1]))
         - np.sum(b * h, axis=1)
     )
+    if sides.flux.fixed is not None and sides.potential.fixed is not None:
+        less, plus = sides.flux.fixed, sides.potential.fixed
+        density = density + np.sum(b * plus + less * h - 0.5 * less * plus, axis=1)
     return np.asarray(np.sum(sides.discretisation.weight * density, axis=1))

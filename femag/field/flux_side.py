@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from femag.field.discretisation import Discretisation, assembled_vector
-from femag.field.laws import Laws
+from femag.field.laws import Laws, axial_field
 from femag.field.problem import FieldProblem
 from femag.field.side import Side
 
@@ -25,7 +25,8 @@ Index = NDArray[np.int64]
 def flux_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws) -> Side:
     """Return the flux side: B from u, u = 0 on far and tangential walls.
 
-    B_r = -r du/dz and B_z = 2 u + r du/dr hold no 1/r, and u is free on the axis.
+    B_r = -r du/dz and B_z = 2 u + r du/dr hold no 1/r, and u is free on the axis. In a magnet
+    w(B) = |B - Br|^2 / (2 mu).
     """
     unknown, size = _free_unknowns(discretisation)
     turns = turn_density(problem, discretisation)
@@ -42,6 +43,7 @@ def flux_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws)
         law=laws.of_flux_density,
         density=laws.energy_density,
         flattens=False,
+        fixed=axial_field(-laws.remanence, shape.shape[3]),
     )
 
 

@@ -30,10 +30,22 @@ class Laws:
         Initial permeability in H/m, that of the linear materials.
     saturating : tuple of (curve, elements)
         The nonlinear materials and where they are.
+    remanence : array, (elements, 1)
+        Remanence along z in T, of magnets only, which are linear.
     """
 
     permeability: Array
     saturating: tuple[tuple[MagnetisationCurve, Index], ...]
+    remanence: Array
+
+    @property
+    def has_magnets(self) -> bool:
+        """Whether any element has a remanence."""
+        return bool(np.any(self.remanence))
+
+    def magnet_energy(self, weight: Array) -> float:
+        """Return the integral of |Br|^2 / (2 mu) in J, for weights (elements, points) in m3."""
+        return float(np.sum(weight * self.remanence**2 / (2.0 * self.permeability)))
 
     def of_flux_density(self, b: Array) -> tuple[Array, Array]:
         """Return H/B and dH/dB, (elements, points), at magnitudes `b` in T."""
@@ -80,7 +92,17 @@ def material_laws(problem: FieldProblem, mesh: SectionMesh) -> Laws:
         (curve, np.flatnonzero(np.array([c == curve for c in curves])[mesh.region]))
         for curve in nonlinear
     )
-    return Laws(initial[mesh.region][:, None], saturating)
+    remanence = np.array([problem.remanences.get(name, 0.0) for name in mesh.names])
+    return Laws(initial[mesh.region][:, None], saturating, remanence[mesh.region][:, None])
+
+
+def axial_field(magnitude: Array, points: int) -> Array | None:
+    """Return a field along z (elements, 2, points) from (elements, 1); None if it is zero."""
+    if not np.any(magnitude):
+        return None
+    field = np.zeros((len(magnitude), 2, points))
+    field[:, 1] = magnitude
+    return field
 
 
 def _ratio(numerator: Array, denominator: Array, at_zero: Array) -> Array:

@@ -14,7 +14,7 @@ image restoration", SIAM J. Sci. Comput. 20 (1999) 1964, for the same difficulty
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import partial
+from functools import cached_property, partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -38,29 +38,41 @@ class Minimum:
 
     Parameters
     ----------
+    side : Side
+        What was minimised.
+    current : float
+        A.
     x : array
         Unknowns.
     field : array, (elements, 2, points)
-        B or H.
+        B - Br or H + Br/mu, which is B or H outside of magnets.
     secant, tangent : array, (elements, points)
         Coefficients at the field.
-    functional : float
-        Value of the functional, J.
     history : tuple of float
         Squared Newton decrement over the stored energy, one entry an iteration; empty when the
         problem is linear.
     """
 
+    side: Side
+    current: float
     x: Array
     field: Array
     secant: Array
     tangent: Array
-    functional: float
     history: tuple[float, ...]
+
+    @cached_property
+    def functional(self) -> float:
+        """Value of the functional, J."""
+        return self.side.functional(self.x, self.current)
 
 
 def minimum(
-    side: Side, current: float, start: Array | None = None, accuracy: float = EXACT
+    side: Side,
+    current: float,
+    start: Array | None = None,
+    accuracy: float = EXACT,
+    guess: Array | None = None,
 ) -> Minimum:
     """Return the minimiser of a side's functional.
 
@@ -73,6 +85,8 @@ def minimum(
     start : array, (elements, 2, points), optional
         Field of a nearby solution; the first step is Newton's from there. Without it the first
         step solves with the coefficients at zero field.
+    guess : array, (size,), optional
+        Unknowns to start from, instead of a field.
     accuracy : float
         Largest squared Newton decrement over the stored energy before the last full step.
 
@@ -83,17 +97,19 @@ def minimum(
     NumericalError
         If a linear system cannot be solved.
     """
-    x = _first_iterate(side, current, np.zeros_like(side.source) if start is None else start)
-    flow = np.zeros_like(side.source) if start is None else None
+    if guess is not None:
+        x, flow = guess, None
+    else:
+        x = _first_iterate(side, current, np.zeros_like(side.source) if start is None else start)
+        flow = np.zeros_like(side.source) if start is None else None
     history: list[float] = []
     length = 0.0
     while True:
         field = side.field(x, current)
         secant, tangent = side.coefficients(field)
         done = length == 1.0 and history[-1] < accuracy
-        if done or np.array_equal(secant, tangent):
-            value = side.functional(x, current)
-            return Minimum(x, field, secant, tangent, value, tuple(history))
+        if done or (guess is None and np.array_equal(secant, tangent)):
+            return Minimum(side, current, x, field, secant, tangent, tuple(history))
         if len(history) == MAXIMUM_ITERATIONS:
             raise NewtonError(f"Newton's method did not converge on the {side.name}", history)
         gradient = side.gradient(field, secant, current)
@@ -101,7 +117,7 @@ def minimum(
         step = solved(side.hessian(field, secant, tangent, toward), -gradient)
         decrement = float(-gradient @ step)
         length = step_length(partial(_slope, side, x, step, current), decrement)
-        change = side.field(step, 0.0)
+        change = side.change(step)
         flow = secant[:, None] * field + linearised(field, secant, tangent, change, toward)
         x = x + length * step
         scale = float(np.sum(side.weight * secant * np.sum(field**2, axis=1)))
@@ -149,14 +165,13 @@ def solved(matrix: csc_matrix, load: Array) -> Array:
 def evaluated(side: Side, found: Minimum, current: float) -> Minimum:
     """Return a minimiser with its field and functional at the quadrature points of `side`."""
     field = side.field(found.x, current)
-    functional = side.functional(found.x, current)
-    return Minimum(found.x, field, *side.coefficients(field), functional, found.history)
+    return Minimum(side, current, found.x, field, *side.coefficients(field), found.history)
 
 
 def _first_iterate(side: Side, current: float, start: Array) -> Array:
     """Return the minimiser of the quadratic model of the functional around a field `start`."""
     secant, tangent = side.coefficients(start)
-    change = linearised(start, secant, tangent, current * side.source - start)
+    change = linearised(start, secant, tangent, side.prescribed(current) - start)
     flow = secant[:, None] * start + change
     load = current * side.load - side.tested(flow, np.ones_like(secant))
     return solved(side.hessian(start, secant, tangent), load)

@@ -17,7 +17,7 @@ from scipy.sparse.csgraph import connected_components
 
 from femag.field.discretisation import Discretisation
 from femag.field.flux_side import turn_density
-from femag.field.laws import Laws
+from femag.field.laws import Laws, axial_field
 from femag.field.problem import FieldProblem
 from femag.field.side import Side
 from femag.field.source_field import source_field
@@ -27,7 +27,10 @@ Index = NDArray[np.int64]
 
 
 def potential_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws) -> Side:
-    """Return the potential side: Omega is one constant on each connected far or normal wall."""
+    """Return the potential side: Omega is one constant on each connected far or normal wall.
+
+    In a magnet w'(H) = mu |H + Br/mu|^2 / 2 - |Br|^2 / (2 mu).
+    """
     unknown, size = _grouped_unknowns(discretisation)
     source = source_field(discretisation, turn_density(problem, discretisation), laws.permeability)
     return Side(
@@ -41,6 +44,8 @@ def potential_side(problem: FieldProblem, discretisation: Discretisation, laws: 
         law=laws.of_field_strength,
         density=laws.coenergy_density,
         flattens=True,
+        fixed=axial_field(laws.remanence / laws.permeability, discretisation.weight.shape[1]),
+        constant=laws.magnet_energy(discretisation.weight),
     )
 
 

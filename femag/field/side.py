@@ -20,9 +20,10 @@ Law = Callable[[Array], tuple[Array, Array]]
 class Side:
     """A functional: integral of density(|field|) - current load . x.
 
-    The field is current source + S x.
-    On the flux side the field is B, its density w and the load that of the turns; on the
-    potential side the field is H, its density w', the source T, and there is no load.
+    The field is current source + fixed + S x, less a constant in the functional.
+    On the flux side the field is B - Br, its density w and the load that of the turns; on the
+    potential side the field is H + Br/mu, its density w', the source T, and there is no load. Br is
+    the remanence of permanent magnets, zero elsewhere: secant times field is H there and B here.
 
     Parameters
     ----------
@@ -46,6 +47,10 @@ class Side:
         Magnitudes to energy densities.
     flattens : bool
         Whether saturation lowers the tangent (B of H) or raises it (H of B).
+    fixed : array, (elements, 2, points), optional
+        What magnets add to the field; None without magnets.
+    constant : float
+        What is taken off the functional, J.
     """
 
     name: str
@@ -58,13 +63,23 @@ class Side:
     law: Law
     density: Callable[[Array], Array]
     flattens: bool
+    fixed: Array | None = None
+    constant: float = 0.0
 
     def field(self, x: Array, current: float) -> Array:
         """Return the field at the quadrature points, (elements, 2, points)."""
+        return self.change(x) + self.prescribed(current)
+
+    def change(self, x: Array) -> Array:
+        """Return the change of the field with a change of the unknowns, (elements, 2, points)."""
         local = np.append(x, 0.0)[self.unknown]
         elements, _, _, points = self.shape.shape
-        own = (local[:, None, :] @ self.shape.reshape(elements, 6, -1)).reshape(-1, 2, points)
-        return own + current * self.source
+        return (local[:, None, :] @ self.shape.reshape(elements, 6, -1)).reshape(-1, 2, points)
+
+    def prescribed(self, current: float) -> Array:
+        """Return the field that does not hang on the unknowns, (elements, 2, points)."""
+        driven = current * self.source
+        return driven if self.fixed is None else driven + self.fixed
 
     def coefficients(self, field: Array) -> tuple[Array, Array]:
         """Return secant and tangent at a field, (elements, points)."""
@@ -74,7 +89,7 @@ class Side:
         """Return the functional's value, J."""
         field = self.field(x, current)
         stored = np.sum(self.weight * self.density(np.hypot(field[:, 0], field[:, 1])))
-        return float(stored - current * self.load @ x)
+        return float(stored - current * self.load @ x) - self.constant
 
     def gradient(self, field: Array, secant: Array, current: float) -> Array:
         """Return the functional's gradient at a field with its secant, (size,)."""

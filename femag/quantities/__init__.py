@@ -2,7 +2,7 @@
 
 from femag.quantities.copper import WoundCopper, wound_copper
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
-from femag.quantities.fringing import core_coenergy_share, gap_factor, plain_gap_reluctance
+from femag.quantities.fringing import gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
 from femag.quantities.section_means import (
     SectionMean,
@@ -15,7 +15,6 @@ __all__ = [
     "FieldMap",
     "SectionMean",
     "WoundCopper",
-    "core_coenergy_share",
     "field_map",
     "flux_through_discs",
     "gap_factor",

@@ -2,11 +2,8 @@
 
 from __future__ import annotations
 
-import numpy as np
-
 from femag.field.bounds import FieldSolution
-from femag.field.newton import solved
-from femag.field.side import linearised
+from femag.field.tangent import tangents_of_sides
 
 
 def incremental_inductance_of_sides(solution: FieldSolution) -> tuple[float, float]:
@@ -15,14 +12,5 @@ def incremental_inductance_of_sides(solution: FieldSolution) -> tuple[float, flo
     Each is the second derivative of its side's energy by the current at the solution, from one
     linear solve with the tangent; no differences. Their distance estimates an error.
     """
-    flux, side = solution.flux, solution.sides.flux
-    answer = solved(side.hessian(flux.field, flux.secant, flux.tangent), side.load)
-    from_flux = float(side.load @ answer)
-
-    potential, side = solution.potential, solution.sides.potential
-    state = (potential.field, potential.secant, potential.tangent)
-    flow = linearised(*state, side.source)
-    stiff = np.sum(side.weight * np.sum(flow * side.source, axis=1))
-    coupling = side.tested(flow, np.ones_like(potential.secant))
-    from_potential = float(stiff - coupling @ solved(side.hessian(*state), coupling))
-    return from_flux, from_potential
+    flux, potential = tangents_of_sides(solution)
+    return flux.inductance, potential.inductance

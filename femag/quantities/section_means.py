@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from femag.design import Design
 from femag.field.bounds import FieldSolution
-from femag.geometry import Cut, pot_cuts
+from femag.geometry import Cut, core_cuts
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -37,7 +37,7 @@ class SectionMean:
 
 def section_means(design: Design, solution: FieldSolution) -> tuple[SectionMean, ...]:
     """Return the means through the core's cuts, the larger of both halves where they differ."""
-    cuts = pot_cuts(design.core, design.gaps)
+    cuts = core_cuts(design.core, design.gaps)
     upper = np.abs(mean_flux_densities(solution, cuts))
     if solution.sides.mesh.section.copies == 1:
         lower = np.abs(mean_flux_densities(solution, [cut.mirrored() for cut in cuts]))

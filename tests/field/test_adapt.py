@@ -7,7 +7,7 @@ import femag as fm
 from femag.field import adapt
 from femag.field.adapt import adapted_solution, marked_elements
 from femag.field.bounds import FieldSolution
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 
 
 @pytest.mark.parametrize("tolerance", [1e-2, 1e-3, 1e-4])

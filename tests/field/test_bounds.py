@@ -8,7 +8,7 @@ import femag as fm
 from femag.design import whole_section
 from femag.field.adapt import adapted_solution, inductance_bounds, refinements
 from femag.field.bounds import Bounds, FieldSolution
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 from femag.geometry import DIMENSIONS
 
 SATURATIONS = [0.01, 6.0, 60.0]

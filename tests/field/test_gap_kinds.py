@@ -10,8 +10,8 @@ from matplotlib.figure import Figure
 import femag as fm
 from femag.design import meshed_section
 from femag.field.adapt import adapted_solution
-from femag.field.problem import field_problem
-from femag.hand import FORMULAS, gap_shapes, network_state, pot_network
+from femag.field.design_problem import field_problem
+from femag.hand import FORMULAS, core_network, gap_shapes, network_state
 from femag.hand.fringing import no_fringing
 from femag.quantities import plain_gap_reluctance
 from femag.units import MU_0
@@ -124,7 +124,7 @@ def test_a_gap_at_a_plate_has_the_edge_of_a_post_over_a_plate(
     below at gaps of 0.05 to 0.2 mm, in which it is 6.8 to 21 % of the block; that of a gap in the
     middle, about half as large, is 5.9 to 7.3 % below its own form.
     """
-    r, h = pot_26_16.core.post_radius, 2 * HALF
+    r, h = pot_26_16.core.turned.post_radius, 2 * HALF
     ideal = replace(
         pot_26_16,
         core=replace(pot_26_16.core, hole_diameter=0.0),
@@ -177,13 +177,13 @@ def test_plain_reluctance_is_length_over_permeability_of_all_openings(
     pot_26_16: fm.Design,
 ) -> None:
     core = pot_26_16.core
-    post = np.pi * (core.post_radius**2 - core.hole_radius**2)
-    ring = np.pi * (core.outer_radius**2 - core.window_radius**2)
+    post = np.pi * (core.turned.post_radius**2 - core.turned.hole_radius**2)
+    ring = np.pi * (core.turned.ring_outer_radius**2 - core.window_radius**2)
     gaps = (fm.Gap(0.3e-3, "all", permeability=3.0), fm.Gap(0.5e-3, pieces=2, permeability=2.0))
     wanted = (0.1e-3 / post + 0.25e-3 / post + 0.1e-3 / ring) / MU_0
     found = plain_gap_reluctance(replace(pot_26_16, gaps=gaps))
     assert found == pytest.approx(wanted, rel=1e-12)
-    branches = pot_network(core, gaps, 1.0, fm.LinearCurve(1e6), no_fringing)
+    branches = core_network(core, gaps, 1.0, fm.LinearCurve(1e6), no_fringing)
     state = network_state(branches)
     in_gaps = [
         branch.length / (branch.curve.initial_permeability * MU_0 * branch.area)

@@ -8,8 +8,8 @@ import femag as fm
 from femag.errors import NewtonError
 from femag.field import newton
 from femag.field.bounds import Sides, both_sides, field_solution
+from femag.field.design_problem import field_problem
 from femag.field.newton import solved
-from femag.field.problem import field_problem
 from femag.mesh import coarse_mesh
 
 

@@ -9,8 +9,8 @@ from skfem import Basis, BilinearForm, ElementTriP2, LinearForm
 import femag as fm
 from femag.field.adapt import adapted_solution
 from femag.field.bounds import Sides, both_sides, field_solution, finely_integrated
+from femag.field.design_problem import field_problem
 from femag.field.flux_side import turn_density
-from femag.field.problem import field_problem
 from femag.mesh import coarse_mesh
 from femag.units import MU_0
 
