@@ -10,6 +10,7 @@ from rich.text import Text
 
 from femag.design import Design
 from femag.geometry import Gap
+from femag.quantities import WoundCopper
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
 
@@ -39,7 +40,7 @@ def _described(design: Design) -> Text:
     core = design.core
     parts = [
         *([core.name] if core.name else []),
-        f"pot core {1e3 * core.outer_diameter:g} x {1e3 * core.height:g} mm",
+        core.description,
         *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
     drive = f"{design.turns} turns, {design.current:g} A"
@@ -54,9 +55,28 @@ def _described_gap(gap: Gap) -> str:
         words.append(f"in {gap.pieces} pieces")
     if gap.offset:
         words.append(f"{1e3 * gap.offset:+g} mm off the middle")
-    if gap.permeability != 1.0:
-        words.append(f"of permeability {gap.permeability:g}")
-    return " ".join(words)
+    return " ".join([*words, *_described_faces(gap), *_described_filling(gap)])
+
+
+def _described_faces(gap: Gap) -> list[str]:
+    words = []
+    if gap.rim_length is not None:
+        words.append(f"tapered to {1e3 * gap.rim_length:g} mm at the rim")
+    if gap.step is not None:
+        inside = f"{1e3 * gap.step.length:g} mm" if gap.step.length else "none"
+        words.append(f"with {inside} inside of {1e3 * gap.step.diameter:g} mm")
+    if gap.chamfer:
+        words.append(f"with chamfers of {1e3 * gap.chamfer:g} mm")
+    if gap.edge_radius:
+        words.append(f"with edges of radius {1e3 * gap.edge_radius:g} mm")
+    return words
+
+
+def _described_filling(gap: Gap) -> list[str]:
+    if gap.magnet is not None:
+        magnet = gap.magnet
+        return [f"with a magnet, {magnet.remanence:g} T, recoil {magnet.recoil_permeability:g}"]
+    return [f"of permeability {gap.permeability:g}"] if gap.permeability != 1.0 else []
 
 
 def _inductances(result: Result) -> Table:
@@ -76,7 +96,7 @@ def _inductances(result: Result) -> Table:
     apparent, incremental, plain = with_common_unit(
         (result.apparent_inductance, result.incremental_inductance, result.plain_inductance), "H"
     )
-    linkages, increments = result.flux_linkage_of_sides, result.incremental_inductance_of_sides
+    linkages, increments = _linkages_of_current(result), result.incremental_inductance_of_sides
     table.add_row("  apparent", apparent, f"flux linkage over current; {_apart(linkages)}")
     table.add_row("  incremental", incremental, f"for small changes; {_apart(increments)}")
     table.add_row("AL value", with_unit(result.al_value, "H"), "inductance over turns squared")
@@ -87,7 +107,19 @@ def _inductances(result: Result) -> Table:
         table.add_row(
             "gap factor", f"{result.gap_factor:.4f}", "plain gap reluctance over the field's"
         )
+    if result.magnet_flux_linkage is not None:
+        linkage = with_unit(result.magnet_flux_linkage, "Wb")
+        table.add_row("magnet", linkage, "flux linkage without current")
     return table
+
+
+def _linkages_of_current(result: Result) -> tuple[float, float]:
+    """Return what the current adds to the flux linkage of either side, Wb."""
+    magnet = result.magnet_flux_linkage_of_sides or (0.0, 0.0)
+    first, second = (
+        total - own for total, own in zip(result.flux_linkage_of_sides, magnet, strict=True)
+    )
+    return first, second
 
 
 def _apart(of_sides: tuple[float, float]) -> str:
@@ -110,13 +142,23 @@ def _copper(result: Result) -> Table:
         table.add_row(
             copper.name,
             f"{copper.turns}",
-            f"{copper.layers}",
+            _layers(copper),
             f"{copper.fill:.2f}",
             f"{1e3 * copper.mean_turn_length:.1f} mm",
             f"{copper.wire_length:.3g} m",
             f"{with_unit(copper.resistance, 'ohm', 3)} at {copper.temperature:g} C",
         )
     return table
+
+
+def _layers(copper: WoundCopper) -> str:
+    """Say how many layers there are, of each section from the lowest where they differ."""
+    counts = copper.layers_in_sections
+    if len(counts) == 1:
+        return f"{copper.layers}"
+    if len(set(counts)) == 1:
+        return f"{len(counts)} x {copper.layers}"
+    return "+".join(map(str, counts))
 
 
 def _hand_formulas(result: Result) -> Table:
@@ -133,37 +175,46 @@ def _hand_formulas(result: Result) -> Table:
 
 
 def _hand_caveat(result: Result) -> list[Text]:
-    """Say where the errors are not the fringing formulas' own."""
+    """Say where the errors are not the fringing formulas' own, and why none is inside its range."""
+    lines = []
+    if any(gap.is_shaped for gap in result.design.gaps):
+        lines.append(Text("No formula knows shaped faces: all count as outside of their ranges."))
     factor = result.gap_factor
     saturated = result.incremental_inductance < 0.5 * result.inductance.value
     if not saturated and (factor is None or factor > 1.0):
-        return []
+        return lines
     return [
+        *lines,
         Text(
             "Here the core saturates or hardly guides the flux, so that much of it passes beside "
             "the core. The network leaves that out, whatever the formula; the ranges are about "
             "the shape of the gap only."
-        )
+        ),
     ]
 
 
-def columns(*names: str, words: Sequence[str]) -> Table:
+def columns(*names: str, words: Sequence[str], gap: int = 2) -> Table:
     """Return an empty table without lines: columns of `words` to the left, numbers to the right."""
-    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
+    table = Table(box=None, padding=(0, gap, 0, 0), pad_edge=False, header_style="underline")
     for name in names:
         table.add_column(name, justify="left" if name in words else "right", overflow="fold")
     return table
 
 
 def _provenance(result: Result) -> str:
-    rest = (
-        "The bounds are rigorous for this straight-sided model."
-        if result.design.material.is_linear
-        else "The bounds hold up to the quadrature of the energy densities."
-    )
+    if result.design.material.is_linear:
+        rest = "The bounds are rigorous for this straight-sided model."
+    elif result.magnet_coenergy is None:
+        rest = "The bounds hold up to the quadrature of the energy densities."
+    else:
+        rest = (
+            "The co-energies with and without current are bounded up to the quadrature of the "
+            "energy densities; the inductance also rests on the magnet's flux linkage, which "
+            "counts with the distance of two estimates and has no bound."
+        )
     return (
         f"{result.unknowns} unknowns, {result.refinements} refinements, {result.seconds:.2f} s. "
-        f"{rest} The model is axisymmetric, without slots for the leads."
+        f"{rest} {result.design.core.model_note}"
     )
 
 

@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
+from femag.bench_command import bench_command
 from femag.errors import GapfieldError, InputError
 
 if TYPE_CHECKING:
@@ -140,6 +141,9 @@ def cores_command(
         print_core(found[0], console)
     else:
         print_core_list(found, console)
+
+
+app.command("bench")(bench_command)
 
 
 def _with_current(design: Design, current: str | None) -> Design:

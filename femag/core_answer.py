@@ -9,36 +9,46 @@ from rich.table import Table
 from rich.text import Text
 
 from femag.answer import columns
-from femag.geometry import DIMENSIONS, LIMITS, CatalogueCore
-from femag.hand import EffectiveParameters, effective_parameters
+from femag.geometry import (
+    LIMITS,
+    CatalogueCore,
+    EffectiveParameters,
+    effective_parameters,
+)
 
-LIST_COLUMNS = ("size", "outside", "post", "hole", "window", "Ae", "le", "C1", "source")
+OUTSIDE = ("outer_diameter", "length", "width", "height")
+LISTED = (
+    ("effective_area", 1e6, 1),
+    ("effective_length", 1e3, 1),
+    ("core_factor", 1e-3, 3),
+)
+LIST_COLUMNS = ("size", "outside", "post", "window", "Ae", "le", "C1", "source")
 CORE_COLUMNS = ("dimension", "from, mm", "to, mm", "nominal, mm", "source")
 EFFECTIVE_COLUMNS = ("effective parameter", *LIMITS, "published")
 
 
 def print_core_list(cores: Sequence[CatalogueCore], console: Console) -> None:
     """Print a line for each core: nominal dimensions, effective parameters, source."""
-    table = columns(*LIST_COLUMNS, words=["size", "source"])
+    table = columns(*LIST_COLUMNS, words=["size", "source"], gap=1)
     for entry in cores:
-        core, effective = entry.core(), effective_parameters(entry.core())
+        sizes = entry.core().sizes
+        sources = {*entry.sources.values(), entry.published_source} - {""}
+        outside = [sizes[name] for name in OUTSIDE if name in sizes]
         table.add_row(
             entry.size,
-            f"{_mm(core.outer_diameter)} x {_mm(core.height)}",
-            _mm(core.post_diameter),
-            _mm(core.hole_diameter),
-            f"{_mm(core.window_diameter)} x {_mm(core.window_height)}",
-            f"{1e6 * effective.area:.1f}",
-            f"{1e3 * effective.length:.1f}",
-            f"{1e-3 * effective.c1:.3f}",
-            ", ".join(sorted(set(entry.sources.values()))),
+            "x".join(map(_mm, outside)),
+            _mm(sizes["post_diameter"]),
+            f"{_mm(sizes['window_diameter'])}x{_mm(sizes['window_height'])}",
+            *_listed_parameters(entry),
+            sources.pop() if len(sources) == 1 else "mixed",
         )
     console.print(table, highlight=False)
     console.print(
         Text(
-            "mm, mm2, 1/mm; means of the limits, diameter x height. Ae, le and C1 by the rules of "
-            "IEC 60205 without slots for the leads, so that C1 comes out lower than published. "
-            "'memory' marks numbers that nobody has confirmed."
+            "mm, mm2, 1/mm; means of the limits. outside: diameter or length x width, then "
+            "height; window: diameter x height. Ae, le and C1 as published, or, marked c, computed "
+            "by the rules of IEC 60205 without slots. source: 'memory' marks numbers that nobody "
+            "has confirmed; 'gapfield cores SIZE' shows where each number comes from."
         )
     )
 
@@ -48,7 +58,7 @@ def print_core(entry: CatalogueCore, console: Console) -> None:
     console.print(Text(f"{entry.size}, {entry.standard}", style="bold"))
     console.print(Text(f"from {entry.file}"))
     table = columns(*CORE_COLUMNS, words=["dimension", "source"])
-    for name in DIMENSIONS:
+    for name in entry.dimensions:
         limits = entry.dimensions[name]
         numbers = (limits.low, limits.high, limits.nominal)
         texts = [f"{1e3 * number:.3f}" for number in numbers]
@@ -58,10 +68,25 @@ def print_core(entry: CatalogueCore, console: Console) -> None:
     console.print(_effective_table(entry), highlight=False)
     console.print(
         Text(
-            "Computed by the rules of IEC 60205 without slots. minimum and maximum: least and most "
-            "core material within the limits."
+            f"Published: {entry.published_source or 'nothing known'}. The others are computed by "
+            "the rules of IEC 60205 without slots. minimum and maximum: least and most core "
+            "material within the limits."
         )
     )
+
+
+def _listed_parameters(entry: CatalogueCore) -> list[str]:
+    """Return Ae, le and C1 as published where that is known, else computed and marked so."""
+    computed = None if len(entry.published) >= 3 else effective_parameters(entry.core())
+    texts = []
+    for key, scale, digits in LISTED:
+        published = entry.published.get(key)
+        if published is not None:
+            texts.append(f"{scale * published:.{digits}f} ")
+        else:
+            assert computed is not None
+            texts.append(f"{scale * _parameter(computed, key):.{digits}f}c")
+    return texts
 
 
 def _mm(length: float) -> str:

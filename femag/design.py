@@ -8,31 +8,34 @@ from collections.abc import Sequence
 from dataclasses import asdict, dataclass, replace
 from typing import Any
 
-from femag.errors import InputError, entry_key, number
+from femag.errors import InputError, number
 from femag.geometry import (
+    DETAILS,
     Block,
-    Former,
+    Coil,
+    Core,
+    Detail,
     Gap,
-    Layers,
-    PotCore,
     Region,
     Section,
     Winding,
+    coil_regions,
+    core_regions,
     half_window_height,
     is_mirror_symmetric,
-    laid_turns,
+    laid_coils,
     open_section,
     polygon_area,
-    pot_regions,
     upper_half,
-    winding_region,
-    winding_room,
 )
 from femag.materials import MagnetisationCurve
 
 FAR_RADIUS = 60.0
 """Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
 
+
+MOST_SINGLE_TURNS = 200
+"""Turns of all conductors up to which the field takes each by itself."""
 
 CURRENTS = (1e-12, 1e9)
 """Smallest and largest current that is solved, A."""
@@ -44,7 +47,7 @@ class Design:
 
     Parameters
     ----------
-    core : PotCore
+    core : Core
         The core.
     windings : tuple of Winding
         At least one.
@@ -60,9 +63,12 @@ class Design:
         Names of the windings that carry the current, in series; the first winding when empty.
     title : str
         For print.
+    detail : {"block", "turn"}
+        How the field sees windings that have a conductor: as blocks of uniform current, or turn by
+        turn.
     """
 
-    core: PotCore
+    core: Core
     windings: tuple[Winding, ...]
     material: MagnetisationCurve
     gaps: tuple[Gap, ...] = ()
@@ -70,6 +76,7 @@ class Design:
     tolerance: float = 1e-3
     driven: tuple[str, ...] = ()
     title: str = ""
+    detail: Detail = "block"
 
     def __post_init__(self) -> None:
         for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
@@ -77,6 +84,7 @@ class Design:
             entries = (value,) if isinstance(value, kind) else tuple(value)
             object.__setattr__(self, name, entries)
         _check_names(self.windings, self.driven)
+        _check_detail(self.detail, self.windings)
         _check_core(self.core, self.material)
         if not isinstance(self.title, str) or not self.title.isprintable():
             raise InputError(
@@ -123,54 +131,29 @@ def whole_section(design: Design) -> Section:
     """
     core, gaps = design.core, design.gaps
     half_window = half_window_height(core, gaps)
-    window = _window(core, gaps)
-    regions = pot_regions(core, gaps)
+    regions = core_regions(core, gaps)
     coils = tuple(
-        winding_region(winding.name, _turns_block(winding, window, gaps, index), window, index)
-        for index, winding in enumerate(design.windings)
+        part for coil in wound_coils(design) for part in coil_regions(coil, design.detail)
     )
-    _check_coils(coils)
-    extent = max(core.outer_radius, half_window + core.plate_thickness)
+    _check_part_names(coils)
+    extent = max(core.turned.ring_outer_radius, half_window + core.turned.largest_thickness)
     return open_section((*regions, *coils), FAR_RADIUS * extent)
 
 
-def laid_windings(design: Design) -> dict[str, Layers]:
-    """Return the layers of every winding that has a conductor, by name.
+def wound_coils(design: Design) -> tuple[Coil, ...]:
+    """Return every winding as it lies in the window.
 
     Raises
     ------
     InputError
-        If turns do not fit.
+        If turns do not fit or windings overlap.
     """
-    window = _window(design.core, design.gaps)
-    return {
-        winding.name: _laid(winding, window, design.gaps, index)
-        for index, winding in enumerate(design.windings)
-        if winding.conductor is not None
-    }
+    return laid_coils(design.windings, _window(design.core, design.gaps), design.gaps)
 
 
-def _window(core: PotCore, gaps: Sequence[Gap]) -> Block:
+def _window(core: Core, gaps: Sequence[Gap]) -> Block:
     half_window = half_window_height(core, gaps)
-    return Block(core.post_radius, core.window_radius, -half_window, half_window)
-
-
-def _turns_block(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Block:
-    """Return where the turns lie: as laid, else in their block, else in the whole window."""
-    if winding.conductor is None:
-        return winding.block or window
-    return _laid(winding, window, gaps, index).block
-
-
-def _laid(winding: Winding, window: Block, gaps: Sequence[Gap], index: int) -> Layers:
-    assert winding.conductor is not None
-    own = entry_key("winding", index)
-    try:
-        room = winding.block or winding_room(winding.former or Former(), window, gaps)
-        return laid_turns(winding.turns, winding.conductor, room)
-    except InputError as error:
-        key = f"{own}.{(error.key or 'conductor').removeprefix('winding.')}"
-        raise error.changed(key=key) from error
+    return Block(core.turned.post_radius, core.window_radius, -half_window, half_window)
 
 
 def meshed_section(design: Design) -> Section:
@@ -180,21 +163,28 @@ def meshed_section(design: Design) -> Section:
 
 
 def turns_per_area(design: Design) -> dict[str, float]:
-    """Return the turns per area in 1/m2 of each driven winding's region."""
-    driven = {f"winding {winding.name}": winding.turns for winding in design.driven_windings}
+    """Return the turns per area in 1/m2 of each region of the driven windings.
+
+    A region that the mirror plane cuts keeps its own.
+    """
+    driven = {winding.name for winding in design.driven_windings}
     return {
-        region.name: driven[region.name] / polygon_area(region.polygon)
+        region.name: region.turns / polygon_area(region.polygon)
         for region in whole_section(design).regions
-        if region.name in driven
+        if region.winding in driven
     }
 
 
 def design_hash(design: Design) -> str:
     """Return a hexadecimal digest of everything in the design that can move a result."""
     driven = tuple(winding.name for winding in design.driven_windings)
-    core = replace(design.core, name="")
-    content = asdict(replace(design, title="", driven=driven, core=core))
+    wound = any(winding.conductor is not None for winding in design.windings)
+    detail: Detail = design.detail if wound else "block"
+    content = asdict(replace(design, title="", driven=driven, detail=detail))
+    content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
+    for text in ("name", "source", "notes"):
+        content["material"].pop(text, None)
     text = json.dumps(_with_floats(content), sort_keys=True)
     return hashlib.sha256(text.encode()).hexdigest()
 
@@ -209,8 +199,8 @@ def _with_floats(content: Any) -> Any:
 
 
 def _check_core(core: object, material: object) -> None:
-    if not isinstance(core, PotCore):
-        raise InputError("not a core", key="core", value=core, accepted="a PotCore")
+    if not hasattr(core, "turned"):
+        raise InputError("not a core", key="core", value=core, accepted="a core, such as PotCore")
     if not hasattr(material, "coenergy_density"):
         raise InputError(
             "not a material", key="core.material", value=material,
@@ -243,12 +233,27 @@ def _check_names(windings: Sequence[Winding], driven: Sequence[str]) -> None:
             )
 
 
-def _check_coils(coils: Sequence[Region]) -> None:
-    for index, one in enumerate(coils):
-        (r0, z0), _, (r1, z1), _ = one.polygon
-        for other in coils[index + 1 :]:
-            (s0, y0), _, (s1, y1), _ = other.polygon
-            if min(r1, s1) - max(r0, s0) > 1e-9 * r1 and min(z1, y1) - max(z0, y0) > 1e-9 * r1:
-                raise InputError(
-                    f"overlaps {one.name}", key=other.name, accepted="blocks that do not overlap"
-                )
+def _check_detail(detail: Detail, windings: Sequence[Winding]) -> None:
+    if detail not in DETAILS:
+        raise InputError(
+            "not a level of detail", key="solve.detail", value=detail,
+            accepted=" or ".join(map(repr, DETAILS)),
+        )  # fmt: skip
+    turns = sum(winding.turns for winding in windings if winding.conductor is not None)
+    if detail == "turn" and turns > MOST_SINGLE_TURNS:
+        raise InputError(
+            f"{turns} turns of conductors are too many to be meshed one by one",
+            key="solve.detail", value=detail,
+            accepted=f"'block', or 'turn' with at most {MOST_SINGLE_TURNS} turns",
+        )  # fmt: skip
+
+
+def _check_part_names(parts: Sequence[Region]) -> None:
+    """Refuse a winding that is named like a part of another."""
+    names = [part.name for part in parts]
+    for part in parts:
+        if names.count(part.name) > 1:
+            raise InputError(
+                f"a part of another winding is called {part.name!r} too", key="winding.name",
+                value=part.winding, accepted="another name",
+            )  # fmt: skip

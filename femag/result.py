@@ -11,7 +11,7 @@ from importlib.metadata import version
 from femag.design import Design, design_hash
 from femag.field.adapt import adapted_solution, inductance_bounds
 from femag.field.bounds import Bounds, FieldSolution
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
     SectionMean,
@@ -50,9 +50,11 @@ class Result:
     design : Design
         The design, with the current and the tolerance that were used.
     inductance : Bounds
-        Energy inductance 2 W'/I^2, H; rigorous for linear materials, else up to quadrature.
+        Energy inductance 2 W'/I^2, H; rigorous for linear materials, else up to quadrature. With
+        magnets 2/I^2 times what the current adds to W'; of a saturating core that rests on
+        estimates of the magnets' flux linkage too.
     coenergy : Bounds
-        Co-energy W', J.
+        Co-energy W', J; that of the magnets included.
     flux_linkage_of_sides : tuple of float
         Flux linkage in Wb from the flux side and from the potential side; the difference
         estimates the error and bounds nothing.
@@ -76,6 +78,10 @@ class Result:
         Versions of this package, Python and the libraries behind the numbers.
     design_hash : str
         Digest of everything in the design that can move the result.
+    magnet_flux_linkage_of_sides : tuple of float or None
+        Flux linkage in Wb without current from either side; None without magnets.
+    magnet_coenergy : Bounds or None
+        Co-energy without current, J, which is below 0; None without magnets.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -95,6 +101,8 @@ class Result:
     seconds: float
     versions: dict[str, str]
     design_hash: str
+    magnet_flux_linkage_of_sides: tuple[float, float] | None = None
+    magnet_coenergy: Bounds | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -108,19 +116,29 @@ class Result:
         return sum(self.flux_linkage_of_sides) / 2
 
     @property
+    def magnet_flux_linkage(self) -> float | None:
+        """Flux linkage without current, Wb: mean of both sides; None without magnets."""
+        sides = self.magnet_flux_linkage_of_sides
+        return None if sides is None else sum(sides) / 2
+
+    @property
     def incremental_inductance(self) -> float:
         """Incremental inductance, H: mean of both sides."""
         return sum(self.incremental_inductance_of_sides) / 2
 
     @property
     def apparent_inductance(self) -> float:
-        """Flux linkage over current, H."""
-        return self.flux_linkage / self.current
+        """Flux linkage over current, H; with magnets what the current adds to it."""
+        return (self.flux_linkage - (self.magnet_flux_linkage or 0.0)) / self.current
 
     @property
     def stored_energy(self) -> float:
-        """Energy in the field, J: current times flux linkage less the co-energy."""
-        return self.current * self.flux_linkage - self.coenergy.value
+        """Energy in the field, J: current times flux linkage less the co-energy.
+
+        With magnets what the current has put into it, which is what comes out when it is cut.
+        """
+        idle = self.magnet_coenergy.value if self.magnet_coenergy else 0.0
+        return self.current * self.flux_linkage - (self.coenergy.value - idle)
 
     @property
     def al_value(self) -> float:
@@ -170,7 +188,7 @@ def solve(
     solution, refinements = adapted_solution(
         field_problem(design), design.current, design.tolerance, progress
     )
-    inductance = inductance_bounds(solution)
+    inductance, idle = inductance_bounds(solution), solution.idle
     hand_input = (design.core, design.gaps, design.turns, design.current, design.material)
     return Result(
         design=design,
@@ -191,6 +209,8 @@ def solve(
         seconds=time.perf_counter() - started,
         versions=library_versions(),
         design_hash=design_hash(design),
+        magnet_flux_linkage_of_sides=idle.flux_linkage_of_sides if idle else None,
+        magnet_coenergy=idle.coenergy if idle else None,
         solution=solution,
     )
 

@@ -11,14 +11,16 @@ ROOT = Path(femag.__file__).parent
 LAYERS = (
     ("units", "errors", "line_search"),
     ("materials", "geometry"),
+    ("bench",),
     ("hand", "design", "mesh"),
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result",),
+    ("result", "inductance_curve"),
     ("export",),
     ("plot",),
-    ("answer", "core_answer"),
+    ("answer", "core_answer", "bench_answer"),
+    ("bench_command",),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

@@ -8,7 +8,7 @@ import pytest
 import femag as fm
 from femag.design import whole_section
 from femag.field.adapt import adapted_solution
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 
 pytestmark = pytest.mark.slow
 

@@ -3,37 +3,41 @@
 from __future__ import annotations
 
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
 from pydantic import ValidationError
 
 from femag.design import Design
-from femag.design_file.messages import first_error, keyed, renumbered, written_value
+from femag.design_file.materials import material_curve
+from femag.design_file.messages import first_error, renumbered, written_value
 from femag.design_file.tables import (
     METALS,
     ConductorTable,
     CoreTable,
     DesignTable,
+    FormerTable,
     GapTable,
-    MaterialTable,
     WindingTable,
 )
 from femag.errors import InputError
 from femag.geometry import (
     Block,
     Conductor,
+    Core,
     Foil,
     Former,
     Gap,
     LitzWire,
-    PotCore,
+    Magnet,
     RoundWire,
+    Step,
     Winding,
     catalogue_core,
+    core_of_family,
 )
-from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
 
 
 def read_design(path: str | Path) -> Design:
@@ -89,24 +93,23 @@ def design_from_document(document: Mapping[str, Any], file: str | None = None) -
 
 
 def _design(table: DesignTable, folder: Path) -> Design:
-    with keyed("permeability saturation exponent", "core.material."):
-        material = _curve(table.core.material)
     return Design(
         core=_core(table.core, folder),
-        windings=tuple(_winding(entry, index) for index, entry in enumerate(table.winding)),
-        material=material,
+        windings=_windings(table.winding),
+        material=material_curve(table.core.material, folder),
         gaps=tuple(_gap(entry, index) for index, entry in enumerate(table.gap)),
         current=table.drive.current,
         tolerance=table.solve.tolerance,
         driven=tuple(table.drive.winding),
         title=table.title,
+        detail=table.solve.detail,
     )
 
 
-def _core(table: CoreTable, folder: Path) -> PotCore:
+def _core(table: CoreTable, folder: Path) -> Core:
     """Return the core of a size or of dimensions; paths resolve against the design file."""
     if table.size is not None:
-        for key in ("family", "dimensions", "name"):
+        for key in ("family", "dimensions", "name", "core_factor"):
             if key in table.model_fields_set:
                 raise InputError(
                     "stands beside core.size", key=f"core.{key}", accepted="one of the two"
@@ -123,44 +126,58 @@ def _core(table: CoreTable, folder: Path) -> PotCore:
             raise InputError(
                 "missing", key=f"core.{key}", accepted="core.size, or family and dimensions"
             )
+    assert table.family is not None
     assert table.dimensions is not None
-    return PotCore(**table.dimensions.model_dump(), name=table.name)
-
-
-def _curve(table: MaterialTable) -> MagnetisationCurve:
-    if table.saturation is not None:
-        return FroehlichCurve(
-            table.permeability, table.saturation, 1.0 if table.exponent is None else table.exponent
-        )
-    if table.exponent is not None:
-        raise InputError(
-            "an exponent needs a saturation", key="exponent", value=table.exponent,
-            accepted="saturation = '0.45 T' beside it, or no exponent",
-        )  # fmt: skip
-    return LinearCurve(table.permeability)
+    sizes = table.dimensions.model_dump(exclude_unset=True)
+    return core_of_family(table.family, sizes, table.core_factor, table.name)
 
 
 def _gap(table: GapTable, index: int) -> Gap:
     with renumbered("gap", index):
-        return Gap(**table.model_dump())
+        if table.magnet is not None and "permeability" in table.model_fields_set:
+            raise InputError(
+                "stands beside a magnet", key="gap.permeability", value=table.permeability,
+                accepted="gap.magnet.recoil_permeability instead",
+            )  # fmt: skip
+        step = None if table.step is None else Step(**table.step.model_dump())
+        magnet = None if table.magnet is None else Magnet(**table.magnet.model_dump())
+        return Gap(**table.model_dump(exclude={"step", "magnet"}), step=step, magnet=magnet)
 
 
-def _winding(table: WindingTable, index: int) -> Winding:
-    with renumbered("winding", index):
-        block = None if table.block is None else Block(**table.block.model_dump())
-        former = None if table.former is None else Former(**table.former.model_dump())
-        if table.conductor is None:
-            return Winding(table.turns, block, table.name, former=former)
-        conductor = _conductor(table.conductor)
-        return Winding(
-            table.turns,
-            block,
-            table.name,
-            conductor,
-            former,
-            METALS[table.conductor.metal],
-            table.conductor.temperature,
-        )
+def _windings(tables: Sequence[WindingTable]) -> tuple[Winding, ...]:
+    """Return the windings; a key that a former leaves out is that of the winding below."""
+    windings: list[Winding] = []
+    below = Former()
+    for index, table in enumerate(tables):
+        with renumbered("winding", index):
+            winding = _winding(table, below)
+        windings.append(winding)
+        below = replace(winding.former or below, tape=0.0)
+    return tuple(windings)
+
+
+def _winding(table: WindingTable, below: Former) -> Winding:
+    return Winding(
+        table.turns,
+        None if table.block is None else Block(**table.block.model_dump()),
+        table.name,
+        former=_former(table.former, below),
+        sections=table.sections,
+        divider=table.divider,
+        **({} if table.conductor is None else _conductor_and_metal(table.conductor)),
+    )
+
+
+def _former(table: FormerTable | None, below: Former) -> Former | None:
+    return None if table is None else replace(below, **table.model_dump(exclude_unset=True))
+
+
+def _conductor_and_metal(table: ConductorTable) -> dict[str, Any]:
+    return {
+        "conductor": _conductor(table),
+        "metal": METALS[table.metal],
+        "temperature": table.temperature,
+    }
 
 
 def _conductor(table: ConductorTable) -> Conductor:

@@ -8,11 +8,12 @@ from __future__ import annotations
 from functools import partial
 from typing import Annotated, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, model_validator
 from pydantic_core import PydanticCustomError
 
 from femag.errors import InputError
-from femag.geometry import ALUMINIUM, COPPER, LIMITS, Limit
+from femag.geometry import ALUMINIUM, COPPER, DETAILS, FAMILIES, LIMITS, Detail, Limit
+from femag.materials import is_material_file
 from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
@@ -39,6 +40,7 @@ Current = Annotated[
     float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
 Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
+CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
 FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
 
 
@@ -46,23 +48,58 @@ class _Table(BaseModel):
     model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
 
 
-class MaterialTable(_Table):
-    """A magnetisation curve by its parameters."""
+def _read_point(pair: object) -> tuple[float, float]:
+    if not isinstance(pair, list | tuple) or len(pair) != 2:
+        raise PydanticCustomError("quantity", "not a pair of H and B")
+    return _read_quantity("A/m", pair[0]), _read_quantity("T", pair[1])
 
-    permeability: float = Field(description="initial relative permeability, such as 2000")
+
+Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
+
+
+class MaterialTable(_Table):
+    """A magnetisation curve by its parameters, its points, or where it is found."""
+
+    permeability: float | None = Field(
+        default=None, description="initial relative permeability, such as 2000"
+    )
     saturation: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
     exponent: float | None = Field(default=None, description="knee exponent, a number from 1 to 20")
+    name: str | None = Field(
+        default=None,
+        description="a material of the library, such as 'mnzn-power'; beside points text for print",
+    )
+    file: str | None = Field(default=None, description="the path of a material file, TOML or CSV")
+    temperature: Temperature | None = Field(default=None, description=TEMPERATURE)
+    points: list[Point] | None = Field(
+        default=None, description="a list of pairs such as [['25 A/m', '0.09 T'], ...]"
+    )
+    source: str | None = Field(default=None, description="text in quotes")
+    notes: list[str] = Field(default=[], description="a list of texts")
+
+    @model_validator(mode="before")
+    @classmethod
+    def _of_text(cls, given: object) -> object:
+        """Turn a text alone into the table that it stands for."""
+        if not isinstance(given, str):
+            return given
+        return {"file" if is_material_file(given) else "name": given}
 
 
-class PotDimensionsTable(_Table):
-    """Dimensions of the assembled set."""
+class DimensionsTable(_Table):
+    """Dimensions of the assembled set; which ones depends on the family."""
 
-    outer_diameter: Length
+    outer_diameter: Length | None = Field(default=None, description=ACCEPTED["m"])
     window_diameter: Length
     post_diameter: Length
     height: Length
     window_height: Length
     hole_diameter: Length = 0.0
+    length: Length | None = Field(default=None, description=ACCEPTED["m"])
+    width: Length | None = Field(default=None, description=ACCEPTED["m"])
+    leg_opening: Length | None = Field(default=None, description=ACCEPTED["m"])
+    waist: Length | None = Field(default=None, description=ACCEPTED["m"])
+    front: Length | None = Field(default=None, description=ACCEPTED["m"])
 
 
 class CoreTable(_Table):
@@ -71,14 +108,31 @@ class CoreTable(_Table):
     size: str | None = Field(default=None, description="a size of the catalogue, such as 'P 26/16'")
     limit: Limit = Field(default="nominal", description=" or ".join(map(repr, LIMITS)))
     catalogue: str | None = Field(default=None, description="the path of a catalogue file")
-    family: Literal["pot"] | None = Field(default=None, description="'pot'")
+    family: str | None = Field(default=None, description=" or ".join(map(repr, FAMILIES)))
+    core_factor: CoreFactor | None = Field(default=None, description="such as '0.39 1/mm'")
     name: str = Field(default="", description="text in quotes")
     material: MaterialTable = Field(
-        description="a table, such as { permeability = 2000 } or "
-        "{ permeability = 2000, saturation = '0.45 T', exponent = 2 }"
+        description="a name such as 'mnzn-power-25C', the path of a TOML or CSV file, or a table, "
+        "such as { permeability = 2000 } or { name = 'mnzn-power', temperature = '60 C' }"
     )
-    dimensions: PotDimensionsTable | None = Field(
+    dimensions: DimensionsTable | None = Field(
         default=None, description="a table of lengths, [core.dimensions]"
+    )
+
+
+class StepTable(_Table):
+    """Another length of a gap in the middle of the post."""
+
+    diameter: Length
+    length: Length
+
+
+class MagnetTable(_Table):
+    """A permanent magnet in a gap."""
+
+    remanence: FluxDensity = Field(description=ACCEPTED["T"])
+    recoil_permeability: float = Field(
+        default=1.05, description="relative permeability, 1 or more, such as 1.05"
     )
 
 
@@ -91,6 +145,16 @@ class GapTable(_Table):
     pitch: Length | None = Field(default=None, description=ACCEPTED["m"])
     offset: Length = 0.0
     permeability: float = Field(default=1.0, description="relative permeability, 1 or more")
+    rim_length: Length | None = Field(default=None, description=ACCEPTED["m"])
+    step: StepTable | None = Field(
+        default=None, description="a table such as { diameter = '6 mm', length = '0.1 mm' }"
+    )
+    chamfer: Length = 0.0
+    edge_radius: Length = 0.0
+    magnet: MagnetTable | None = Field(
+        default=None,
+        description="a table such as { remanence = '0.4 T', recoil_permeability = 1.05 }",
+    )
 
 
 class BlockTable(_Table):
@@ -138,6 +202,7 @@ class FormerTable(_Table):
     plate_clearance: Length = 0.0
     ring_clearance: Length = 0.0
     gap_clearance: Length = 0.0
+    tape: Length = 0.0
 
 
 class WindingTable(_Table):
@@ -154,6 +219,8 @@ class WindingTable(_Table):
     former: FormerTable | None = Field(
         default=None, description="a table of lengths, [winding.former]"
     )
+    sections: int = Field(default=1, description="a whole number from 1 to 100")
+    divider: Length = 0.0
 
 
 class DriveTable(_Table):
@@ -167,6 +234,7 @@ class SolveTable(_Table):
     """How exactly."""
 
     tolerance: float = Field(default=1e-3, description="a number such as 1e-3")
+    detail: Detail = Field(default="block", description=" or ".join(map(repr, DETAILS)))
 
 
 class DesignTable(_Table):

@@ -10,8 +10,8 @@ import tomli_w
 
 from femag.design import Design
 from femag.design_file.tables import METALS
-from femag.geometry import DIMENSIONS, Conductor, Foil, Gap, LitzWire, RoundWire, Winding
-from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve
+from femag.geometry import Conductor, Core, Foil, Gap, LitzWire, RoundWire, Winding
+from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, TabulatedCurve
 from femag.units import exact_text
 
 Document = dict[str, Any]
@@ -19,20 +19,16 @@ Document = dict[str, Any]
 
 def design_document(design: Design) -> Document:
     """Return the nested mapping that `design_from_document` turns into an equal design."""
-    lengths = {name: exact_text(getattr(design.core, name), "m", "m") for name in DIMENSIONS}
     document: Document = {
         "title": design.title,
-        "core": {
-            "family": "pot",
-            "name": design.core.name,
-            "material": _material_document(design.material),
-            "dimensions": lengths,
-        },
+        "core": _core_document(design.core, design.material),
         "gap": [_gap_document(gap) for gap in design.gaps],
         "winding": [_winding_document(winding) for winding in design.windings],
         "drive": {"current": exact_text(design.current, "A")},
         "solve": {"tolerance": float(design.tolerance)},
     }
+    if design.detail != "block":
+        document["solve"]["detail"] = design.detail
     if design.driven:
         document["drive"]["winding"] = list(design.driven)
     return document
@@ -41,6 +37,15 @@ def design_document(design: Design) -> Document:
 def design_toml(design: Design) -> str:
     """Return the design file of a design."""
     return tomli_w.dumps(design_document(design))
+
+
+def _core_document(core: Core, material: MagnetisationCurve) -> Document:
+    document: Document = {"family": core.family, "name": core.name}
+    published = getattr(core, "core_factor", None)
+    if published is not None:
+        document["core_factor"] = exact_text(published, "1/m")
+    lengths = {name: exact_text(length, "m", "m") for name, length in core.sizes.items()}
+    return document | {"material": _material_document(material), "dimensions": lengths}
 
 
 def _material_document(curve: MagnetisationCurve) -> Document:
@@ -52,6 +57,15 @@ def _material_document(curve: MagnetisationCurve) -> Document:
                 "permeability": float(permeability),
                 "saturation": exact_text(saturation, "T"),
                 "exponent": float(exponent),
+            }
+        case TabulatedCurve(points, name, source, notes):
+            return {
+                "name": name,
+                "source": source,
+                "notes": list(notes),
+                "points": [
+                    [exact_text(h, "A/m"), exact_text(b, "T")] for h, b in points if h > 0.0
+                ],
             }
         case _:
             raise TypeError(f"{type(curve).__name__} has no place in a design file")
@@ -67,6 +81,18 @@ def _gap_document(gap: Gap) -> Document:
         document["offset"] = exact_text(gap.offset, "m", "m")
     if gap.permeability != 1.0:
         document["permeability"] = float(gap.permeability)
+    if gap.rim_length is not None:
+        document["rim_length"] = exact_text(gap.rim_length, "m", "m")
+    if gap.step is not None:
+        document["step"] = _lengths_document(asdict(gap.step))
+    for name in ("chamfer", "edge_radius"):
+        if getattr(gap, name) != 0.0:
+            document[name] = exact_text(getattr(gap, name), "m", "m")
+    if gap.magnet is not None:
+        document["magnet"] = {
+            "remanence": exact_text(gap.magnet.remanence, "T"),
+            "recoil_permeability": float(gap.magnet.recoil_permeability),
+        }
     return document
 
 
@@ -81,6 +107,10 @@ def _winding_document(winding: Winding) -> Document:
         }
     if winding.former is not None:
         document["former"] = _lengths_document(asdict(winding.former))
+    if winding.sections != 1:
+        document["sections"] = int(winding.sections)
+    if winding.divider != 0.0:
+        document["divider"] = exact_text(winding.divider, "m", "m")
     return document
 
 

@@ -61,6 +61,8 @@ class CopperEntry(_Entry):
     wire_length: float
     resistance: float
     temperature: float
+    turns_in_sections: tuple[int, ...]
+    layers_in_sections: tuple[int, ...]
 
 
 class ResultDocument(_Entry):
@@ -78,6 +80,9 @@ class ResultDocument(_Entry):
     incremental_inductance_of_sides: tuple[float, float]
     flux_linkage: float
     flux_linkage_of_sides: tuple[float, float]
+    magnet_flux_linkage: float | None
+    magnet_flux_linkage_of_sides: tuple[float, float] | None
+    magnet_coenergy: BoundsEntry | None
     coenergy: BoundsEntry
     fringing_factor: float
     gap_factor: float | None
@@ -85,6 +90,7 @@ class ResultDocument(_Entry):
     section_means: list[SectionMeanEntry]
     copper: list[CopperEntry]
     hand: list[HandEntry]
+    model_note: str = ""
     unknowns: int
     refinements: int
     seconds: float
@@ -135,8 +141,9 @@ def read_result(path: str | Path) -> Result:
 
 def _check_against_design(document: ResultDocument, result: Result, file: str) -> None:
     """Refuse a file whose numbers were not all written together."""
-    for key, bounds in (("inductance", document.inductance), ("coenergy", document.coenergy)):
-        if not bounds.lower <= bounds.value <= bounds.upper:
+    for key in ("inductance", "coenergy", "magnet_coenergy"):
+        bounds = getattr(document, key)
+        if bounds is not None and not bounds.lower <= bounds.value <= bounds.upper:
             raise InputError("bounds out of order", key=key, file=file)
     if document.plain_inductance <= 0.0:
         raise InputError("not positive", key="plain_inductance", file=file)
@@ -170,6 +177,9 @@ def _document(result: Result) -> ResultDocument:
         incremental_inductance_of_sides=result.incremental_inductance_of_sides,
         flux_linkage=result.flux_linkage,
         flux_linkage_of_sides=result.flux_linkage_of_sides,
+        magnet_flux_linkage=result.magnet_flux_linkage,
+        magnet_flux_linkage_of_sides=result.magnet_flux_linkage_of_sides,
+        magnet_coenergy=_bounds_entry(result.magnet_coenergy) if result.magnet_coenergy else None,
         coenergy=_bounds_entry(result.coenergy),
         fringing_factor=result.fringing_factor,
         gap_factor=result.gap_factor,
@@ -177,6 +187,7 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
+        model_note=result.design.core.model_note,
         unknowns=result.unknowns,
         refinements=result.refinements,
         seconds=result.seconds,
@@ -187,12 +198,18 @@ def _bounds_entry(bounds: Bounds) -> BoundsEntry:
     return BoundsEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper)
 
 
+def _bounds_or_none(entry: BoundsEntry | None) -> Bounds | None:
+    return None if entry is None else Bounds(entry.lower, entry.upper, "J")
+
+
 def _result(document: ResultDocument, file: str) -> Result:
     return Result(
         design=design_from_document(document.design, file),
         inductance=Bounds(document.inductance.lower, document.inductance.upper, "H"),
         coenergy=Bounds(document.coenergy.lower, document.coenergy.upper, "J"),
         flux_linkage_of_sides=document.flux_linkage_of_sides,
+        magnet_flux_linkage_of_sides=document.magnet_flux_linkage_of_sides,
+        magnet_coenergy=_bounds_or_none(document.magnet_coenergy),
         incremental_inductance_of_sides=document.incremental_inductance_of_sides,
         plain_inductance=document.plain_inductance,
         gap_factor=document.gap_factor,

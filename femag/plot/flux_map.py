@@ -10,10 +10,12 @@ from matplotlib.collections import LineCollection
 from matplotlib.colors import Colormap, ListedColormap
 from matplotlib.ticker import MaxNLocator
 from matplotlib.tri import Triangulation
+from numpy.typing import NDArray
 
 from femag.design import whole_section
 from femag.geometry import Region
 from femag.geometry.gaps import GapPiece, post_pieces
+from femag.geometry.section import Point
 from femag.quantities import FieldMap, field_map, typical_peak
 from femag.result import Result
 
@@ -45,8 +47,8 @@ def flux_map(result: Result, ax: Axes, lines: int = 18) -> Axes:
     """
     core = result.design.core
     top = max(z for region in _regions(result) for _, z in region.polygon)
-    margin = 0.12 * core.outer_radius
-    window = (0.0, core.outer_radius + margin, -top - margin, top + margin)
+    margin = 0.12 * core.turned.ring_outer_radius
+    window = (0.0, core.turned.ring_outer_radius + margin, -top - margin, top + margin)
     return _drawn_map(result, ax, window, lines)
 
 
@@ -69,15 +71,15 @@ def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
     ValueError
         If the result was read from a file and holds no fields.
     """
-    core = result.design.core
+    core, post = result.design.core, result.design.core.turned.post_radius
     gap = (GapPiece(0.0, 0.0), *post_pieces(result.design.gaps, core.window_height))[-1]
     copper = min(
         r for region in _regions(result) if region.role == "winding" for r, _ in region.polygon
     )
-    room = core.window_radius - core.post_radius
-    beside = 2.0 * (copper - core.post_radius)
-    reach = min(max(2.5 * gap.length, beside, 0.15 * core.post_radius), room)
-    left, right = max(core.post_radius - reach, 0.0), core.post_radius + reach
+    room = core.window_radius - post
+    beside = 2.0 * (copper - post)
+    reach = min(max(2.5 * gap.length, beside, 0.15 * post), room)
+    left, right = max(post - reach, 0.0), post + reach
     window = (left, right, gap.middle - reach, gap.middle + reach)
     return _drawn_map(result, ax, window, lines)
 
@@ -124,25 +126,34 @@ def _draw_outlines(ax: Axes, fields: FieldMap) -> None:
 
 
 def _name_windings(ax: Axes, regions: tuple[Region, ...], window: Window) -> None:
-    """Write each winding's name into the middle of what the window shows of it."""
-    for region in regions:
-        if region.role != "winding":
-            continue
-        corners = np.asarray(region.polygon)
+    """Write each winding's name once, into what the window shows of it."""
+    for name, (r, z) in _label_places(regions, window).items():
+        ax.text(
+            1e3 * r,
+            1e3 * z,
+            f"winding {name}",
+            ha="center",
+            va="center",
+            rotation=90,
+            fontsize=9,
+            bbox={"facecolor": "white", "edgecolor": "none", "alpha": 0.85, "pad": 1.5},
+        )
+
+
+def _label_places(regions: tuple[Region, ...], window: Window) -> dict[str, Point]:
+    """Return where in m to name each winding in a window: one above the other, not side by side."""
+    seen: dict[str, tuple[NDArray[np.float64], NDArray[np.float64]]] = {}
+    for name in dict.fromkeys(region.winding for region in regions if region.role == "winding"):
+        corners = np.vstack([region.polygon for region in regions if region.winding == name])
         low = np.maximum(corners.min(axis=0), window[::2])
         high = np.minimum(corners.max(axis=0), window[1::2])
         if np.all(low < high):
-            r, z = 5e2 * (low + high)
-            ax.text(
-                r,
-                z,
-                region.name,
-                ha="center",
-                va="center",
-                rotation=90,
-                fontsize=9,
-                bbox={"facecolor": "white", "edgecolor": "none", "alpha": 0.85, "pad": 1.5},
-            )
+            seen[name] = low, high
+    shares = (np.arange(len(seen)) + 0.5) / max(1, len(seen))
+    return {
+        name: (float(low[0] + high[0]) / 2, float(low[1] + share * (high[1] - low[1])))
+        for share, (name, (low, high)) in zip(shares, seen.items(), strict=True)
+    }
 
 
 def _regions(result: Result) -> tuple[Region, ...]:

@@ -2,7 +2,7 @@
 
 import pytest
 
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 from validation import speed
 from validation.pot_core_26_16.run import pot_core_design
 from validation.speed import Budget, budget_lines, time_to_error
