@@ -16,8 +16,10 @@ FOLDERS = (
     "round_post_fringing",
     "finite_post",
     "pot_core_26_16",
+    "round_leg_3d",
+    "handbook_tables",
 )
-"""In order of what they rest on: closed forms first."""
+"""In order of what they rest on: closed forms first, makers' tables last."""
 
 
 def folder_rows(folder: str) -> tuple[Row, ...]:

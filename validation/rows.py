@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import math
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -29,7 +30,8 @@ class Row:
     unit : str
         SI unit, for print.
     allowed : float
-        Largest relative distance between `value` and `reference`.
+        Largest relative distance between `value` and `reference`; infinite where the row is shown
+        and not judged, for a reason that the folder's README gives.
     contained : bool or None
         Whether the bounds hold the reference; None where that cannot be expected, since the
         quantity has no bounds or the meshed body is not exactly the reference's.
@@ -59,6 +61,11 @@ class Row:
         if self.lower is None or self.upper is None:
             return None
         return (self.upper - self.lower) / (2.0 * abs(self.reference))
+
+    @property
+    def is_judged(self) -> bool:
+        """Whether the row can fail."""
+        return math.isfinite(self.allowed)
 
     @property
     def passed(self) -> bool:

@@ -24,7 +24,8 @@ from pathlib import Path
 
 from femag.design_file import design_toml
 from femag.field.adapt import adapted_solution, inductance_bounds, refinements
-from femag.field.problem import FieldProblem, field_problem
+from femag.field.design_problem import field_problem
+from femag.field.problem import FieldProblem
 from validation.pot_core_26_16.run import pot_core_design
 from validation.rows import table_of
 

@@ -14,7 +14,8 @@ LEGEND = (
     "half: half width of the bounds over reference, in ppm\n"
     "holds: whether the bounds hold the reference; '-': there are none, or the meshed\n"
     "       body is not exactly the reference's\n"
-    "pass: the bounds hold the reference where they must, and the error is allowed"
+    "pass: the bounds hold the reference where they must, and the error is allowed;\n"
+    "      '-': shown and not judged, the folder's README says why"
 )
 
 
@@ -22,10 +23,11 @@ def row_line(row: Row) -> str:
     """Return one row in at most 80 columns."""
     half = row.relative_half_width
     holds = {True: "yes", False: "NO", None: "-"}[row.contained]
+    verdict = ("yes" if row.passed else "FAIL") if row.is_judged else "-"
     reference = f"{row.reference:.5e} {row.unit}".strip()
     return (
         f"{row.case:<22} {row.quantity:<15} {reference:>14} {_ppm(row.error, '+'):>7} "
-        f"{'-' if half is None else _ppm(half):>6} {holds:<5} {'yes' if row.passed else 'FAIL'}"
+        f"{'-' if half is None else _ppm(half):>6} {holds:<5} {verdict}"
     )
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from femag.design import Design
 from femag.field.adapt import adapted_solution, inductance_bounds
-from femag.field.problem import field_problem
+from femag.field.design_problem import field_problem
 from femag.geometry import Block, Gap, PotCore, Winding
 from femag.materials import LinearCurve
 from validation.rows import Digits, Row, bounded_row, table_of

@@ -1,0 +1,1 @@
+"""AL values that makers print beside their gaps."""

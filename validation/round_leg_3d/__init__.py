@@ -1,0 +1,1 @@
+"""Cores with straight legs beside solutions in three dimensions."""
