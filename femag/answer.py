@@ -27,7 +27,8 @@ def print_answer(result: Result, console: Console) -> None:
     lines: list[Text | Table | str] = []
     if design.title:
         lines.append(Text(design.title, style="bold"))
-    lines += [_described(design), "", _inductances(result), "", _flux_densities(result), ""]
+    lines += [_described(design), "", _inductances(result), "", _flux_densities(result)]
+    lines += [Text(_where_it_saturates(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
@@ -133,6 +134,15 @@ def _flux_densities(result: Result) -> Table:
     for mean in result.section_means:
         table.add_row(mean.name, f"{mean.flux_density:.4f}", f"{1e6 * mean.area:.1f}")
     return table
+
+
+def _where_it_saturates(result: Result) -> str:
+    fullest = max(result.section_means, key=lambda mean: mean.flux_density)
+    levels = ", ".join(f"{share.flux_density:.3f}" for share in result.volume_shares)
+    return (
+        f"Saturates first: {fullest.name}. Half, 90 % and 99 % of the core's volume lie below "
+        f"{levels} T."
+    )
 
 
 def _copper(result: Result) -> Table:

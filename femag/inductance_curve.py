@@ -5,14 +5,21 @@ from __future__ import annotations
 import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
-from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
 
 from femag.design import CURRENTS, Design, design_hash
 from femag.errors import InputError, number
-from femag.field.bounds import FINE_ORDER, Bounds, FieldSolution, Sides, both_sides, coenergy_on
+from femag.field.bounds import (
+    FINE_ORDER,
+    Bounds,
+    FieldSolution,
+    Sides,
+    both_sides,
+    coenergy_on,
+    for_many_solutions,
+)
 from femag.field.continuation import (
     CommonMesh,
     State,
@@ -28,7 +35,7 @@ Array = NDArray[np.float64]
 
 DROPS = (0.1, 0.2, 0.3)
 """Falls of the incremental inductance that are looked for."""
-ROOT_ACCURACY = 1e-5
+ROOT_ACCURACY = 1e-4
 """How near to a drop the incremental inductance is brought, over its initial value."""
 ROOT_STEPS = 20
 MOST_POINTS = 10_000
@@ -52,6 +59,8 @@ class CurvePoint:
         d(flux linkage)/dI in H from the tangent problem of either side: estimates.
     magnet_flux_linkage : float
         Flux linkage without current, Wb; 0 without magnets.
+    iterations : tuple of int
+        Iterations of Newton's method on the flux side and on the potential side.
     """
 
     current: float
@@ -59,6 +68,7 @@ class CurvePoint:
     flux_linkage_of_sides: tuple[float, float]
     incremental_inductance_of_sides: tuple[float, float]
     magnet_flux_linkage: float = 0.0
+    iterations: tuple[int, int] = (0, 0)
 
     @property
     def flux_linkage(self) -> float:
@@ -171,19 +181,15 @@ def inductance_curve(
     rising = sorted(asked, key=abs)
     mesh = CommonMesh(field_problem(design), design.tolerance)
     mesh.probe(tuple(dict.fromkeys((rising[0], rising[len(rising) // 2], rising[-1]))))
-    points, states = _points(mesh, rising, progress)
-    initial = _initial_inductance(mesh.sides, states)
-    saturation = tuple(
-        Saturation(drop, _saturation_current(mesh.sides, states, (1.0 - drop) * initial, initial))
-        for drop in _checked_drops(drops)
-    )
+    sides, points, states = _points(mesh, rising, progress)
+    initial, saturation = _saturation(sides, states, _checked_drops(drops))
     by_current = {point.current: point for point in points}
     return InductanceCurve(
         design=design,
         points=tuple(by_current[current] for current in asked),
         initial_inductance=initial,
         saturation=saturation,
-        unknowns=mesh.sides.unknowns,
+        unknowns=sides.unknowns,
         refinements=mesh.refinements,
         seconds=time.perf_counter() - started,
         versions=library_versions(),
@@ -193,13 +199,14 @@ def inductance_curve(
 
 def _points(
     mesh: CommonMesh, currents: Sequence[float], progress: Callable[[int, int], None] | None
-) -> tuple[list[CurvePoint], list[State]]:
-    """Return point and state of every current, once the mesh serves each of them."""
+) -> tuple[Sides, list[CurvePoint], list[State]]:
+    """Return the sides that serve every current, and point and state of each."""
     while True:
         points: list[CurvePoint] = []
         states: list[State] = []
-        fine = _fine_sides(mesh.sides)
-        for solution, state in solutions_in_a_row(mesh.sides, currents):
+        sides = for_many_solutions(mesh.sides)
+        fine = _fine_sides(sides)
+        for solution, state in solutions_in_a_row(sides, currents):
             coenergy = solution.coenergy if fine is None else coenergy_on(fine, solution)
             if relative_half_width(solution, coenergy) > mesh.tolerance:
                 mesh.refine_for(solution)
@@ -209,14 +216,14 @@ def _points(
             if progress is not None:
                 progress(len(points), len(currents))
         else:
-            return points, states
+            return sides, points, states
 
 
 def _fine_sides(sides: Sides) -> Sides | None:
     """Return the sides with quadrature for the final energies of saturating materials."""
     if not sides.laws.saturating:
         return None
-    return both_sides(sides.problem, sides.mesh, FINE_ORDER)
+    return both_sides(sides.problem, sides.mesh, FINE_ORDER, numbered_as=sides)
 
 
 def _point(solution: FieldSolution, state: State, coenergy: Bounds) -> CurvePoint:
@@ -227,49 +234,51 @@ def _point(solution: FieldSolution, state: State, coenergy: Bounds) -> CurvePoin
         flux_linkage_of_sides=solution.flux_linkage_of_sides,
         incremental_inductance_of_sides=state.incremental_inductance_of_sides,
         magnet_flux_linkage=0.0 if idle is None else float(np.mean(idle.flux_linkage_of_sides)),
+        iterations=(len(solution.flux.history), len(solution.potential.history)),
     )
 
 
-def _initial_inductance(sides: Sides, states: Sequence[State]) -> float:
-    """Return the incremental inductance in H at small current; with magnets the largest."""
-    if sides.laws.has_magnets:
-        return max(state.incremental_inductance for state in states)
-    return solution_near(sides, SMALL * states[0].current)[1].incremental_inductance
+def _saturation(
+    sides: Sides, states: Sequence[State], drops: Sequence[float]
+) -> tuple[float, tuple[Saturation, ...]]:
+    """Return the initial inductance in H and the first current at which each drop is reached.
 
-
-def _saturation_current(
-    sides: Sides, states: Sequence[State], wanted: float, initial: float
-) -> float | None:
-    """Return the first current in A at which the incremental inductance falls to `wanted` (H)."""
-    if states[0].incremental_inductance < wanted <= initial and not sides.laws.has_magnets:
-        start = solution_near(sides, SMALL * states[0].current)[1]
-        return _root(sides, (start, states[0]), wanted, initial)
-    for low, high in pairwise(states):
-        if low.incremental_inductance >= wanted > high.incremental_inductance:
-            return _root(sides, (low, high), wanted, initial)
-    return None
-
-
-def _root(sides: Sides, ends: tuple[State, State], wanted: float, initial: float) -> float:
-    """Return the current in A between two states at which the incremental inductance is `wanted`.
-
-    Regula falsi with the Illinois rule; every solution is predicted from both ends.
+    The initial inductance is that at small current; with magnets the largest on the curve.
     """
-    low, high = ends
-    excess = [end.incremental_inductance - wanted for end in ends]
+    known = list(states)
+    if sides.laws.has_magnets:
+        initial = max(state.incremental_inductance for state in known)
+    else:
+        known.insert(0, solution_near(sides, SMALL * states[0].current)[1])
+        initial = known[0].incremental_inductance
     idle = idle_solution(sides)
-    current = high.current
+    return initial, tuple(
+        Saturation(drop, _root(sides, known, (1.0 - drop) * initial, initial, idle))
+        for drop in drops
+    )
+
+
+def _root(
+    sides: Sides, known: list[State], wanted: float, initial: float, idle: FieldSolution | None
+) -> float | None:
+    """Return the first current in A at which the incremental inductance falls to `wanted` (H).
+
+    Secants between the two states on either side, each pulled half way to the far end when it
+    hardly shortens the bracket. Every state that is found joins the known ones.
+    """
     for _ in range(ROOT_STEPS):
-        current = (low.current * excess[1] - high.current * excess[0]) / (excess[1] - excess[0])
-        _, state = solution_near(sides, current, (low, high), idle)
-        found = state.incremental_inductance - wanted
-        if abs(found) <= ROOT_ACCURACY * initial:
-            break
-        if found < 0.0:
-            high, excess = state, [0.5 * excess[0], found]
-        else:
-            low, excess = state, [found, 0.5 * excess[1]]
-    return current
+        high = next((k for k, s in enumerate(known) if s.incremental_inductance < wanted), 0)
+        if high == 0:
+            return None
+        ends = known[high - 1], known[high]
+        excess = [end.incremental_inductance - wanted for end in ends]
+        best = min(range(2), key=lambda k: abs(excess[k]))
+        if abs(excess[best]) <= ROOT_ACCURACY * initial:
+            return ends[best].current
+        share = min(max(excess[0] / (excess[0] - excess[1]), 0.05), 0.95)
+        current = ends[0].current + share * (ends[1].current - ends[0].current)
+        known.insert(high, solution_near(sides, current, ends, idle)[1])
+    return known[high].current
 
 
 def _checked_currents(currents: Sequence[float]) -> list[float]:

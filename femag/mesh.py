@@ -79,8 +79,15 @@ class SectionMesh:
         return np.flatnonzero(self.region == self.names.index(name))
 
 
-def coarse_mesh(section: Section) -> SectionMesh:
+def coarse_mesh(section: Section, corner_rounds: int = CORNER_ROUNDS) -> SectionMesh:
     """Return a mesh that resolves every region with few elements, finer at singular corners.
+
+    Parameters
+    ----------
+    section : Section
+        What is meshed.
+    corner_rounds : int
+        How often elements at singular corners are divided.
 
     Raises
     ------
@@ -96,7 +103,7 @@ def coarse_mesh(section: Section) -> SectionMesh:
     points, corners, region = _drawn_mesh(scaled_section(section, 1.0 / unit))
     triangles = MeshTri(points * unit, corners)
     singular = singular_corners(section)
-    for _ in range(CORNER_ROUNDS):
+    for _ in range(corner_rounds):
         triangles, region = _divided(triangles, _touching(triangles, singular), region)
     names = (SURROUNDINGS, *(part.name for part in section.regions))
     mesh = SectionMesh(section, triangles, region, names)

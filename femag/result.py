@@ -15,10 +15,12 @@ from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
     SectionMean,
+    VolumeShare,
     WoundCopper,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
+    volume_shares,
     wound_copper,
 )
 
@@ -68,6 +70,8 @@ class Result:
         Every hand formula beside the field.
     section_means : tuple of SectionMean
         Mean flux density through cuts of the core, T, from the flux side.
+    volume_shares : tuple of VolumeShare
+        Flux density, T, that half, 90 % and 99 % of the core's volume stay below.
     copper : tuple of WoundCopper
         Layers, wire and resistance of every winding that has a conductor.
     unknowns, refinements : int
@@ -95,6 +99,7 @@ class Result:
     gap_factor: float | None
     hand: tuple[Comparison, ...]
     section_means: tuple[SectionMean, ...]
+    volume_shares: tuple[VolumeShare, ...]
     copper: tuple[WoundCopper, ...]
     unknowns: int
     refinements: int
@@ -203,6 +208,7 @@ def solve(
             for estimate in hand_estimates(*hand_input)
         ),
         section_means=section_means(design, solution),
+        volume_shares=volume_shares(solution),
         copper=wound_copper(design),
         unknowns=solution.unknowns,
         refinements=refinements,

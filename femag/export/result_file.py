@@ -13,7 +13,7 @@ from femag.errors import InputError
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
-from femag.quantities import SectionMean, WoundCopper
+from femag.quantities import SectionMean, VolumeShare, WoundCopper
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -47,6 +47,13 @@ class SectionMeanEntry(_Entry):
 
     name: str
     area: float
+    flux_density: float
+
+
+class VolumeShareEntry(_Entry):
+    """Flux density (T) that a share of the core's volume stays below."""
+
+    share: float
     flux_density: float
 
 
@@ -88,6 +95,7 @@ class ResultDocument(_Entry):
     gap_factor: float | None
     plain_inductance: float
     section_means: list[SectionMeanEntry]
+    volume_shares: list[VolumeShareEntry] = []
     copper: list[CopperEntry]
     hand: list[HandEntry]
     model_note: str = ""
@@ -185,6 +193,7 @@ def _document(result: Result) -> ResultDocument:
         gap_factor=result.gap_factor,
         plain_inductance=result.plain_inductance,
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
+        volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
@@ -218,6 +227,7 @@ def _result(document: ResultDocument, file: str) -> Result:
             for entry in document.hand
         ),
         section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
+        volume_shares=tuple(VolumeShare(**s.model_dump()) for s in document.volume_shares),
         copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
         unknowns=document.unknowns,
         refinements=document.refinements,

@@ -145,16 +145,40 @@ class FieldSolution:
         return self.sides.unknowns
 
 
-def both_sides(problem: FieldProblem, mesh: SectionMesh, order: int = QUADRATURE_ORDER) -> Sides:
-    """Return a problem discretised on a mesh, with quadrature exact to degree `order`."""
+def both_sides(
+    problem: FieldProblem,
+    mesh: SectionMesh,
+    order: int = QUADRATURE_ORDER,
+    numbered_as: Sides | None = None,
+) -> Sides:
+    """Return a problem discretised on a mesh, with quadrature exact to degree `order`.
+
+    The unknowns are in the order of those of `numbered_as`, on the same mesh, if it is given.
+    """
     discretisation = discretise(mesh, order)
     laws = material_laws(problem, mesh)
+    flux, potential = (
+        (None, None)
+        if numbered_as is None
+        else (numbered_as.flux.numbering, numbered_as.potential.numbering)
+    )
     return Sides(
         problem,
         discretisation,
         laws,
-        flux_side(problem, discretisation, laws),
-        potential_side(problem, discretisation, laws),
+        flux_side(problem, discretisation, laws, flux),
+        potential_side(problem, discretisation, laws, potential),
+    )
+
+
+def for_many_solutions(sides: Sides) -> Sides:
+    """Return the same sides with their unknowns in an order that pays after a few solutions."""
+    problem, discretisation, laws = sides.problem, sides.discretisation, sides.laws
+    orders = [side.numbering.for_many_solutions() for side in (sides.flux, sides.potential)]
+    return replace(
+        sides,
+        flux=flux_side(problem, discretisation, laws, orders[0]),
+        potential=potential_side(problem, discretisation, laws, orders[1]),
     )
 
 

@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from femag.errors import NewtonError
 from femag.field.adapt import (
     MAXIMUM_UNKNOWNS,
     ToleranceError,
@@ -17,13 +18,18 @@ from femag.field.adapt import (
 from femag.field.bounds import Bounds, FieldSolution, Sides, both_sides, field_solution
 from femag.field.newton import minimum
 from femag.field.problem import FieldProblem
-from femag.field.tangent import Tangent, tangents_of_sides
+from femag.field.tangent import Tangent, flux_tangent, potential_tangent
 from femag.mesh import coarse_mesh, refined_mesh
 
 Array = NDArray[np.float64]
 
 NEWTON_ACCURACY = 1e-7
 """Squared Newton decrement over the energy before the last full step, which squares it again."""
+CORNER_ROUNDS = 1
+"""How often elements at singular corners are divided before the first solution: every unknown less
+is saved at all currents."""
+MOST_ITERATIONS = 12
+"""Of Newton's method from a prediction; then it starts afresh."""
 RESERVE = 0.9
 """Share of the tolerance that the probed currents must reach; those between them get the rest."""
 
@@ -86,18 +92,26 @@ def solution_near(
     idle : FieldSolution, optional
         Solution without current; with magnets only.
     """
-    if not known:
+    solution = _from_prediction(sides, current, known) if known else None
+    if solution is None:
         solution = field_solution(sides, current, accuracy=NEWTON_ACCURACY)
-    else:
-        guesses = _predicted(known, current)
-        flux, potential = (
-            minimum(side, current, accuracy=NEWTON_ACCURACY, guess=guess)
-            for side, guess in zip((sides.flux, sides.potential), guesses, strict=True)
-        )
-        solution = FieldSolution(sides, current, flux, potential)
-    solution = replace(solution, idle=idle)
     unknowns = solution.flux.x, solution.potential.x
-    return solution, State(current, unknowns, tangents_of_sides(solution))
+    tangents = flux_tangent(solution.flux), potential_tangent(solution.potential)
+    return replace(solution, idle=idle), State(current, unknowns, tangents)
+
+
+def _from_prediction(sides: Sides, current: float, known: Sequence[State]) -> FieldSolution | None:
+    """Return the solution at a current; None where the prediction is too far off to start from."""
+    try:
+        flux, potential = (
+            minimum(side, current, accuracy=NEWTON_ACCURACY, guess=guess, most=MOST_ITERATIONS)
+            for side, guess in zip(
+                (sides.flux, sides.potential), _predicted(known, current), strict=True
+            )
+        )
+    except NewtonError:
+        return None
+    return FieldSolution(sides, current, flux, potential)
 
 
 def idle_solution(sides: Sides) -> FieldSolution | None:
@@ -141,7 +155,7 @@ class CommonMesh:
     def __init__(self, problem: FieldProblem, tolerance: float) -> None:
         self.tolerance = tolerance
         self.refinements = 0
-        self.sides = both_sides(problem, coarse_mesh(problem.section))
+        self.sides = both_sides(problem, coarse_mesh(problem.section, CORNER_ROUNDS))
         self._probes: dict[float, FieldSolution] = {}
 
     def probe(self, currents: Sequence[float]) -> None:

@@ -13,8 +13,9 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from femag.field.discretisation import Discretisation, assembled_vector
+from femag.field.discretisation import Discretisation
 from femag.field.laws import Laws, axial_field
+from femag.field.numbering import Numbering
 from femag.field.problem import FieldProblem
 from femag.field.side import Side
 
@@ -22,23 +23,27 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
-def flux_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws) -> Side:
+def flux_side(
+    problem: FieldProblem,
+    discretisation: Discretisation,
+    laws: Laws,
+    numbering: Numbering | None = None,
+) -> Side:
     """Return the flux side: B from u, u = 0 on far and tangential walls.
 
     B_r = -r du/dz and B_z = 2 u + r du/dr hold no 1/r, and u is free on the axis. In a magnet
     w(B) = |B - Br|^2 / (2 mu).
     """
-    unknown, size = _free_unknowns(discretisation)
+    numbering = numbering or _free_unknowns(discretisation)
     turns = turn_density(problem, discretisation)
     local = np.einsum("eiq,eq->ei", discretisation.radius_shape, turns * discretisation.weight)
     shape = discretisation.flux_shape
     return Side(
         name="flux side",
         shape=shape,
-        unknown=unknown,
-        size=size,
+        numbering=numbering,
         source=np.zeros((len(shape), 2, shape.shape[3])),
-        load=assembled_vector(local, unknown, size),
+        load=numbering.vector(local),
         weight=discretisation.weight,
         law=laws.of_flux_density,
         density=laws.energy_density,
@@ -55,10 +60,10 @@ def turn_density(problem: FieldProblem, discretisation: Discretisation) -> Array
     ]
 
 
-def _free_unknowns(discretisation: Discretisation) -> tuple[Index, int]:
+def _free_unknowns(discretisation: Discretisation) -> Numbering:
     walls, basis = discretisation.mesh.walls, discretisation.basis
     fixed_facets = np.concatenate([walls["far"], walls["tangential"]])
     free = np.ones(basis.N, dtype=bool)
     free[basis.get_dofs(fixed_facets).all()] = False
     number = np.where(free, np.cumsum(free) - 1, -1)
-    return number[discretisation.element_dofs], int(free.sum())
+    return Numbering(number[discretisation.element_dofs], int(free.sum()))

@@ -22,6 +22,7 @@ from scipy.sparse import csc_matrix
 from scipy.sparse.linalg import splu
 
 from femag.errors import NewtonError, NumericalError
+from femag.field.numbering import FILL_REDUCING
 from femag.field.side import Side, linearised
 from femag.line_search import step_length
 
@@ -30,6 +31,9 @@ Array = NDArray[np.float64]
 MAXIMUM_ITERATIONS = 100
 EXACT = 1e-11
 """Accuracy that leaves rounding only: the last step squares the decrement once more."""
+
+CLOSE = 1e-7
+"""Squared decrement below which the whole step is taken without a look at the slope after it."""
 
 
 @dataclass(frozen=True)
@@ -73,6 +77,7 @@ def minimum(
     start: Array | None = None,
     accuracy: float = EXACT,
     guess: Array | None = None,
+    most: int = MAXIMUM_ITERATIONS,
 ) -> Minimum:
     """Return the minimiser of a side's functional.
 
@@ -89,6 +94,8 @@ def minimum(
         Unknowns to start from, instead of a field.
     accuracy : float
         Largest squared Newton decrement over the stored energy before the last full step.
+    most : int
+        Largest number of iterations.
 
     Raises
     ------
@@ -110,18 +117,20 @@ def minimum(
         done = length == 1.0 and history[-1] < accuracy
         if done or (guess is None and np.array_equal(secant, tangent)):
             return Minimum(side, current, x, field, secant, tangent, tuple(history))
-        if len(history) == MAXIMUM_ITERATIONS:
+        if len(history) == most:
             raise NewtonError(f"Newton's method did not converge on the {side.name}", history)
         gradient = side.gradient(field, secant, current)
         toward = _toward(field, secant, flow) if side.flattens else None
-        step = solved(side.hessian(field, secant, tangent, toward), -gradient)
+        matrix = side.hessian(field, secant, tangent, toward)
+        step = solved(matrix, -gradient, side.numbering.ordering)
         decrement = float(-gradient @ step)
-        length = step_length(partial(_slope, side, x, step, current), decrement)
+        scale = float(np.sum(side.weight * secant * np.sum(field**2, axis=1)))
+        history.append(abs(decrement) / scale)
+        slope = partial(_slope, side, x, step, current)
+        length = 1.0 if history[-1] < CLOSE else step_length(slope, decrement)
         change = side.change(step)
         flow = secant[:, None] * field + linearised(field, secant, tangent, change, toward)
         x = x + length * step
-        scale = float(np.sum(side.weight * secant * np.sum(field**2, axis=1)))
-        history.append(abs(decrement) / scale)
 
 
 def _toward(field: Array, secant: Array, flow: Array | None) -> Array | None:
@@ -133,7 +142,7 @@ def _toward(field: Array, secant: Array, flow: Array | None) -> Array | None:
     return np.asarray(flow / np.maximum(magnitude, 1e-300)[:, None])
 
 
-def solved(matrix: csc_matrix, load: Array) -> Array:
+def solved(matrix: csc_matrix, load: Array, ordering: str = FILL_REDUCING) -> Array:
     """Return the solution of a symmetric positive definite system.
 
     SuperLU with an ordering and without pivoting that suit such systems; its blocking pays for
@@ -147,7 +156,7 @@ def solved(matrix: csc_matrix, load: Array) -> Array:
     try:
         factor = splu(
             matrix,
-            permc_spec="MMD_AT_PLUS_A",
+            permc_spec=ordering,
             diag_pivot_thresh=0.0,
             relax=1,
             panel_size=1,
@@ -174,7 +183,7 @@ def _first_iterate(side: Side, current: float, start: Array) -> Array:
     change = linearised(start, secant, tangent, side.prescribed(current) - start)
     flow = secant[:, None] * start + change
     load = current * side.load - side.tested(flow, np.ones_like(secant))
-    return solved(side.hessian(start, secant, tangent), load)
+    return solved(side.hessian(start, secant, tangent), load, side.numbering.ordering)
 
 
 def _slope(side: Side, x: Array, step: Array, current: float, length: float) -> float:

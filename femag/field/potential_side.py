@@ -18,6 +18,7 @@ from scipy.sparse.csgraph import connected_components
 from femag.field.discretisation import Discretisation
 from femag.field.flux_side import turn_density
 from femag.field.laws import Laws, axial_field
+from femag.field.numbering import Numbering
 from femag.field.problem import FieldProblem
 from femag.field.side import Side
 from femag.field.source_field import source_field
@@ -26,20 +27,24 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
-def potential_side(problem: FieldProblem, discretisation: Discretisation, laws: Laws) -> Side:
+def potential_side(
+    problem: FieldProblem,
+    discretisation: Discretisation,
+    laws: Laws,
+    numbering: Numbering | None = None,
+) -> Side:
     """Return the potential side: Omega is one constant on each connected far or normal wall.
 
     In a magnet w'(H) = mu |H + Br/mu|^2 / 2 - |Br|^2 / (2 mu).
     """
-    unknown, size = _grouped_unknowns(discretisation)
+    numbering = numbering or _grouped_unknowns(discretisation)
     source = source_field(discretisation, turn_density(problem, discretisation), laws.permeability)
     return Side(
         name="potential side",
-        shape=-discretisation.gradient_shape,
-        unknown=unknown,
-        size=size,
-        source=source,
-        load=np.zeros(size),
+        shape=np.negative(discretisation.gradient_shape),
+        numbering=numbering,
+        source=np.ascontiguousarray(source),
+        load=np.zeros(numbering.size),
         weight=discretisation.weight,
         law=laws.of_field_strength,
         density=laws.coenergy_density,
@@ -49,13 +54,13 @@ def potential_side(problem: FieldProblem, discretisation: Discretisation, laws: 
     )
 
 
-def _grouped_unknowns(discretisation: Discretisation) -> tuple[Index, int]:
+def _grouped_unknowns(discretisation: Discretisation) -> Numbering:
     """Return the unknown of each local function; the first wall's constant (or a point) is 0."""
     walls, basis = discretisation.mesh.walls, discretisation.basis
     facets = np.concatenate([walls["far"], walls["normal"]])
     if len(facets) == 0:
         number = np.arange(basis.N) - 1
-        return number[discretisation.element_dofs], basis.N - 1
+        return Numbering(number[discretisation.element_dofs], basis.N - 1)
     group = _wall_groups(discretisation.mesh.triangles.facets[:, facets], basis.N)
     number = np.full(basis.N, -2)
     for vertex_row in discretisation.mesh.triangles.facets[:, facets]:
@@ -64,7 +69,7 @@ def _grouped_unknowns(discretisation: Discretisation) -> tuple[Index, int]:
     free = number == -2
     constants = int(number.max()) + 1 if np.any(~free) else 0
     number[free] = constants + np.arange(np.count_nonzero(free))
-    return number[discretisation.element_dofs], constants + int(free.sum())
+    return Numbering(number[discretisation.element_dofs], constants + int(free.sum()))
 
 
 def _wall_groups(wall_edges: Index, size: int) -> Index:

@@ -9,10 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.sparse import csc_matrix
 
-from femag.field.discretisation import assembled_matrix, assembled_vector
+from femag.field.discretisation import local_matrices
+from femag.field.numbering import Numbering
 
 Array = NDArray[np.float64]
-Index = NDArray[np.int64]
 Law = Callable[[Array], tuple[Array, Array]]
 
 
@@ -31,10 +31,8 @@ class Side:
         For messages.
     shape : array, (elements, 6, 2, points)
         Field of each local function.
-    unknown : int array, (elements, 6)
-        Unknown of each local function, -1 where it is fixed at zero.
-    size : int
-        Number of unknowns.
+    numbering : Numbering
+        Unknown of each local function; where there is none it is fixed at zero.
     source : array, (elements, 2, points)
         Field per ampere of the source.
     load : array, (size,)
@@ -55,8 +53,7 @@ class Side:
 
     name: str
     shape: Array
-    unknown: Index
-    size: int
+    numbering: Numbering
     source: Array
     load: Array
     weight: Array
@@ -66,13 +63,18 @@ class Side:
     fixed: Array | None = None
     constant: float = 0.0
 
+    @property
+    def size(self) -> int:
+        """Number of unknowns."""
+        return self.numbering.size
+
     def field(self, x: Array, current: float) -> Array:
         """Return the field at the quadrature points, (elements, 2, points)."""
         return self.change(x) + self.prescribed(current)
 
     def change(self, x: Array) -> Array:
         """Return the change of the field with a change of the unknowns, (elements, 2, points)."""
-        local = np.append(x, 0.0)[self.unknown]
+        local = np.append(x, 0.0)[self.numbering.unknown]
         elements, _, _, points = self.shape.shape
         return (local[:, None, :] @ self.shape.reshape(elements, 6, -1)).reshape(-1, 2, points)
 
@@ -100,7 +102,7 @@ class Side:
         elements = len(field)
         weighted = (field * (self.weight * secant)[:, None]).reshape(elements, -1, 1)
         local = self.shape.reshape(elements, 6, -1) @ weighted
-        return assembled_vector(local[..., 0], self.unknown, self.size)
+        return self.numbering.vector(local[..., 0])
 
     def hessian(
         self, field: Array, secant: Array, tangent: Array, toward: Array | None = None
@@ -111,14 +113,13 @@ class Side:
         by them and the matrix symmetrised.
         """
         along = unit_vectors(field)
-        return assembled_matrix(
+        local = local_matrices(
             self.shape,
             self.weight * secant,
             self.weight * (tangent - secant),
             (along if toward is None else toward, along),
-            self.unknown,
-            self.size,
         )
+        return self.numbering.matrix(local)
 
 
 def linearised(

@@ -7,8 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from femag.field.bounds import FieldSolution
-from femag.field.newton import solved
+from femag.field.newton import Minimum, solved
 from femag.field.side import linearised
 
 Array = NDArray[np.float64]
@@ -30,16 +29,20 @@ class Tangent:
     inductance: float
 
 
-def tangents_of_sides(solution: FieldSolution) -> tuple[Tangent, Tangent]:
-    """Return the tangents of the flux side and of the potential side, one linear solve each."""
-    flux, side = solution.flux, solution.sides.flux
-    rate = solved(side.hessian(flux.field, flux.secant, flux.tangent), side.load)
-    of_flux = Tangent(rate, float(side.load @ rate))
+def flux_tangent(flux: Minimum) -> Tangent:
+    """Return the tangent of the flux side's minimiser, from one linear solve."""
+    side = flux.side
+    matrix = side.hessian(flux.field, flux.secant, flux.tangent)
+    rate = solved(matrix, side.load, side.numbering.ordering)
+    return Tangent(rate, float(side.load @ rate))
 
-    potential, side = solution.potential, solution.sides.potential
+
+def potential_tangent(potential: Minimum) -> Tangent:
+    """Return the tangent of the potential side's minimiser, from one linear solve."""
+    side = potential.side
     state = (potential.field, potential.secant, potential.tangent)
     flow = linearised(*state, side.source)
     stiff = float(np.sum(side.weight * np.sum(flow * side.source, axis=1)))
     coupling = side.tested(flow, np.ones_like(potential.secant))
-    rate = -solved(side.hessian(*state), coupling)
-    return of_flux, Tangent(rate, stiff + float(coupling @ rate))
+    rate = -solved(side.hessian(*state), coupling, side.numbering.ordering)
+    return Tangent(rate, stiff + float(coupling @ rate))

@@ -299,6 +299,8 @@ def _magnetisation_integral(t: Array, n: float) -> Array:
     if n == 1.0:
         series = t**2 * (1 / 2 - t * (1 / 3 - t * (1 / 4 - t * (1 / 5 - t * (1 / 6 - t / 7)))))
         return np.where(t < 1e-3, series, t - np.log1p(t))
+    if n == 2.0:
+        return np.asarray(t**2 / (1.0 + np.sqrt(1.0 + t**2)))
     p, q = 2.0 / n, 1.0 - 1.0 / n
     power = t**n
     rest = 1.0 / (1.0 + power)

@@ -1,6 +1,7 @@
 """Quantities: what engineers read off the fields."""
 
 from femag.quantities.copper import WoundCopper, wound_copper
+from femag.quantities.core_volume import VolumeShare, core_share_above, volume_shares
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
 from femag.quantities.fringing import gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
@@ -14,7 +15,9 @@ from femag.quantities.section_means import (
 __all__ = [
     "FieldMap",
     "SectionMean",
+    "VolumeShare",
     "WoundCopper",
+    "core_share_above",
     "field_map",
     "flux_through_discs",
     "gap_factor",
@@ -23,5 +26,6 @@ __all__ = [
     "plain_gap_reluctance",
     "section_means",
     "typical_peak",
+    "volume_shares",
     "wound_copper",
 ]

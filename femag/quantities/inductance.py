@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from femag.field.bounds import FieldSolution
-from femag.field.tangent import tangents_of_sides
+from femag.field.tangent import flux_tangent, potential_tangent
 
 
 def incremental_inductance_of_sides(solution: FieldSolution) -> tuple[float, float]:
@@ -12,5 +12,5 @@ def incremental_inductance_of_sides(solution: FieldSolution) -> tuple[float, flo
     Each is the second derivative of its side's energy by the current at the solution, from one
     linear solve with the tangent; no differences. Their distance estimates an error.
     """
-    flux, potential = tangents_of_sides(solution)
+    flux, potential = flux_tangent(solution.flux), potential_tangent(solution.potential)
     return flux.inductance, potential.inductance

@@ -94,5 +94,5 @@ def nodal_u(solution: FieldSolution) -> Array:
     """Return u = A/r in T at every node of the P2 basis."""
     side, dofs = solution.sides.flux, solution.sides.discretisation.element_dofs
     nodal = np.zeros(solution.sides.discretisation.basis.N)
-    nodal[dofs] = np.append(solution.flux.x, 0.0)[side.unknown]
+    nodal[dofs] = np.append(solution.flux.x, 0.0)[side.numbering.unknown]
     return nodal

@@ -55,7 +55,7 @@ def test_flux_side_equals_scikit_fem_forms(sides: Sides) -> None:
 
     mu_field = np.broadcast_to(mu, basis.dx.shape)
     turns = np.broadcast_to(turn_density(sides.problem, sides.discretisation), basis.dx.shape)
-    columns = dof_of_unknown(sides, sides.flux.unknown)
+    columns = dof_of_unknown(sides, sides.flux.numbering.unknown)
     expected = stiffness.assemble(basis, mu=mu_field)[columns][:, columns]
     zero = np.zeros_like(sides.flux.source)
     own = sides.flux.hessian(zero, *sides.flux.coefficients(zero))
@@ -75,8 +75,8 @@ def test_potential_side_equals_scikit_fem_forms(sides: Sides) -> None:
     full = stiffness.assemble(basis, mu=mu_field)
     side = sides.potential
     spread = np.zeros((basis.N, side.size))
-    inside = side.unknown >= 0
-    spread[sides.discretisation.element_dofs[inside], side.unknown[inside]] = 1.0
+    inside = side.numbering.unknown >= 0
+    spread[sides.discretisation.element_dofs[inside], side.numbering.unknown[inside]] = 1.0
     zero = np.zeros_like(side.source)
     own = side.hessian(zero, *side.coefficients(zero)).toarray()
     expected = spread.T @ full @ spread
