@@ -146,6 +146,21 @@ def cores_command(
 app.command("bench")(bench_command)
 
 
+@app.command("materials")
+def materials_command() -> None:
+    """List the library of materials.
+
+    Every material comes with its source.
+    """
+    from rich.console import Console
+
+    from femag.answer import WIDTH
+    from femag.material_answer import print_material_list
+    from femag.materials import material_library
+
+    print_material_list(material_library(), Console(width=WIDTH))
+
+
 def _with_current(design: Design, current: str | None) -> Design:
     if current is None:
         return design

@@ -320,3 +320,12 @@ def test_the_caution_names_the_energy_that_is_stored(
 ) -> None:
     _, out, _ = run(capsys, "solve", design)
     assert "Caution: about 3.1 mJ is stored at 4 A" in out
+
+
+def test_materials_are_listed_with_their_sources(capsys: pytest.CaptureFixture[str]) -> None:
+    assert cli.main(["materials"]) == 0
+    printed = capsys.readouterr().out
+    for material in fm.material_library():
+        assert f"{material.name}: " in " ".join(printed.split())
+        assert material.source.split()[0] in printed
+    assert all(len(line) <= 80 for line in printed.splitlines())
