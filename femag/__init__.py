@@ -30,9 +30,11 @@ if TYPE_CHECKING:
         normal_curve,
         read_capture,
     )
+    from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design
     from femag.errors import GapfieldError, InputError, NumericalError
+    from femag.export.curve_file import read_curve, write_curve
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
     from femag.field.bounds import Bounds
@@ -60,7 +62,15 @@ if TYPE_CHECKING:
         material_library,
         read_material,
     )
+    from femag.measured_inductance import (
+        MeasuredPoints,
+        fitted_design,
+        measured_curve,
+        read_measured,
+        residuals,
+    )
     from femag.result import Result, solve
+    from femag.target_gap import gap_for
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -87,6 +97,15 @@ _HOME = {
     "material": "femag.materials",
     "material_library": "femag.materials",
     "read_material": "femag.materials",
+    "InductanceCurve": "femag.current_curve",
+    "inductance_curve": "femag.current_curve",
+    "read_curve": "femag.export.curve_file",
+    "write_curve": "femag.export.curve_file",
+    "MeasuredPoints": "femag.measured_inductance",
+    "fitted_design": "femag.measured_inductance",
+    "measured_curve": "femag.measured_inductance",
+    "read_measured": "femag.measured_inductance",
+    "residuals": "femag.measured_inductance",
     "Gap": "femag.geometry",
     "GapfieldError": "femag.errors",
     "InputError": "femag.errors",
@@ -102,6 +121,7 @@ _HOME = {
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
     "read_result": "femag.export.result_file",
+    "gap_for": "femag.target_gap",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
 }
@@ -120,11 +140,13 @@ __all__ = [
     "FroehlichCurve",
     "Gap",
     "GapfieldError",
+    "InductanceCurve",
     "InputError",
     "LinearCurve",
     "LitzWire",
     "Loop",
     "Magnet",
+    "MeasuredPoints",
     "NumericalError",
     "PotCore",
     "Result",
@@ -136,18 +158,26 @@ __all__ = [
     "catalogue",
     "catalogue_core",
     "design_toml",
+    "fitted_design",
+    "gap_for",
+    "inductance_curve",
     "loop_of",
     "material",
     "material_library",
     "material_toml",
+    "measured_curve",
     "middle_curve",
     "normal_curve",
     "plot",
     "read_capture",
+    "read_curve",
     "read_design",
     "read_material",
+    "read_measured",
     "read_result",
+    "residuals",
     "solve",
+    "write_curve",
     "write_result",
 ]
 

@@ -27,24 +27,25 @@ def print_answer(result: Result, console: Console) -> None:
     lines: list[Text | Table | str] = []
     if design.title:
         lines.append(Text(design.title, style="bold"))
-    lines += [_described(design), "", _inductances(result), "", _flux_densities(result)]
+    lines += [described(design), "", _inductances(result), "", _flux_densities(result)]
     lines += [Text(_where_it_saturates(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
-    lines += [Text(_provenance(result)), "", Text(_cautions(result))]
+    lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
         console.print(line, highlight=False)
 
 
-def _described(design: Design) -> Text:
+def described(design: Design, currents: str | None = None) -> Text:
+    """Return core, gaps, material and drive of a design in words; its current, or `currents`."""
     core = design.core
     parts = [
         *([core.name] if core.name else []),
         core.description,
         *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
-    drive = f"{design.turns} turns, {design.current:g} A"
+    drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
@@ -228,10 +229,10 @@ def _provenance(result: Result) -> str:
     )
 
 
-def _cautions(result: Result) -> str:
-    stored = with_unit(result.stored_energy, "J", 2)
+def cautions(stored_energy: float, current: float) -> str:
+    """Return what to beware of: an energy in J that is stored at a current in A."""
     return (
-        f"Caution: about {stored} is stored at {result.current:g} A and becomes a voltage when "
-        "the current is cut. Check insulation from the mains, creepage and hot parts by the codes "
-        "that apply to you, with licensed practice."
+        f"Caution: about {with_unit(stored_energy, 'J', 2)} is stored at {current:g} A and becomes "
+        "a voltage when the current is cut. Check insulation from the mains, creepage and hot "
+        "parts by the codes that apply to you, with licensed practice."
     )

@@ -4,9 +4,8 @@ from __future__ import annotations
 
 import os
 import sys
-import time
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import ExitStack, contextmanager
+from collections.abc import Sequence
+from contextlib import ExitStack
 from dataclasses import replace
 from io import TextIOWrapper
 from pathlib import Path
@@ -15,7 +14,10 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from femag.bench_command import bench_command
+from femag.command_output import check_targets, make_folder, shown_progress
+from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
+from femag.gap_command import gap_command
 
 if TYPE_CHECKING:
     from femag.design import Design
@@ -24,8 +26,6 @@ if TYPE_CHECKING:
 
 STOPPED = 130
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
-PATIENCE = 1.0
-"""Seconds of silence before progress shows on a terminal."""
 
 app = typer.Typer(
     add_completion=False,
@@ -144,6 +144,8 @@ def cores_command(
 
 
 app.command("bench")(bench_command)
+app.command("curve")(curve_command)
+app.command("gap")(gap_command)
 
 
 @app.command("materials")
@@ -176,8 +178,8 @@ def _answer(design: Design, json: str | None, out: Path | None) -> None:
     """Solve, then write files, then print."""
     from femag.result import solve
 
-    _check_targets(json, out)
-    with _shown_progress() as progress:
+    check_targets(json, out)
+    with shown_progress(_bracket) as progress:
         result = solve(design, progress=progress)
     _write(result, json, out)
     if json == "-":
@@ -194,19 +196,6 @@ def _answer(design: Design, json: str | None, out: Path | None) -> None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
 
 
-def _check_targets(json: str | None, out: Path | None) -> None:
-    """Refuse before the work what cannot be written after it."""
-    if json is not None and json != "-":
-        folder = Path(json).parent
-        if not json or Path(json).is_dir() or not folder.is_dir():
-            raise InputError(
-                "cannot be written", key="--json", value=json,
-                accepted="a file in a folder that exists, or -",
-            )  # fmt: skip
-    if out is not None and out.exists() and not out.is_dir():
-        raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
-
-
 def _write(result: Result, json: str | None, out: Path | None) -> None:
     """Write all files that were asked for; each is renamed only when all are written."""
     from femag.export.result_file import result_json
@@ -220,7 +209,7 @@ def _write(result: Result, json: str | None, out: Path | None) -> None:
             return
         from femag.plot import flux_map, gap_map, write_figure
 
-        _make_folder(out)
+        make_folder(out)
         document, section, gap = (
             stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
         )
@@ -229,35 +218,11 @@ def _write(result: Result, json: str | None, out: Path | None) -> None:
         write_figure(lambda ax: gap_map(result, ax), gap)
 
 
-def _make_folder(out: Path) -> None:
-    try:
-        out.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise InputError(
-            f"cannot be made a folder ({error.strerror})", key="--out", value=str(out)
-        ) from error
-
-
-@contextmanager
-def _shown_progress() -> Iterator[Callable[[FieldSolution], None] | None]:
-    """Give a callback that shows the bracket on a terminal when it takes long; None if piped."""
-    if sys.stderr is None or not sys.stderr.isatty():
-        yield None
-        return
-    from rich.console import Console
-
+def _bracket(solution: FieldSolution) -> str:
+    """Return the bounds of a solution in words, for progress."""
     from femag.field.adapt import inductance_bounds
 
-    started = time.monotonic()
-    with Console(stderr=True).status("") as status:
-        status.stop()
-
-        def show(solution: FieldSolution) -> None:
-            if time.monotonic() - started > PATIENCE:
-                status.update(f"{inductance_bounds(solution)}, {solution.unknowns} unknowns")
-                status.start()
-
-        yield show
+    return f"{inductance_bounds(solution)}, {solution.unknowns} unknowns"
 
 
 def main(argv: Sequence[str] | None = None) -> int:

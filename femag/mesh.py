@@ -141,6 +141,19 @@ def uniformly_refined_mesh(mesh: SectionMesh) -> SectionMesh:
     return SectionMesh(mesh.section, triangles, np.tile(mesh.region, 4), mesh.names)
 
 
+def moved_mesh(mesh: SectionMesh, section: Section, points: Array) -> SectionMesh:
+    """Return the mesh with its nodes at other places (2, n) in m, now a mesh of `section`.
+
+    Raises
+    ------
+    NumericalError
+        If the areas of its regions are not those of the section.
+    """
+    moved = SectionMesh(section, MeshTri(points, mesh.triangles.t), mesh.region, mesh.names)
+    _check_areas(moved)
+    return moved
+
+
 def _divided(triangles: MeshTri, marked: Index, number: Index) -> tuple[MeshTri, Index]:
     """Return the mesh with marked elements divided, and the numbers that children inherit.
 

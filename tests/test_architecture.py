@@ -16,11 +16,13 @@ LAYERS = (
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "inductance_curve"),
+    ("result", "current_curve", "target_gap"),
+    ("measured_inductance",),
     ("export",),
     ("plot",),
-    ("answer", "core_answer", "bench_answer"),
-    ("bench_command",),
+    ("answer", "core_answer", "material_answer", "bench_answer", "curve_answer", "gap_answer"),
+    ("command_output",),
+    ("bench_command", "curve_command", "gap_command"),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

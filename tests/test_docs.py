@@ -68,7 +68,7 @@ def test_readme_has_two_set_up_commands_and_ci_runs_the_second() -> None:
     commands = [line for line in readme.splitlines() if "apt-get install" in line]
     assert len(commands) == 2
     assert commands[0].endswith("gapfield demo")
-    assert commands[1].endswith("/pytest")
+    assert commands[1].endswith("/pytest -n 2")
     ci = (ROOT / ".ci/run").read_text(encoding="utf-8")
     (pattern,) = re.findall(r'grep -m1 -F "(.*)" README.md', ci)
     assert [line for line in readme.splitlines() if pattern in line] == [commands[1]]

@@ -22,11 +22,11 @@ from dataclasses import dataclass, replace
 from functools import partial
 from pathlib import Path
 
+from femag.current_curve import inductance_curve
 from femag.design_file import design_toml
 from femag.field.adapt import adapted_solution, inductance_bounds, refinements
 from femag.field.design_problem import field_problem
 from femag.field.problem import FieldProblem
-from femag.inductance_curve import inductance_curve
 from femag.materials import FroehlichCurve
 from validation.pot_core_26_16.run import pot_core_design
 from validation.rows import table_of

@@ -32,6 +32,8 @@ class Discretisation:
         The mesh.
     basis : skfem.Basis
         Continuous P2.
+    order : int
+        Polynomial degree that the quadrature integrates exactly.
     weight : array, (elements, points)
         2 pi r dr dz times the section's copies, m3.
     flux_shape : array, (elements, 6, 2, points)
@@ -44,6 +46,7 @@ class Discretisation:
 
     mesh: SectionMesh
     basis: Basis
+    order: int
     weight: Array
     flux_shape: Array
     gradient_shape: Array
@@ -66,7 +69,7 @@ def discretise(mesh: SectionMesh, order: int = QUADRATURE_ORDER) -> Discretisati
     radius = r[:, None]
     flux = np.stack([-radius * gradient[:, :, 1], 2.0 * value + radius * gradient[:, :, 0]], axis=2)
     weight = 2.0 * np.pi * mesh.section.copies * r * basis.dx
-    return Discretisation(mesh, basis, weight, flux, gradient, radius * value)
+    return Discretisation(mesh, basis, order, weight, flux, gradient, radius * value)
 
 
 def local_matrices(

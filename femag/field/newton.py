@@ -77,7 +77,7 @@ def minimum(
     start: Array | None = None,
     accuracy: float = EXACT,
     guess: Array | None = None,
-    most: int = MAXIMUM_ITERATIONS,
+    most: int | None = None,
 ) -> Minimum:
     """Return the minimiser of a side's functional.
 
@@ -94,7 +94,7 @@ def minimum(
         Unknowns to start from, instead of a field.
     accuracy : float
         Largest squared Newton decrement over the stored energy before the last full step.
-    most : int
+    most : int, optional
         Largest number of iterations.
 
     Raises
@@ -117,7 +117,7 @@ def minimum(
         done = length == 1.0 and history[-1] < accuracy
         if done or (guess is None and np.array_equal(secant, tangent)):
             return Minimum(side, current, x, field, secant, tangent, tuple(history))
-        if len(history) == most:
+        if len(history) == (most or MAXIMUM_ITERATIONS):
             raise NewtonError(f"Newton's method did not converge on the {side.name}", history)
         gradient = side.gradient(field, secant, current)
         toward = _toward(field, secant, flow) if side.flattens else None

@@ -25,7 +25,7 @@ QUANTITIES = {
 """Names of columns, in any case: field strength, flux density, and polarisation B - mu0 H."""
 UNITS = {"H": "A/m", "B": "T", "J": "T"}
 _NAMES = {name: quantity for quantity, names in QUANTITIES.items() for name in names}
-_COLUMN = re.compile(
+COLUMN_HEADER = re.compile(
     r"\s*(?P<name>[^\[(/]*?)\s*"
     r"(?:/?\s*\[(?P<a>.*)\]|/?\s*\((?P<b>.*)\)|/\s*(?P<c>.+)|\bin\s+(?P<d>.+))?\s*"
 )
@@ -44,7 +44,9 @@ class CsvPoints:
 
 
 @dataclass(frozen=True)
-class _Column:
+class Column:
+    """A column of numbers: its place, what it holds, and the factor to SI."""
+
     index: int
     quantity: str
     factor: float
@@ -72,11 +74,11 @@ def csv_points(text: str) -> CsvPoints:
             "one column", key="header", value=rows[0][1].strip(),
             accepted=f"{HEADER}, with comma, semicolon or tab between",
         )  # fmt: skip
-    header, *cells = [_cells(line, separator, i) for i, line in rows]
+    header, *cells = [cells_of(line, separator, i) for i, line in rows]
     columns, notes = _columns(header)
     table = np.array(
         [
-            [_number(row, column, len(header), separator, i) for column in columns]
+            [number_in(row, column, len(header), separator, i) for column in columns]
             for (i, _), row in zip(rows[1:], cells, strict=True)
         ]
     ).reshape(-1, 2)
@@ -87,7 +89,8 @@ def csv_points(text: str) -> CsvPoints:
     return CsvPoints(h, b, notes, _stated(comments))
 
 
-def _cells(line: str, separator: str, number: int) -> list[str]:
+def cells_of(line: str, separator: str, number: int) -> list[str]:
+    """Return the cells of a line; `number` is the line's, for messages."""
     try:
         return next(csv.reader([line], delimiter=separator))
     except csv.Error as error:
@@ -103,7 +106,7 @@ def _stated(comments: Sequence[str]) -> dict[str, str]:
     return {key: found[key] for key in ("name", "source") if found.get(key)}
 
 
-def _columns(header: Sequence[str]) -> tuple[tuple[_Column, _Column], tuple[str, ...]]:
+def _columns(header: Sequence[str]) -> tuple[tuple[Column, Column], tuple[str, ...]]:
     """Return the columns of H and of B or J, and what is said about others."""
     if all(_NUMBER.fullmatch(cell.strip().replace(",", ".")) for cell in header if cell.strip()):
         raise InputError(
@@ -123,9 +126,9 @@ def _columns(header: Sequence[str]) -> tuple[tuple[_Column, _Column], tuple[str,
     return (strength[0], density[0]), notes
 
 
-def _column(index: int, cell: str) -> _Column | None:
+def _column(index: int, cell: str) -> Column | None:
     """Return what a header cell names, None if it is none of H, B and J."""
-    match = _COLUMN.fullmatch(cell)
+    match = COLUMN_HEADER.fullmatch(cell)
     name = " ".join((match["name"] if match else cell).replace("_", " ").split())
     quantity = _NAMES.get(name.casefold().strip("\"' "))
     if match is None or quantity is None:
@@ -134,12 +137,13 @@ def _column(index: int, cell: str) -> _Column | None:
     if not unit:
         raise InputError("the unit is missing", key="header", value=cell.strip(), accepted=HEADER)
     try:
-        return _Column(index, quantity, si_value(f"1 {unit}", UNITS[quantity]))
+        return Column(index, quantity, si_value(f"1 {unit}", UNITS[quantity]))
     except InputError as error:
         raise error.changed(key="header", value=cell.strip()) from error
 
 
-def _number(row: Sequence[str], column: _Column, width: int, separator: str, line: int) -> float:
+def number_in(row: Sequence[str], column: Column, width: int, separator: str, line: int) -> float:
+    """Return the number that a row has in a column, as it stands there; `line` is for messages."""
     key = f"line {line}"
     if len(row) != width:
         comma = " (decimal commas need semicolons or tabs between)" if separator == "," else ""

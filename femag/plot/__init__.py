@@ -1,15 +1,28 @@
 """Figures: each function takes an Axes, draws on it and returns it."""
 
 from femag.plot.core_drawing import core_drawing
-from femag.plot.figure_file import write_figure
+from femag.plot.curve_figures import (
+    core_flux_figure,
+    inductance_figure,
+    linkage_figure,
+    material_figure,
+    shearing_panels,
+)
+from femag.plot.figure_file import write_figure, write_panels
 from femag.plot.flux_map import flux_map, gap_map
 from femag.plot.loop_figure import loop_figure, waveform_figure
 
 __all__ = [
     "core_drawing",
+    "core_flux_figure",
     "flux_map",
     "gap_map",
+    "inductance_figure",
+    "linkage_figure",
     "loop_figure",
+    "material_figure",
+    "shearing_panels",
     "waveform_figure",
     "write_figure",
+    "write_panels",
 ]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import warnings
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from pathlib import Path
 
 from matplotlib.axes import Axes
@@ -15,6 +15,9 @@ from femag.export.whole_file import whole_file
 
 RESOLUTION = 150
 """Dots per inch."""
+PANEL = (6.4, 6.4)
+SMALL_PANEL = (4.8, 4.8)
+"""Width and height of an Axes with its labels, inch: alone, and beside others."""
 
 
 def write_figure(draw: Callable[[Axes], Axes], path: str | Path) -> None:
@@ -32,13 +35,38 @@ def write_figure(draw: Callable[[Axes], Axes], path: str | Path) -> None:
     InputError
         If the file cannot be written, or its ending names no format.
     """
-    figure = Figure(figsize=(6.4, 6.4), layout="constrained")
+    write_panels((draw,), path, PANEL)
+
+
+def write_panels(
+    draws: Sequence[Callable[[Axes], Axes]],
+    path: str | Path,
+    panel: tuple[float, float] = SMALL_PANEL,
+) -> None:
+    """Draw on Axes side by side of a new figure and write it; the file is complete or not there.
+
+    Parameters
+    ----------
+    draws : sequence of callable
+        Each draws on the Axes that it is given.
+    path : path
+        File with the ending of a format, such as ``.png`` or ``.svg``.
+    panel : tuple of float
+        Width and height of each, inch.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be written, or its ending names no format.
+    """
+    figure = Figure(figsize=(panel[0] * len(draws), panel[1]), layout="constrained")
     known = FigureCanvasAgg(figure).get_supported_filetypes()
     if Path(path).suffix.removeprefix(".").lower() not in known:
         raise InputError(
             "no format of a figure", file=str(path), accepted="an ending such as .png or .svg"
         )
-    draw(figure.add_subplot())
+    for draw, ax in zip(draws, figure.subplots(1, len(draws), squeeze=False)[0], strict=True):
+        draw(ax)
     with whole_file(path) as temporary, warnings.catch_warnings():
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         figure.savefig(temporary, dpi=RESOLUTION)

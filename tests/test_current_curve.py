@@ -5,9 +5,9 @@ import numpy as np
 import pytest
 
 import femag as fm
+from femag.current_curve import InductanceCurve, inductance_curve
 from femag.field.continuation import CommonMesh, relative_half_width, solutions_in_a_row
 from femag.field.design_problem import field_problem
-from femag.inductance_curve import InductanceCurve, inductance_curve
 from validation.finite_post import run as finite_post
 from validation.nonlinear_pot import run as nonlinear_pot
 from validation.rows import table_of
@@ -175,8 +175,17 @@ def test_silicon_steel_without_a_gap_converges(saturating: fm.Design) -> None:
 
 
 @pytest.mark.parametrize(
-    "currents", [[1.0], [1.0, 1.0], [0.0, 1.0], [-1.0, 1.0], [1.0, 1e10], [1.0, float("nan")]]
-)
+    "currents",
+    [
+        [1.0],
+        [1.0, 1.0],
+        [0.0, 1.0],
+        [-1.0, 1.0],
+        [0.0, 0.0, 1.0, 2.0],
+        [1.0, 1e10],
+        [1.0, float("nan")],
+    ],
+)  # fmt: skip
 def test_bad_currents_get_one_line(saturating: fm.Design, currents: list[float]) -> None:
     with pytest.raises(fm.InputError, match=r"currents = .*: .*; accepted: two currents or more"):
         inductance_curve(saturating, currents)
@@ -185,3 +194,15 @@ def test_bad_currents_get_one_line(saturating: fm.Design, currents: list[float])
 def test_a_tolerance_out_of_reach_is_said(saturating: fm.Design) -> None:
     with pytest.raises(fm.InputError, match=r"drops = 1.5"):
         inductance_curve(saturating, [1.0, 2.0], 5e-3, drops=[1.5])
+
+
+def test_a_curve_may_begin_without_current(curve: InductanceCurve, saturating: fm.Design) -> None:
+    found = inductance_curve(saturating, [0.0, *CURRENTS])
+    rest = found.points[0]
+    assert (rest.current, rest.flux_linkage, rest.coenergy.value) == (0.0, 0.0, 0.0)
+    assert rest.apparent_inductance == rest.incremental_inductance
+    assert rest.incremental_inductance == pytest.approx(curve.initial_inductance, rel=1e-9)
+    magnet = replace(saturating, gaps=fm.Gap(0.5e-3, magnet=fm.Magnet(0.1)))
+    rest = inductance_curve(magnet, [0.0, 1.0, 2.0], 1e-2).points[0]
+    assert rest.flux_linkage == rest.magnet_flux_linkage > 0.0
+    assert rest.coenergy.upper < 0.0

@@ -82,7 +82,9 @@ class CurvePoint:
 
     @property
     def apparent_inductance(self) -> float:
-        """What the current adds to the flux linkage, over the current, H."""
+        """What the current adds to the flux linkage, over the current, H; its limit at 0 A."""
+        if self.current == 0.0:
+            return self.incremental_inductance
         return (self.flux_linkage - self.magnet_flux_linkage) / self.current
 
 
@@ -156,7 +158,7 @@ def inductance_curve(
     design : Design
         What to solve; its own current plays no part.
     currents : sequence of float
-        A, all above 0 or all below, at least two, in any order.
+        A, in any order: two or more of one sign, and 0 if wanted.
     tolerance : float, optional
         Wanted half width of each co-energy's bounds over what the current adds to it; the
         design's own when left out.
@@ -178,12 +180,14 @@ def inductance_curve(
     asked = _checked_currents(currents)
     if tolerance is not None:
         design = replace(design, tolerance=tolerance)
-    rising = sorted(asked, key=abs)
+    rising = sorted((current for current in asked if current != 0.0), key=abs)
     mesh = CommonMesh(field_problem(design), design.tolerance)
     mesh.probe(tuple(dict.fromkeys((rising[0], rising[len(rising) // 2], rising[-1]))))
     sides, points, states = _points(mesh, rising, progress)
     initial, saturation = _saturation(sides, states, _checked_drops(drops))
     by_current = {point.current: point for point in points}
+    if 0.0 in asked:
+        by_current[0.0] = _point_at_rest(sides, SMALL * rising[0])
     return InductanceCurve(
         design=design,
         points=tuple(by_current[current] for current in asked),
@@ -238,6 +242,19 @@ def _point(solution: FieldSolution, state: State, coenergy: Bounds) -> CurvePoin
     )
 
 
+def _point_at_rest(sides: Sides, small: float) -> CurvePoint:
+    """Return the point without current; its incremental inductance is that at a small one (A)."""
+    idle = idle_solution(sides)
+    _, state = solution_near(sides, small, idle=idle)
+    incremental = state.incremental_inductance_of_sides
+    if idle is None:
+        return CurvePoint(0.0, Bounds(0.0, 0.0, "J"), (0.0, 0.0), incremental)
+    fine = _fine_sides(sides)
+    coenergy = idle.coenergy if fine is None else coenergy_on(fine, idle)
+    linkages = idle.flux_linkage_of_sides
+    return CurvePoint(0.0, coenergy, linkages, incremental, float(np.mean(linkages)))
+
+
 def _saturation(
     sides: Sides, states: Sequence[State], drops: Sequence[float]
 ) -> tuple[float, tuple[Saturation, ...]]:
@@ -282,12 +299,13 @@ def _root(
 
 
 def _checked_currents(currents: Sequence[float]) -> list[float]:
-    accepted = f"two currents or more of one sign, {CURRENTS[0]:g} A to {CURRENTS[1]:g} A"
-    found = [number(current, "currents", accepted) for current in currents]
-    values = np.abs(found)
-    one_sign = len({current > 0.0 for current in found}) == 1
-    inside = np.all((values >= CURRENTS[0]) & (values <= CURRENTS[1]))
-    if not (2 <= len(set(found)) == len(found) <= MOST_POINTS and one_sign and inside):
+    accepted = f"two currents or more of one sign, {CURRENTS[0]:g} A to {CURRENTS[1]:g} A; also 0 A"
+    found = [number(current, "currents", accepted) + 0.0 for current in currents]
+    driven = np.array([current for current in found if current != 0.0])
+    one_sign = bool(np.all(driven > 0.0) or np.all(driven < 0.0))
+    inside = np.all((np.abs(driven) >= CURRENTS[0]) & (np.abs(driven) <= CURRENTS[1]))
+    differ = len(set(found)) == len(found) <= MOST_POINTS
+    if not (len(driven) >= 2 and differ and one_sign and inside):
         raise InputError("not usable", key="currents", value=currents, accepted=accepted)
     return found
 

@@ -1,0 +1,108 @@
+"""Around the work of a command: targets checked before it, progress shown during it."""
+
+from __future__ import annotations
+
+import sys
+import time
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any
+
+from femag.errors import InputError
+
+PATIENCE = 1.0
+"""Seconds of silence before progress shows on a terminal."""
+
+
+def check_targets(json: str | None, out: Path | None) -> None:
+    """Refuse before the work what cannot be written after it.
+
+    Parameters
+    ----------
+    json : str or None
+        Of ``--json``: a file, or - for standard output.
+    out : Path or None
+        Of ``--out``: a folder, there or not.
+
+    Raises
+    ------
+    InputError
+        If either cannot be written.
+    """
+    if json is not None and json != "-":
+        folder = Path(json).parent
+        if not json or Path(json).is_dir() or not folder.is_dir():
+            raise InputError(
+                "cannot be written", key="--json", value=json,
+                accepted="a file in a folder that exists, or -",
+            )  # fmt: skip
+    if out is not None and out.exists() and not out.is_dir():
+        raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
+
+
+def check_spares(source: Path, what: str, option: str, target: str | Path | None) -> None:
+    """Refuse to write over what is read.
+
+    Parameters
+    ----------
+    source : Path
+        File that is read.
+    what : str
+        What it is, such as "the design".
+    option : str
+        Option that names the target.
+    target : str, Path or None
+        File to write.
+
+    Raises
+    ------
+    InputError
+        If both are one file.
+    """
+    if target and Path(target).exists() and source.exists() and Path(target).samefile(source):
+        raise InputError(
+            f"is {what} itself", key=option, value=str(target), accepted="another file, or -"
+        )
+
+
+def make_folder(out: Path) -> None:
+    """Make the folder of ``--out`` with all above it.
+
+    Raises
+    ------
+    InputError
+        If it cannot be made.
+    """
+    try:
+        out.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise InputError(
+            f"cannot be made a folder ({error.strerror})", key="--out", value=str(out)
+        ) from error
+
+
+@contextmanager
+def shown_progress(said: Callable[..., str]) -> Iterator[Callable[..., Any] | None]:
+    """Give a callback that shows what it says on a terminal when it takes long; None if piped.
+
+    Parameters
+    ----------
+    said : callable
+        Text of a state of the work, from what the callback is called with.
+    """
+    if sys.stderr is None or not sys.stderr.isatty():
+        yield None
+        return
+    from rich.console import Console
+
+    started = time.monotonic()
+    with Console(stderr=True).status("") as status:
+        status.stop()
+
+        def show(*state: Any) -> None:
+            if time.monotonic() - started > PATIENCE:
+                status.update(said(*state))
+                status.start()
+
+        yield show

@@ -1,0 +1,255 @@
+"""The gap that gives a wanted inductance at a current, in the field."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+
+from femag.design import Design, design_hash
+from femag.errors import InputError, NumericalError, number
+from femag.field.adapt import adapted_solution, inductance_bounds
+from femag.field.bounds import Bounds
+from femag.field.design_problem import field_problem
+from femag.geometry import Gap
+from femag.hand import FORMULAS, hand_estimates
+from femag.mesh import THINNEST
+from femag.quantities.sensitivity import coenergy_derivative
+from femag.result import library_versions
+
+MOST_SOLUTIONS = 12
+SHARE = 0.5
+"""Share of the tolerance that the middle of the bounds may be off; the bounds have the rest."""
+STEP = 1e-4
+"""Change of the gap for its derivative, over the gap."""
+
+
+@dataclass(frozen=True)
+class HandGap:
+    """The gap that one hand formula asks for.
+
+    Parameters
+    ----------
+    name : str
+        Name of the formula.
+    gap : float or None
+        m; None where the formula reaches the target with no gap.
+    """
+
+    name: str
+    gap: float | None
+
+
+@dataclass(frozen=True)
+class TargetGap:
+    """A gap that meets a target, and what it rests on.
+
+    Parameters
+    ----------
+    design : Design
+        The design with that gap, at the target's current.
+    target : float
+        Wanted energy inductance, H.
+    gap : float
+        Total length, m.
+    inductance : Bounds
+        Energy inductance 2 W'/I^2 of the design, H.
+    slope : float
+        Its derivative by the gap, H/m, from the derivative of the energies.
+    solutions : int
+        Field solutions that the search took.
+    hand : tuple of HandGap
+        What every hand formula asks for.
+    seconds : float
+        Wall time.
+    versions : dict of str to str
+        Versions of this package, Python and the libraries behind the numbers.
+    design_hash : str
+        Digest of everything in the design that can move a result.
+    """
+
+    design: Design
+    target: float
+    gap: float
+    inductance: Bounds
+    slope: float
+    solutions: int
+    hand: tuple[HandGap, ...]
+    seconds: float
+    versions: dict[str, str] = field(repr=False)
+    design_hash: str
+
+
+def gap_for(
+    design: Design,
+    inductance: float,
+    current: float | None = None,
+    tolerance: float | None = None,
+) -> TargetGap:
+    """Return the gap at which the energy inductance 2 W'/I^2 has a value.
+
+    The design's first gap is changed, its kind, pieces and filling kept; a design without a gap
+    gets one in the post. Newton's method on the reluctance 1/L, which hardly bends with the gap,
+    held between gaps that are known to be too short and too long; more gap is always less
+    inductance.
+
+    Parameters
+    ----------
+    design : Design
+        What to change.
+    inductance : float
+        Wanted, H.
+    current : float, optional
+        A; the design's own when left out.
+    tolerance : float, optional
+        Largest distance of the bounds from the target over the target; the design's when left out.
+
+    Raises
+    ------
+    InputError
+        If the target cannot be reached: it says what the core gives without and with most gap.
+    NumericalError
+        If a field cannot be solved.
+    """
+    started = time.perf_counter()
+    accepted = "an inductance above 0, such as '250 uH'"
+    if not 0.0 < number(inductance, "inductance", accepted) < np.inf:
+        raise InputError("not usable", key="inductance", value=inductance, accepted=accepted)
+    design = replace(
+        design,
+        current=design.current if current is None else current,
+        tolerance=design.tolerance if tolerance is None else tolerance,
+        gaps=design.gaps or (Gap(1e-3 * design.core.window_height),),
+    )
+    if any(gap.magnet is not None for gap in design.gaps):
+        raise InputError("a magnet in the gap", key="gap.magnet", accepted="a gap without a magnet")
+    hand = _hand_gaps(design, inductance)
+    search = _Search(design, inductance, hand)
+    found, bounds, slope = search.run()
+    return TargetGap(
+        design=found,
+        target=inductance,
+        gap=found.gaps[0].length,
+        inductance=bounds,
+        slope=slope,
+        solutions=search.solutions,
+        hand=hand,
+        seconds=time.perf_counter() - started,
+        versions=library_versions(),
+        design_hash=design_hash(found),
+    )
+
+
+def with_gap(design: Design, length: float) -> Design:
+    """Return a design whose first gap has another total length in m."""
+    return replace(design, gaps=(replace(design.gaps[0], length=length), *design.gaps[1:]))
+
+
+class _Search:
+    """Newton's method on 1/L between a gap that is too short and one that is too long."""
+
+    def __init__(self, design: Design, target: float, hand: Sequence[HandGap]) -> None:
+        self.design, self.target, self.hand = design, target, hand
+        self.solutions = 0
+        self.short, self.long = _shortest_gap(design), _longest_gap(design)
+
+    def run(self) -> tuple[Design, Bounds, float]:
+        """Return design, bounds and slope of the inductance (H/m) at the gap that is found."""
+        gap = self._first_gap()
+        low, high = self.short, self.long
+        while self.solutions < MOST_SOLUTIONS:
+            design = with_gap(self.design, gap)
+            bounds, slope = self._solved(design)
+            if self._is_met(bounds):
+                return design, bounds, slope
+            if bounds.value > self.target:
+                low = gap
+            else:
+                high = gap
+            if high <= self.short * (1.0 + 1e-9):
+                raise self._out_of_reach(bounds)
+            change = (1.0 / bounds.value - 1.0 / self.target) * bounds.value**2 / slope
+            gap = self._inside(gap + change, low, high)
+        raise NumericalError(f"no gap found in {self.solutions} solutions; last {gap * 1e3:g} mm")
+
+    def _is_met(self, bounds: Bounds) -> bool:
+        """Whether both bounds, or at first their middle, are near enough to the target."""
+        return abs(bounds.value / self.target - 1.0) <= SHARE * self.design.tolerance
+
+    def _inside(self, gap: float, low: float, high: float) -> float:
+        """Return a gap in the bracket; one at its end is tried once, then halves are taken."""
+        if low < gap < high:
+            return gap
+        if gap <= low:
+            return low if low == self.short else float(np.sqrt(low * high))
+        if high == self.long:
+            raise self._out_of_reach(None)
+        return float(np.sqrt(low * high))
+
+    def _solved(self, design: Design) -> tuple[Bounds, float]:
+        """Return bounds of the inductance and its derivative by the gap, H/m."""
+        tolerance = (1.0 - SHARE) * design.tolerance
+        solution, _ = adapted_solution(field_problem(design), design.current, tolerance)
+        self.solutions += 1
+        step = STEP * design.gaps[0].length
+        sides = coenergy_derivative(solution, design, _longer, step)
+        return inductance_bounds(solution), float(np.mean(sides)) * 2.0 / design.current**2
+
+    def _first_gap(self) -> float:
+        """Return the middle of what the hand formulas ask for, at least the shortest gap."""
+        asked = [entry.gap for entry in self.hand if entry.gap]
+        return min(max(float(np.median(asked)) if asked else 0.0, self.short), self.long)
+
+    def _out_of_reach(self, bounds: Bounds | None) -> InputError:
+        ungapped, _ = adapted_solution(
+            field_problem(replace(self.design, gaps=())), self.design.current, 1e-2
+        )
+        most = inductance_bounds(ungapped)
+        where = f"at {self.design.current:g} A"
+        if bounds is not None:
+            problem = "more than this core gives"
+            accepted = f"less than {most} {where}, without gap"
+        else:
+            problem = "less than this core gives with the longest gap"
+            accepted = f"a gap shorter than {self.long * 1e3:g} mm; fewer turns"
+        return InputError(problem, key="inductance", value=self.target, accepted=accepted)
+
+
+def _longer(design: Design, change: float) -> Design:
+    return with_gap(design, design.gaps[0].length + change)
+
+
+def _shortest_gap(design: Design) -> float:
+    """Return the shortest gap in m that can be meshed."""
+    turned = design.core.turned
+    extent = np.hypot(turned.ring_outer_radius, design.core.window_height)
+    return float(4.0 * THINNEST * extent * design.gaps[0].pieces)
+
+
+def _longest_gap(design: Design) -> float:
+    """Return the longest gap in m that is looked at: most of the post, or half the window."""
+    share = 0.95 if design.gaps[0].leg == "post" else 0.45
+    return share * design.core.window_height
+
+
+def _hand_gaps(design: Design, target: float) -> tuple[HandGap, ...]:
+    """Return the gap that each formula asks for, to a thousandth."""
+    short, long = _shortest_gap(design), _longest_gap(design)
+    lengths = np.geomspace(short, long, 60)
+    tables = np.array([_hand_inductances(with_gap(design, float(length))) for length in lengths])
+    gaps = []
+    for formula, column in zip(FORMULAS, tables.T, strict=True):
+        falling = np.minimum.accumulate(column)  # some formulas turn up again at long gaps
+        reached = falling[0] > target > falling[-1]
+        gap = float(np.exp(np.interp(-np.log(target), -np.log(falling), np.log(lengths))))
+        gaps.append(HandGap(formula.name, gap if reached else None))
+    return tuple(gaps)
+
+
+def _hand_inductances(design: Design) -> list[float]:
+    estimates = hand_estimates(
+        design.core, design.gaps, design.turns, design.current, design.material
+    )
+    return [estimate.inductance for estimate in estimates]
