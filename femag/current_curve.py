@@ -8,6 +8,7 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.interpolate import pchip_interpolate
 
 from femag.design import CURRENTS, Design, design_hash
 from femag.errors import InputError, number
@@ -38,6 +39,8 @@ DROPS = (0.1, 0.2, 0.3)
 ROOT_ACCURACY = 1e-4
 """How near to a drop the incremental inductance is brought, over its initial value."""
 ROOT_STEPS = 20
+TRIALS = 2001
+"""Places in a bracket at which the interpolant is looked at."""
 MOST_POINTS = 10_000
 SMALL = 1e-6
 """Current for the initial inductance over the smallest on the curve."""
@@ -182,7 +185,7 @@ def inductance_curve(
         design = replace(design, tolerance=tolerance)
     rising = sorted((current for current in asked if current != 0.0), key=abs)
     mesh = CommonMesh(field_problem(design), design.tolerance)
-    mesh.probe(tuple(dict.fromkeys((rising[0], rising[len(rising) // 2], rising[-1]))))
+    mesh.probe((rising[0], rising[-1]))
     sides, points, states = _points(mesh, rising, progress)
     initial, saturation = _saturation(sides, states, _checked_drops(drops))
     by_current = {point.current: point for point in points}
@@ -280,8 +283,8 @@ def _root(
 ) -> float | None:
     """Return the first current in A at which the incremental inductance falls to `wanted` (H).
 
-    Secants between the two states on either side, each pulled half way to the far end when it
-    hardly shortens the bracket. Every state that is found joins the known ones.
+    Each trial is where a monotone interpolant through the known states falls to it, kept off the
+    ends of the bracket. Every state that is found joins the known ones.
     """
     for _ in range(ROOT_STEPS):
         high = next((k for k, s in enumerate(known) if s.incremental_inductance < wanted), 0)
@@ -292,10 +295,20 @@ def _root(
         best = min(range(2), key=lambda k: abs(excess[k]))
         if abs(excess[best]) <= ROOT_ACCURACY * initial:
             return ends[best].current
-        share = min(max(excess[0] / (excess[0] - excess[1]), 0.05), 0.95)
-        current = ends[0].current + share * (ends[1].current - ends[0].current)
+        current = _crossing(known, high, wanted)
         known.insert(high, solution_near(sides, current, ends, idle)[1])
     return known[high].current
+
+
+def _crossing(known: Sequence[State], high: int, wanted: float) -> float:
+    """Return where the states' interpolant falls to `wanted` (H) before the state `high`."""
+    near = known[max(high - 3, 0) : high + 3]
+    strengths = np.array([abs(state.current) for state in near])
+    inductances = np.array([state.incremental_inductance for state in near])
+    low, top = abs(known[high - 1].current), abs(known[high].current)
+    trials = np.linspace(low, top, TRIALS)[1:-1]
+    below = np.flatnonzero(pchip_interpolate(strengths, inductances, trials) < wanted)
+    return float(np.copysign(trials[below[0] if len(below) else -1], known[high].current))
 
 
 def _checked_currents(currents: Sequence[float]) -> list[float]:

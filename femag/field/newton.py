@@ -32,7 +32,7 @@ MAXIMUM_ITERATIONS = 100
 EXACT = 1e-11
 """Accuracy that leaves rounding only: the last step squares the decrement once more."""
 
-CLOSE = 1e-7
+CLOSE = 1e-6
 """Squared decrement below which the whole step is taken without a look at the slope after it."""
 
 
