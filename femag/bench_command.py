@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from femag.command_output import make_folder
 from femag.errors import InputError
 
 if TYPE_CHECKING:
@@ -235,7 +236,7 @@ def _write(
             return
         from femag.plot import loop_figure, waveform_figure, write_figure
 
-        _make_folder("--out", out)
+        make_folder(out, "--out")
         document, loop, waveforms = (
             stack.enter_context(whole_file(out / file)) for file in FOLDER_FILES
         )
@@ -243,15 +244,6 @@ def _write(
         largest = max(loops, key=lambda one: one.readings.peak_flux_density)
         write_figure(lambda ax: loop_figure(loops, ax, curve), loop)
         write_figure(lambda ax: waveform_figure(largest, ax), waveforms)
-
-
-def _make_folder(key: str, folder: Path) -> None:
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise InputError(
-            f"cannot be made a folder ({error.strerror})", key=key, value=str(folder)
-        ) from error
 
 
 def _demo(folder: Path, captures: Sequence[Path]) -> None:
@@ -265,7 +257,7 @@ def _demo(folder: Path, captures: Sequence[Path]) -> None:
             "stands beside captures of your own", key="--demo", value=str(folder),
             accepted="one of the two",
         )  # fmt: skip
-    _make_folder("--demo", folder)
+    make_folder(folder, "--demo")
     texts = {folder / name: text for name, text in demo_files().items()}
     for file, text in texts.items():
         if file.exists() and file.read_text(encoding="utf-8", errors="replace") != text:

@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from femag.bench_command import bench_command
-from femag.command_output import check_targets, make_folder, shown_progress
+from femag.command_output import check_targets, make_folder, quantity, shown_progress
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
@@ -166,12 +166,7 @@ def materials_command() -> None:
 def _with_current(design: Design, current: str | None) -> Design:
     if current is None:
         return design
-    from femag.units import si_value
-
-    try:
-        return replace(design, current=si_value(current, "A"))
-    except InputError as error:
-        raise error.changed(key="--current", value=current) from error
+    return replace(design, current=quantity("--current", current, "A"))
 
 
 def _answer(design: Design, json: str | None, out: Path | None) -> None:

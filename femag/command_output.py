@@ -1,4 +1,4 @@
-"""Around the work of a command: targets checked before it, progress shown during it."""
+"""Around the work of a command: options and targets checked before, progress shown during it."""
 
 from __future__ import annotations
 
@@ -41,6 +41,31 @@ def check_targets(json: str | None, out: Path | None) -> None:
         raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
 
 
+def quantity(option: str, text: str, unit: str) -> float:
+    """Return the value in SI of an option's text.
+
+    Parameters
+    ----------
+    option : str
+        Its name, for messages.
+    text : str
+        Such as "250 uH".
+    unit : str
+        SI unit that it must have.
+
+    Raises
+    ------
+    InputError
+        If it does not read.
+    """
+    from femag.units import si_value
+
+    try:
+        return si_value(text, unit)
+    except InputError as error:
+        raise error.changed(key=option, value=text) from error
+
+
 def check_spares(source: Path, what: str, option: str, target: str | Path | None) -> None:
     """Refuse to write over what is read.
 
@@ -66,8 +91,8 @@ def check_spares(source: Path, what: str, option: str, target: str | Path | None
         )
 
 
-def make_folder(out: Path) -> None:
-    """Make the folder of ``--out`` with all above it.
+def make_folder(out: Path, option: str = "--out") -> None:
+    """Make the folder that an option names, with all above it.
 
     Raises
     ------
@@ -78,7 +103,7 @@ def make_folder(out: Path) -> None:
         out.mkdir(parents=True, exist_ok=True)
     except OSError as error:
         raise InputError(
-            f"cannot be made a folder ({error.strerror})", key="--out", value=str(out)
+            f"cannot be made a folder ({error.strerror})", key=option, value=str(out)
         ) from error
 
 

@@ -8,7 +8,7 @@ from typing import Annotated
 
 import typer
 
-from femag.errors import InputError
+from femag.command_output import check_spares, check_targets, quantity
 
 DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design file.")]
 InductanceOption = Annotated[str, typer.Option(help="Wanted, such as '250 uH'.")]
@@ -45,13 +45,12 @@ def gap_command(
     from femag.gap_answer import print_gap
     from femag.target_gap import gap_for
 
+    check_targets(json, None)
     for option, file in (("--json", json), ("--write", write)):
-        if file is not None and Path(file).exists() and Path(file).samefile(design):
-            accepted = "another file"
-            raise InputError("is the design itself", key=option, value=str(file), accepted=accepted)
-    wanted = _read("--inductance", inductance, "H")
-    assert wanted is not None
-    found = gap_for(read_design(design), wanted, _read("--at", at, "A"))
+        check_spares(design, "the design", option, file)
+    wanted = quantity("--inductance", inductance, "H")
+    current = None if at is None else quantity("--at", at, "A")
+    found = gap_for(read_design(design), wanted, current)
     with ExitStack() as stack:
         if json is not None and json != "-":
             stack.enter_context(whole_file(json)).write_text(gap_json(found), encoding="utf-8")
@@ -64,14 +63,3 @@ def gap_command(
     print_gap(found, Console(width=WIDTH))
     if write is not None:
         typer.echo(f"\nWritten to {write}")
-
-
-def _read(key: str, text: str | None, unit: str) -> float | None:
-    from femag.units import si_value
-
-    if text is None:
-        return None
-    try:
-        return si_value(text, unit)
-    except InputError as error:
-        raise error.changed(key=key, value=text) from error

@@ -6,12 +6,10 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Literal
 
-from pydantic import BaseModel, ConfigDict, ValidationError
-
 from femag.current_curve import CurvePoint, InductanceCurve, Saturation
-from femag.design import design_hash
 from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
+from femag.export.document import Entry, check_against_design, document_of_file
 from femag.export.result_file import BoundsEntry
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
@@ -41,11 +39,7 @@ class MeasuredBeside:
     fit: Fit | None = None
 
 
-class _Entry(BaseModel):
-    model_config = ConfigDict(frozen=True, allow_inf_nan=False, extra="forbid")
-
-
-class PointEntry(_Entry):
+class PointEntry(Entry):
     """The field at one current: A, Wb, H, J. Only the co-energy is bounded."""
 
     current: float
@@ -59,14 +53,14 @@ class PointEntry(_Entry):
     iterations: tuple[int, int]
 
 
-class SaturationEntry(_Entry):
+class SaturationEntry(Entry):
     """Current in A at which the incremental inductance has dropped by a share; null if beyond."""
 
     drop: float
     current: float | None
 
 
-class MeasuredPointEntry(_Entry):
+class MeasuredPointEntry(Entry):
     """A measured point: A, H; residual: solved over measured less 1."""
 
     current: float
@@ -74,7 +68,7 @@ class MeasuredPointEntry(_Entry):
     residual: float
 
 
-class FitEntry(_Entry):
+class FitEntry(Entry):
     """What was fitted to the points: gap in m, with standard errors of the fit only."""
 
     gap: float | None
@@ -87,7 +81,7 @@ class FitEntry(_Entry):
     note: str
 
 
-class MeasuredEntry(_Entry):
+class MeasuredEntry(Entry):
     """Measured points beside the curve."""
 
     kind: Literal["apparent", "incremental"]
@@ -97,7 +91,7 @@ class MeasuredEntry(_Entry):
     fit: FitEntry | None
 
 
-class CurveDocument(_Entry):
+class CurveDocument(Entry):
     """Everything in a curve, SI."""
 
     format: Literal["gapfield curve 1"]
@@ -144,18 +138,7 @@ def read_curve(path: str | Path) -> InductanceCurve:
         If the file cannot be read, is no curve of this program, or holds numbers that do not
         belong together.
     """
-    try:
-        document = CurveDocument.model_validate_json(Path(path).read_bytes())
-    except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
-    except ValidationError as error:
-        first = error.errors(include_url=False)[0]
-        raise InputError(
-            f"no curve of this program ({first['msg']})",
-            key=".".join(map(str, first["loc"])) or None,
-            accepted="JSON as written by 'gapfield curve --json'",
-            file=str(path),
-        ) from error
+    document = document_of_file(path, CurveDocument, "curve", "gapfield curve")
     curve = _curve(document, str(path))
     _check_against_design(document, curve, str(path))
     for place, (entry, point) in enumerate(zip(document.points, curve.points, strict=True)):
@@ -165,18 +148,7 @@ def read_curve(path: str | Path) -> InductanceCurve:
 
 def _check_against_design(document: CurveDocument, curve: InductanceCurve, file: str) -> None:
     """Refuse a file whose numbers were not all written together."""
-    for key, value in (
-        ("design_hash", design_hash(curve.design)),
-        ("tolerance", curve.design.tolerance),
-    ):
-        if getattr(document, key) != value:
-            raise InputError(
-                "does not belong to the design beside it",
-                key=key,
-                value=getattr(document, key),
-                accepted=f"{value!r}",
-                file=file,
-            )
+    check_against_design(document, curve.design, ("tolerance",), file)
     if len({entry.current for entry in document.points}) != len(document.points) or (
         len(document.points) < 2
     ):

@@ -4,32 +4,20 @@ from __future__ import annotations
 
 from typing import Any, Literal
 
-from pydantic import BaseModel, ConfigDict
-
 from femag.design_file import design_document
+from femag.export.document import Entry
+from femag.export.result_file import BoundsEntry
 from femag.target_gap import TargetGap
 
 
-class _Entry(BaseModel):
-    model_config = ConfigDict(frozen=True, allow_inf_nan=False, extra="forbid")
-
-
-class InductanceEntry(_Entry):
-    """Energy inductance between bounds, H."""
-
-    lower: float
-    value: float
-    upper: float
-
-
-class HandGapEntry(_Entry):
+class HandGapEntry(Entry):
     """What a hand formula asks for, m; null where it asks for none."""
 
     name: str
     gap: float | None
 
 
-class GapDocument(_Entry):
+class GapDocument(Entry):
     """A gap and what it rests on, SI."""
 
     format: Literal["gapfield gap 1"]
@@ -37,7 +25,7 @@ class GapDocument(_Entry):
     current: float
     gap: float
     solutions: int
-    inductance: InductanceEntry
+    inductance: BoundsEntry
     slope: float
     hand: list[HandGapEntry]
     design: dict[str, Any]
@@ -55,7 +43,7 @@ def gap_json(found: TargetGap) -> str:
         current=found.design.current,
         gap=found.gap,
         solutions=found.solutions,
-        inductance=InductanceEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper),
+        inductance=BoundsEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper),
         slope=found.slope,
         hand=[HandGapEntry(name=entry.name, gap=entry.gap) for entry in found.hand],
         design=design_document(found.design),

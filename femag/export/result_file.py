@@ -5,11 +5,11 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any, Literal
 
-from pydantic import BaseModel, ConfigDict, ValidationError
+from pydantic import Field
 
-from femag.design import design_hash
 from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
+from femag.export.document import Entry, check_against_design, document_of_file
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
@@ -19,11 +19,7 @@ from femag.result import Comparison, Result
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
 
 
-class _Entry(BaseModel):
-    model_config = ConfigDict(frozen=True, allow_inf_nan=False, extra="forbid")
-
-
-class BoundsEntry(_Entry):
+class BoundsEntry(Entry):
     """A quantity between two bounds, SI."""
 
     lower: float
@@ -31,7 +27,7 @@ class BoundsEntry(_Entry):
     upper: float
 
 
-class HandEntry(_Entry):
+class HandEntry(Entry):
     """A hand formula beside the field: H, error as a share, validity and source."""
 
     name: str
@@ -42,7 +38,7 @@ class HandEntry(_Entry):
     source: str
 
 
-class SectionMeanEntry(_Entry):
+class SectionMeanEntry(Entry):
     """Mean flux density (T) through one cut (area in m2)."""
 
     name: str
@@ -50,14 +46,14 @@ class SectionMeanEntry(_Entry):
     flux_density: float
 
 
-class VolumeShareEntry(_Entry):
+class VolumeShareEntry(Entry):
     """Flux density (T) that a share of the core's volume stays below."""
 
     share: float
     flux_density: float
 
 
-class CopperEntry(_Entry):
+class CopperEntry(Entry):
     """Conductor of a winding: m, ohm, degrees Celsius."""
 
     name: str
@@ -72,7 +68,7 @@ class CopperEntry(_Entry):
     layers_in_sections: tuple[int, ...]
 
 
-class ResultDocument(_Entry):
+class ResultDocument(Entry):
     """Everything in a result but the fields, SI."""
 
     format: Literal["gapfield result 1"]
@@ -95,7 +91,7 @@ class ResultDocument(_Entry):
     gap_factor: float | None
     plain_inductance: float
     section_means: list[SectionMeanEntry]
-    volume_shares: list[VolumeShareEntry] = []
+    volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
     hand: list[HandEntry]
     model_note: str = ""
@@ -130,18 +126,7 @@ def read_result(path: str | Path) -> Result:
     InputError
         If the file cannot be read or is no result of this program.
     """
-    try:
-        document = ResultDocument.model_validate_json(Path(path).read_bytes())
-    except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
-    except ValidationError as error:
-        first = error.errors(include_url=False)[0]
-        raise InputError(
-            f"no result of this program ({first['msg']})",
-            key=".".join(map(str, first["loc"])) or None,
-            accepted="JSON as written by 'gapfield solve --json'",
-            file=str(path),
-        ) from error
+    document = document_of_file(path, ResultDocument, "result", "gapfield solve")
     result = _result(document, str(path))
     _check_against_design(document, result, str(path))
     return result
@@ -155,20 +140,7 @@ def _check_against_design(document: ResultDocument, result: Result, file: str) -
             raise InputError("bounds out of order", key=key, file=file)
     if document.plain_inductance <= 0.0:
         raise InputError("not positive", key="plain_inductance", file=file)
-    design = result.design
-    for key, value in (
-        ("design_hash", design_hash(design)),
-        ("current", design.current),
-        ("tolerance", design.tolerance),
-    ):
-        if getattr(document, key) != value:
-            raise InputError(
-                "does not belong to the design beside it",
-                key=key,
-                value=getattr(document, key),
-                accepted=f"{value!r}",
-                file=file,
-            )
+    check_against_design(document, result.design, ("current", "tolerance"), file)
 
 
 def _document(result: Result) -> ResultDocument:
