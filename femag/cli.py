@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from contextlib import ExitStack
 from dataclasses import replace
 from io import TextIOWrapper
@@ -94,7 +94,6 @@ def demo_command(
     from importlib.resources import files
 
     from femag.design_file import design_from_toml
-    from femag.export.whole_file import whole_file
 
     text = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
     file = out / "design.toml"
@@ -102,9 +101,7 @@ def demo_command(
         raise InputError(
             "holds a design of your own", file=str(file), accepted="another folder with --out"
         )
-    _answer(design_from_toml(text, "demo.toml"), None, out)
-    with whole_file(file) as temporary:
-        temporary.write_text(text, encoding="utf-8")
+    _answer(design_from_toml(text, "demo.toml"), None, out, {file: text})
     typer.echo(f"Change {file} and run: gapfield solve {file}")
 
 
@@ -169,14 +166,16 @@ def _with_current(design: Design, current: str | None) -> Design:
     return replace(design, current=quantity("--current", current, "A"))
 
 
-def _answer(design: Design, json: str | None, out: Path | None) -> None:
-    """Solve, then write files, then print."""
+def _answer(
+    design: Design, json: str | None, out: Path | None, texts: Mapping[Path, str] | None = None
+) -> None:
+    """Solve, then write files, with `texts` among them, then print."""
     from femag.result import solve
 
     check_targets(json, out)
     with shown_progress(_bracket) as progress:
         result = solve(design, progress=progress)
-    _write(result, json, out)
+    _write(result, json, out, texts or {})
     if json == "-":
         from femag.export.result_file import result_json
 
@@ -191,7 +190,7 @@ def _answer(design: Design, json: str | None, out: Path | None) -> None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
 
 
-def _write(result: Result, json: str | None, out: Path | None) -> None:
+def _write(result: Result, json: str | None, out: Path | None, texts: Mapping[Path, str]) -> None:
     """Write all files that were asked for; each is renamed only when all are written."""
     from femag.export.result_file import result_json
     from femag.export.whole_file import whole_file
@@ -209,6 +208,8 @@ def _write(result: Result, json: str | None, out: Path | None) -> None:
             stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
         )
         document.write_text(result_json(result), encoding="utf-8")
+        for file, text in texts.items():
+            stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
         write_figure(lambda ax: flux_map(result, ax), section)
         write_figure(lambda ax: gap_map(result, ax), gap)
 

@@ -329,3 +329,13 @@ def test_materials_are_listed_with_their_sources(capsys: pytest.CaptureFixture[s
         assert f"{material.name}: " in " ".join(printed.split())
         assert material.source.split()[0] in printed
     assert all(len(line) <= 80 for line in printed.splitlines())
+
+
+def test_a_closed_pipe_costs_the_demo_no_file(tmp_path: Path) -> None:
+    folder = tmp_path / "demo"
+    command = [sys.executable, "-m", "femag.cli", "demo", "--out", str(folder)]
+    with subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE) as process:
+        assert process.stdout is not None
+        process.stdout.close()
+        assert process.wait(60) in (0, -signal.SIGPIPE)
+    assert {file.name for file in folder.iterdir()} == {"design.toml", *cli.FOLDER_FILES}

@@ -7,7 +7,9 @@ import pytest
 import femag as fm
 from femag.current_curve import InductanceCurve, inductance_curve
 from femag.field.continuation import CommonMesh, relative_half_width, solutions_in_a_row
+from femag.field.core_factor import solved_core_factor
 from femag.field.design_problem import field_problem
+from femag.units import MU_0
 from validation.finite_post import run as finite_post
 from validation.nonlinear_pot import run as nonlinear_pot
 from validation.rows import table_of
@@ -206,3 +208,18 @@ def test_a_curve_may_begin_without_current(curve: InductanceCurve, saturating: f
     rest = inductance_curve(magnet, [0.0, 1.0, 2.0], 1e-2).points[0]
     assert rest.flux_linkage == rest.magnet_flux_linkage > 0.0
     assert rest.coenergy.upper < 0.0
+
+
+def test_without_a_gap_the_core_decides_and_with_a_long_one_the_air(saturating: fm.Design) -> None:
+    """Gapless: mu0 mu_i N^2/C1 up to leakage. Long gap: the core hardly matters, nor its knee."""
+    bare = replace(saturating, gaps=())
+    found = inductance_curve(bare, [1e-3, 1.0])
+    wanted = MU_0 * 2000 * 50**2 / solved_core_factor(bare.core.turned, bare.core.window_height)
+    assert found.initial_inductance == pytest.approx(wanted, rel=1e-2)
+    assert found.points[-1].incremental_inductance < 0.1 * found.initial_inductance
+    long = replace(saturating, gaps=fm.Gap(8e-3))
+    airy = inductance_curve(long, [1e-3, 1.0])
+    ideal = fm.solve(replace(long, material=fm.LinearCurve(1e5)), tolerance=2e-3)
+    assert airy.initial_inductance == pytest.approx(ideal.inductance.value, rel=2e-2)
+    drop = airy.points[-1].incremental_inductance / airy.initial_inductance
+    assert drop == pytest.approx(1.0, abs=2e-3)
