@@ -32,8 +32,6 @@ def core_curve(core: Core, material: MagnetisationCurve) -> MagnetisationCurve:
     if isinstance(core, PotCore):
         return material
     factor = solved_core_factor(core.turned, core.window_height) / core_factor(core)
-    if isinstance(material, LinearCurve):
-        return LinearCurve(material.permeability * factor)
     return ScaledCurve(material, factor)
 
 

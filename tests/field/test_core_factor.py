@@ -29,7 +29,7 @@ def test_core_factor_of_a_toroid_like_pot_is_the_sum_of_its_parts() -> None:
     """Wide thin shell: corners hardly count, each wall is l/A (IEC 60205, general rules)."""
     t, r, h = 0.1e-3, 10e-3, 8e-3
     turned = TurnedCore(r - t, r, r + 8e-3, r + 8e-3 + t, ((r - t, t), (r + 8e-3 + t, t)))
-    walls = h / turned.post_area + h / turned.ring_area
+    walls = h / (pi * (r**2 - (r - t) ** 2)) + h / turned.ring_area
     plates = 2 * log((r + 8e-3 + t / 2) / (r - t / 2)) / (2 * pi * t)
     assert solved_core_factor(turned, h) == pytest.approx(walls + plates, rel=0.01)
 
@@ -50,3 +50,10 @@ def test_saturation_keeps_its_flux_density() -> None:
         means.append(fm.solve(design).section_means[1].flux_density)
     assert means[1] == pytest.approx(means[0], rel=0.03)
     assert means[0] > 0.4
+
+
+def test_a_core_of_air_is_solved_although_the_factor_is_below_one() -> None:
+    """Relative permeability 1: the factor of a PQ core is about 0.8, which is no material."""
+    core = catalogue_core("PQ 26/20").core()
+    design = fm.Design(core, fm.Winding(10), fm.LinearCurve(1.0), tolerance=1e-2)
+    assert fm.solve(design).inductance.relative_half_width <= 1e-2
