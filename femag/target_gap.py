@@ -168,25 +168,23 @@ class _Search:
                 low = gap
             else:
                 high = gap
-            if high <= self.short * (1.0 + 1e-9):
+            if high <= self.short or low >= self.long:
                 raise self._out_of_reach(bounds)
             change = (1.0 / bounds.value - 1.0 / self.target) * bounds.value**2 / slope
             gap = self._inside(gap + change, low, high)
         raise NumericalError(f"no gap found in {self.solutions} solutions; last {gap * 1e3:g} mm")
 
     def _is_met(self, bounds: Bounds) -> bool:
-        """Whether both bounds, or at first their middle, are near enough to the target."""
+        """Whether the middle is so near that both bounds are within the tolerance."""
         return abs(bounds.value / self.target - 1.0) <= SHARE * self.design.tolerance
 
     def _inside(self, gap: float, low: float, high: float) -> float:
-        """Return a gap in the bracket; one at its end is tried once, then halves are taken."""
-        if low < gap < high:
-            return gap
+        """Return a gap in the bracket; its ends only where they have not been tried."""
         if gap <= low:
             return low if low == self.short else float(np.sqrt(low * high))
-        if high == self.long:
-            raise self._out_of_reach(None)
-        return float(np.sqrt(low * high))
+        if gap >= high:
+            return high if high == self.long else float(np.sqrt(low * high))
+        return gap
 
     def _solved(self, design: Design) -> tuple[Bounds, float]:
         """Return bounds of the inductance and its derivative by the gap, H/m."""
@@ -202,18 +200,17 @@ class _Search:
         asked = [entry.gap for entry in self.hand if entry.gap]
         return min(max(float(np.median(asked)) if asked else 0.0, self.short), self.long)
 
-    def _out_of_reach(self, bounds: Bounds | None) -> InputError:
-        ungapped, _ = adapted_solution(
-            field_problem(replace(self.design, gaps=())), self.design.current, 1e-2
-        )
-        most = inductance_bounds(ungapped)
-        where = f"at {self.design.current:g} A"
-        if bounds is not None:
-            problem = "more than this core gives"
-            accepted = f"less than {most} {where}, without gap"
-        else:
+    def _out_of_reach(self, bounds: Bounds) -> InputError:
+        """Return the error that says what can be had, from the bounds at the last gap."""
+        if bounds.value > self.target:
             problem = "less than this core gives with the longest gap"
             accepted = f"a gap shorter than {self.long * 1e3:g} mm; fewer turns"
+        else:
+            bare = replace(self.design, gaps=())
+            ungapped, _ = adapted_solution(field_problem(bare), bare.current, 1e-2)
+            most = inductance_bounds(ungapped)
+            problem = "more than this core gives"
+            accepted = f"less than {most} at {bare.current:g} A, without gap"
         return InputError(problem, key="inductance", value=self.target, accepted=accepted)
 
 
