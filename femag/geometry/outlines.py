@@ -85,12 +85,6 @@ def covered_share(plate: Polygon, radius: Array) -> Array:
     return np.asarray(shapely.contains_xy(plate, x, y).mean(axis=1))
 
 
-def outline_area(outline: Array) -> float:
-    """Return the area in m2 of an outline (n, 2)."""
-    x, y = outline.T
-    return float(abs(np.dot(x, np.roll(y, -1)) - np.dot(y, np.roll(x, -1))) / 2)
-
-
 def outline_perimeter(outline: Array) -> float:
     """Return the length in m of an outline (n, 2)."""
     return float(np.hypot(*(np.roll(outline, -1, axis=0) - outline).T).sum())

@@ -11,6 +11,8 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from femag.geometry.outlines import outline_perimeter
+
 Array = NDArray[np.float64]
 
 CORNER = np.radians(15.0)
@@ -43,7 +45,7 @@ def plane_permeance(post_radius: float, legs: Sequence[Array], panels: int = PAN
     Academic Press 1977, for the equations (cited from memory).
     """
     size = 2.0 * max(float(np.abs(leg).max()) for leg in legs)
-    longest = max(_lengths(leg).sum() for leg in legs) / size
+    longest = max(outline_perimeter(leg) for leg in legs) / size
     angle = 2.0 * np.pi * np.arange(panels) / panels
     post = post_radius / size * np.column_stack([np.cos(angle), np.sin(angle)])
     curves = [post, *(_panelled(leg / size, panels / longest) for leg in legs)]
@@ -79,10 +81,6 @@ def _corners(outline: Array) -> list[int]:
     )
     found = np.flatnonzero(np.abs(turn) > CORNER)
     return found.tolist() if len(found) else [0]
-
-
-def _lengths(outline: Array) -> Array:
-    return np.asarray(np.hypot(*(np.roll(outline, -1, axis=0) - outline).T))
 
 
 def _logarithms(points: Array, start: Array, end: Array) -> Array:

@@ -33,11 +33,11 @@ from femag.geometry.outlines import (
     covered_share,
     halving_radius,
     leg_outlines,
-    outline_area,
     outline_perimeter,
     plate_outline,
 )
 from femag.geometry.plane_permeance import plane_permeance
+from femag.geometry.section import polygon_area
 from femag.geometry.turned_core import TurnedCore
 
 if TYPE_CHECKING:
@@ -149,7 +149,7 @@ class RoundLegCore:
     @property
     def leg_area(self) -> float:
         """Section of all legs together, m2."""
-        return sum(outline_area(outline) for outline in self.leg_outlines)
+        return sum(polygon_area(outline) for outline in self.leg_outlines)
 
     @property
     def leg_perimeter(self) -> float:

@@ -129,8 +129,8 @@ def rectangle(r0: float, r1: float, z0: float, z1: float) -> Polygon:
     return ((r0, z0), (r1, z0), (r1, z1), (r0, z1))
 
 
-def polygon_area(polygon: Polygon) -> float:
-    """Return the area of a simple polygon in m2 (positive)."""
+def polygon_area(polygon: Polygon | Array) -> float:
+    """Return the area of a simple polygon, corners (n, 2) in m, in m2 (positive)."""
     r, z = np.asarray(polygon).T
     return float(abs(np.dot(r, np.roll(z, -1)) - np.dot(z, np.roll(r, -1))) / 2)
 

@@ -59,11 +59,6 @@ class TurnedCore:
         raise ValueError(f"no plate at {radius} m")
 
     @property
-    def post_area(self) -> float:
-        """Section of the post, m2."""
-        return math.pi * (self.post_radius**2 - self.hole_radius**2)
-
-    @property
     def ring_area(self) -> float:
         """Section of the ring, m2."""
         return math.pi * (self.ring_outer_radius**2 - self.ring_inner_radius**2)

@@ -16,7 +16,8 @@ from femag.geometry import (
     core_of_family,
     effective_parameters,
 )
-from femag.geometry.outlines import covered_share, outline_area
+from femag.geometry.outlines import covered_share
+from femag.geometry.section import polygon_area
 
 PQ: Mapping[str, Any] = {
     "post_diameter": 12e-3,
@@ -145,7 +146,7 @@ def test_covered_share_of_a_bar_has_its_closed_form(pq: RoundLegCore) -> None:
     assert covered_share(pq.plate, np.array([5e-3, radius])) == pytest.approx(
         [1.0, wanted], abs=1e-3
     )
-    assert outline_area(np.array([(0.0, 0.0), (2.0, 0.0), (2.0, 3.0)])) == 3.0
+    assert polygon_area(np.array([(0.0, 0.0), (2.0, 0.0), (2.0, 3.0)])) == 3.0
 
 
 @pytest.mark.parametrize(
