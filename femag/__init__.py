@@ -71,6 +71,7 @@ if TYPE_CHECKING:
     )
     from femag.result import Result, solve
     from femag.target_gap import gap_for
+    from femag.winding_matrix import WindingMatrix, winding_matrix
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -124,6 +125,8 @@ _HOME = {
     "gap_for": "femag.target_gap",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
+    "WindingMatrix": "femag.winding_matrix",
+    "winding_matrix": "femag.winding_matrix",
 }
 
 __all__ = [
@@ -155,6 +158,7 @@ __all__ = [
     "TabulatedCurve",
     "ToleranceError",
     "Winding",
+    "WindingMatrix",
     "catalogue",
     "catalogue_core",
     "design_toml",
@@ -177,6 +181,7 @@ __all__ = [
     "read_result",
     "residuals",
     "solve",
+    "winding_matrix",
     "write_curve",
     "write_result",
 ]

@@ -20,6 +20,8 @@ HAND_NOTE = (
     "G: window height."
 )
 
+OTHER_WINDINGS = "Inductance matrix, coupling and leakage of the windings: gapfield windings."
+
 
 def print_answer(result: Result, console: Console) -> None:
     """Print what the field says about a design, the hand formulas beside it, and cautions."""
@@ -29,6 +31,8 @@ def print_answer(result: Result, console: Console) -> None:
         lines.append(Text(design.title, style="bold"))
     lines += [described(design), "", _inductances(result), "", _flux_densities(result)]
     lines += [Text(_where_it_saturates(result)), ""]
+    if len(design.windings) > 1:
+        lines += [Text(OTHER_WINDINGS), ""]
     if result.copper:
         lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]

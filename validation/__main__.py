@@ -11,6 +11,7 @@ from validation.table import HEADER, LEGEND, row_line
 FOLDERS = (
     "uniform_field",
     "air_coils",
+    "coupled_coils",
     "sphere",
     "nonlinear_pot",
     "round_post_fringing",
