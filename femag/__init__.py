@@ -35,6 +35,7 @@ if TYPE_CHECKING:
     from femag.design_file import design_toml, read_design
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.curve_file import read_curve, write_curve
+    from femag.export.mesh_files import write_field, write_mesh
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
     from femag.field.bounds import Bounds
@@ -125,6 +126,8 @@ _HOME = {
     "gap_for": "femag.target_gap",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
+    "write_field": "femag.export.mesh_files",
+    "write_mesh": "femag.export.mesh_files",
     "WindingMatrix": "femag.winding_matrix",
     "winding_matrix": "femag.winding_matrix",
 }
@@ -183,6 +186,8 @@ __all__ = [
     "solve",
     "winding_matrix",
     "write_curve",
+    "write_field",
+    "write_mesh",
     "write_result",
 ]
 
