@@ -34,7 +34,9 @@ if TYPE_CHECKING:
     from femag.design import Design
     from femag.design_file import design_toml, read_design
     from femag.errors import GapfieldError, InputError, NumericalError
+    from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
+    from femag.export.curve_table import write_curve_table
     from femag.export.mesh_files import write_field, write_mesh
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
@@ -102,7 +104,9 @@ _HOME = {
     "InductanceCurve": "femag.current_curve",
     "inductance_curve": "femag.current_curve",
     "read_curve": "femag.export.curve_file",
+    "write_circuit": "femag.export.circuit_model",
     "write_curve": "femag.export.curve_file",
+    "write_curve_table": "femag.export.curve_table",
     "MeasuredPoints": "femag.measured_inductance",
     "fitted_design": "femag.measured_inductance",
     "measured_curve": "femag.measured_inductance",
@@ -185,7 +189,9 @@ __all__ = [
     "residuals",
     "solve",
     "winding_matrix",
+    "write_circuit",
     "write_curve",
+    "write_curve_table",
     "write_field",
     "write_mesh",
     "write_result",
