@@ -18,6 +18,7 @@ from femag.command_output import check_file, check_targets, make_folder, quantit
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.machine_command import check_command, report_command
 from femag.winding_command import windings_command
 
 if TYPE_CHECKING:
@@ -157,6 +158,8 @@ app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
 app.command("windings")(windings_command)
+app.command("check")(check_command)
+app.command("report")(report_command)
 
 
 @app.command("materials")

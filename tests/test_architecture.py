@@ -16,7 +16,7 @@ LAYERS = (
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "current_curve", "target_gap", "winding_matrix"),
+    ("result", "current_curve", "target_gap", "winding_matrix", "environment"),
     ("measured_inductance",),
     ("export",),
     ("plot",),
@@ -30,7 +30,7 @@ LAYERS = (
         "winding_answer",
     ),
     ("command_output",),
-    ("bench_command", "curve_command", "gap_command", "winding_command"),
+    ("bench_command", "curve_command", "gap_command", "winding_command", "machine_command"),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}
