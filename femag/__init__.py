@@ -32,7 +32,7 @@ if TYPE_CHECKING:
     )
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
-    from femag.design_file import design_toml, read_design
+    from femag.design_file import design_toml, read_design, read_ripple
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.curve_file import read_curve, write_curve
     from femag.export.result_file import read_result, write_result
@@ -70,6 +70,7 @@ if TYPE_CHECKING:
         residuals,
     )
     from femag.result import Result, solve
+    from femag.ripple import Ripple
     from femag.target_gap import gap_for
 
 _HOME = {
@@ -113,6 +114,7 @@ _HOME = {
     "NumericalError": "femag.errors",
     "PotCore": "femag.geometry",
     "Result": "femag.result",
+    "Ripple": "femag.ripple",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -120,6 +122,7 @@ _HOME = {
     "catalogue_core": "femag.geometry",
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
+    "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
     "solve": "femag.result",
@@ -150,6 +153,7 @@ __all__ = [
     "NumericalError",
     "PotCore",
     "Result",
+    "Ripple",
     "RoundWire",
     "Step",
     "TabulatedCurve",
@@ -175,6 +179,7 @@ __all__ = [
     "read_material",
     "read_measured",
     "read_result",
+    "read_ripple",
     "residuals",
     "solve",
     "write_curve",

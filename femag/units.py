@@ -80,6 +80,7 @@ ACCEPTED = {
     "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
+    "s": "a time with its unit, such as '10 us'",
 }
 """What is accepted for a quantity of each SI unit, for messages and the file reference."""
 
@@ -92,7 +93,8 @@ def si_value(text: object, unit: str) -> float:
     text : object
         What the user wrote.
     unit : str
-        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``.
+        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``,
+        ``"s"``.
 
     Raises
     ------

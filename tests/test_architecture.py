@@ -10,7 +10,7 @@ import femag
 ROOT = Path(femag.__file__).parent
 LAYERS = (
     ("units", "errors", "line_search"),
-    ("materials", "geometry"),
+    ("materials", "geometry", "ripple"),
     ("bench",),
     ("hand", "design", "mesh"),
     ("design_file",),
