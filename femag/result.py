@@ -16,7 +16,9 @@ from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
     SectionMean,
     VolumeShare,
+    WindingLoss,
     WoundCopper,
+    copper_loss,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
@@ -86,6 +88,8 @@ class Result:
         Flux linkage in Wb without current from either side; None without magnets.
     magnet_coenergy : Bounds or None
         Co-energy without current, J, which is below 0; None without magnets.
+    copper_loss : tuple of WindingLoss
+        Loss of every winding, W; none without a ripple.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -108,6 +112,7 @@ class Result:
     design_hash: str
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
+    copper_loss: tuple[WindingLoss, ...] = ()
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -210,6 +215,7 @@ def solve(
         section_means=section_means(design, solution),
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
+        copper_loss=copper_loss(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,

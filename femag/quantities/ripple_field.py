@@ -6,6 +6,7 @@ harmonic has the same field.
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,13 +14,13 @@ from numpy.typing import NDArray
 
 from femag.field.bounds import FieldSolution
 from femag.field.newton import Minimum, minimum
+from femag.field.regional import elements_in
 from femag.field.side import Side
 from femag.field.tangent import flux_tangent
 from femag.mesh import SectionMesh
 from femag.quantities.section_means import nodal_values
 
 Array = NDArray[np.float64]
-Index = NDArray[np.int64]
 
 AT_ONCE = 50_000
 """Points that are located together, for memory."""
@@ -70,17 +71,15 @@ class RippleField:
             du += coefficient * shape.grad[:, :, 0]
         return np.stack([-points[0] * du[1], 2.0 * u + points[0] * du[0]])
 
-    def squared_in(self, regions: tuple[str, ...]) -> float:
+    def squared_in(self, regions: Collection[str]) -> float:
         """Return the integral of |B|^2 over the volume of regions, T2 m3/A2, as exact as the field.
 
         Parameters
         ----------
-        regions : tuple of str
+        regions : collection of str
             Names; those that the mesh does not hold are left out.
         """
-        names = self.mesh.names
-        wanted = [names.index(name) for name in regions if name in names]
-        elements = np.flatnonzero(np.isin(self.mesh.region, wanted))
+        elements = elements_in(self.solution, regions)
         b = self.solution.sides.flux.change(self.rate)[elements]
         weight = self.solution.sides.discretisation.weight[elements]
         return float(np.sum(weight * np.sum(b**2, axis=1)))
