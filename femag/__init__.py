@@ -54,6 +54,7 @@ if TYPE_CHECKING:
         catalogue,
         catalogue_core,
     )
+    from femag.keep_out import KeepOut, keep_out
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
@@ -125,6 +126,8 @@ _HOME = {
     "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
+    "KeepOut": "femag.keep_out",
+    "keep_out": "femag.keep_out",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
 }
@@ -145,6 +148,7 @@ __all__ = [
     "GapfieldError",
     "InductanceCurve",
     "InputError",
+    "KeepOut",
     "LinearCurve",
     "LitzWire",
     "Loop",
@@ -165,6 +169,7 @@ __all__ = [
     "fitted_design",
     "gap_for",
     "inductance_curve",
+    "keep_out",
     "loop_of",
     "material",
     "material_library",

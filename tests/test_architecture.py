@@ -16,7 +16,7 @@ LAYERS = (
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "current_curve", "target_gap"),
+    ("result", "current_curve", "target_gap", "keep_out"),
     ("measured_inductance",),
     ("export",),
     ("plot",),
