@@ -30,6 +30,7 @@ if TYPE_CHECKING:
         normal_curve,
         read_capture,
     )
+    from femag.copper_distance import KeepOut, keep_out
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design, read_ripple
@@ -54,7 +55,6 @@ if TYPE_CHECKING:
         catalogue,
         catalogue_core,
     )
-    from femag.keep_out import KeepOut, keep_out
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
@@ -126,8 +126,8 @@ _HOME = {
     "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
-    "KeepOut": "femag.keep_out",
-    "keep_out": "femag.keep_out",
+    "KeepOut": "femag.copper_distance",
+    "keep_out": "femag.copper_distance",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
 }

@@ -3,8 +3,8 @@
 The measure is the ripple's squared field over the copper, to which the loss in strands goes, over
 what it would be with the gap spread evenly along the post: 1 is the level without fringe field.
 Two answers: of the whole winding, when its inner edge moves and the field is solved again with the
-turns spread over what is left; and of one thin layer of strands at a distance, in the field of the
-winding where it is, which needs no solution of its own.
+turns spread over what is left; and what the gap adds in one thin layer of strands at a distance, in
+the field of the winding where it is, which needs no solution of its own.
 """
 
 from __future__ import annotations
@@ -64,8 +64,9 @@ class KeepOutCurve:
         At each distance: mean of r |B|^2 over the section of a winding whose inner edge is there,
         solved anew, over that with the gap spread evenly.
     layer : tuple of float
-        At each distance: mean of |B|^2 along a thin layer there, as high as the winding, with the
-        current where the design has it, over that with the gap spread evenly.
+        At each distance: 1 and what the gap adds to the mean of |B|^2 along a thin layer there, as
+        high as the winding, with the current where the design has it, over the mean at the inner
+        edge of the design's copper with the gap spread evenly.
     """
 
     pieces: int
@@ -177,8 +178,10 @@ def keep_out(
     for count in pieces:
         divided = replace(gap, pieces=count, pitch=None, offset=0.0)
         squares = _squares(replace(linear, gaps=(divided,)), edges, found, own)
-        winding, layer = (tuple((a / b).tolist()) for a, b in zip(squares, spread, strict=True))
-        curves.append(KeepOutCurve(count, design.core.window_height / count, winding, layer))
+        winding = squares.windings / spread.windings
+        layer = 1.0 + (squares.layers - spread.layers) / spread.at_copper
+        pitch = design.core.window_height / count
+        curves.append(KeepOutCurve(count, pitch, tuple(winding.tolist()), tuple(layer.tolist())))
     return KeepOut(
         design=design,
         gap=gap.length,
@@ -238,7 +241,8 @@ def _checked_distances(
     values = [number(distance, "distances", accepted) for distance in distances]
     if not values or sorted(set(values)) != values or values[0] <= 0.0 or values[-1] > most:
         raise InputError("not usable", key="distances", value=list(distances), accepted=accepted)
-    return tuple(values)
+    own, rounding = room.inner_radius - post, 1e-9 * post
+    return tuple(own if abs(value - own) < rounding else value for value in values)
 
 
 def _strips(edges: Sequence[float], room: Block, post: float) -> list[Winding]:
@@ -258,9 +262,18 @@ def _spread_gap(design: Design, gap: Gap) -> Gap:
     return Gap(length, permeability=length / over_permeability)
 
 
+@dataclass(frozen=True, eq=False)
+class _Squares:
+    """Squared field of one gap: of windings and layers at each distance, and at the copper."""
+
+    windings: Array
+    layers: Array
+    at_copper: float
+
+
 def _squares(
     design: Design, edges: tuple[float, ...], distances: Sequence[float], own: float
-) -> list[Array]:
+) -> _Squares:
     """Return the squared field of windings that begin, and of layers that lie, at the distances.
 
     One mesh serves all: strips carry the current or not. `own` is the edge where the winding of the
@@ -279,8 +292,10 @@ def _squares(
     fields = _fields_of([carrying(first) for first in range(len(edges))], close)
     starts = [edges.index(distance) for distance in distances]
     windings = [fields[i].squared_in(strips[i:]) / sum(areas[i:]) for i in starts]
-    layers = [_along_layer(fields[edges.index(own)], design, distance) for distance in distances]
-    return [np.array(windings), np.array(layers)]
+    *layers, at_copper = (
+        _along_layer(fields[edges.index(own)], design, distance) for distance in (*distances, own)
+    )
+    return _Squares(np.array(windings), np.array(layers), at_copper)
 
 
 def _fields_of(problems: Sequence[FieldProblem], known: FieldSolution) -> list[RippleField]:
