@@ -9,6 +9,7 @@ from typing import Annotated
 import typer
 
 from femag.command_output import check_spares, check_targets, make_folder, quantity
+from femag.errors import InputError
 
 FOLDER_FILES = ("keepout.json", "keepout.png")
 PANEL = (7.2, 5.6)
@@ -18,6 +19,9 @@ DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The
 DistancesOption = Annotated[
     str | None,
     typer.Option(metavar="LIST", help="Between post and copper, such as '0.5 mm, 1 mm, 2 mm'."),
+]
+PiecesOption = Annotated[
+    str | None, typer.Option(metavar="LIST", help="Numbers of gaps to compare, such as '1, 2, 4'.")
 ]
 JsonOption = Annotated[
     str | None,
@@ -31,6 +35,7 @@ OutOption = Annotated[
 def keep_out_command(
     design: DesignArgument,
     distances: DistancesOption = None,
+    pieces: PiecesOption = None,
     json: JsonOption = None,
     out: OutOption = None,
 ) -> None:
@@ -41,7 +46,7 @@ def keep_out_command(
     from rich.console import Console
 
     from femag.answer import WIDTH
-    from femag.copper_distance import keep_out
+    from femag.copper_distance import PIECES, keep_out
     from femag.design_file import read_design
     from femag.export.keep_out_file import keep_out_json
     from femag.export.whole_file import whole_file
@@ -52,7 +57,8 @@ def keep_out_command(
     lengths = None
     if distances is not None:
         lengths = [quantity("--distances", text.strip(), "m") for text in distances.split(",")]
-    found = keep_out(read_design(design), lengths)
+    numbers = PIECES if pieces is None else _numbers(pieces)
+    found = keep_out(read_design(design), lengths, numbers)
     text = keep_out_json(found)
     with ExitStack() as stack:
         if json is not None and json != "-":
@@ -70,3 +76,13 @@ def keep_out_command(
     print_keep_out(found, Console(width=WIDTH))
     if out is not None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
+
+
+def _numbers(text: str) -> list[int]:
+    """Return the whole numbers of a list."""
+    try:
+        return [int(part) for part in text.split(",")]
+    except ValueError as error:
+        raise InputError(
+            "not whole numbers", key="--pieces", value=text, accepted="a list such as '1, 2, 4'"
+        ) from error

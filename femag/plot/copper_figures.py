@@ -133,10 +133,12 @@ def layer_bars(result: Result, ax: Axes) -> Axes:
     missing = [i for i, (_, layer) in enumerate(rows) if layer.crossing is None]
     for place in missing:
         ax.annotate("+ ?", (place, bottom[place]), ha="center", va="bottom")
-    if len(rows) <= MOST_NAMES:
-        ax.set_xticks(places, [_bar_name(name, layer, rows) for name, layer in rows],
-                      rotation=90 if len(rows) > 8 else 0)  # fmt: skip
-    ax.set(xlabel="layer, from inside", ylabel="loss, W", title="loss of the layers")
+    names = [_bar_name(name, layer, rows) for name, layer in rows]
+    shown = len(rows) <= MOST_NAMES
+    upright = sum(map(len, names)) > 60
+    ax.set_xticks(places if shown else [], names if shown else [], rotation=90 if upright else 0)
+    ax.set_title("loss of the layers" + ("; ?: out of range" if missing else ""), fontsize=10)
+    ax.set(xlabel="layer, from inside", ylabel="loss, W")
     ax.set_ylim(0.0, 1.25 * bottom.max())
     ax.legend(loc="upper right", frameon=False)
     return ax

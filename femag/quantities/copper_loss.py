@@ -304,6 +304,7 @@ def _note(design: Design, coil: Coil, sections: list[_TurnLosses]) -> str:
         share = max(section.through_foil for section in sections)
         return (
             f"a lower estimate: the field through the foil, {share:.2g} of its mean square, drives "
-            "currents across its width that are left out"
+            "currents across its width that are left out; beside a gap they can be many times the "
+            "rest"
         )
     return ""
