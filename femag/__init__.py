@@ -57,10 +57,12 @@ if TYPE_CHECKING:
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
+        Steinmetz,
         TabulatedCurve,
         material,
         material_library,
         read_material,
+        steinmetz_through,
     )
     from femag.measured_inductance import (
         MeasuredPoints,
@@ -115,6 +117,8 @@ _HOME = {
     "PotCore": "femag.geometry",
     "Result": "femag.result",
     "Ripple": "femag.ripple",
+    "Steinmetz": "femag.materials",
+    "steinmetz_through": "femag.materials",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -155,6 +159,7 @@ __all__ = [
     "Result",
     "Ripple",
     "RoundWire",
+    "Steinmetz",
     "Step",
     "TabulatedCurve",
     "ToleranceError",
@@ -182,6 +187,7 @@ __all__ = [
     "read_ripple",
     "residuals",
     "solve",
+    "steinmetz_through",
     "write_curve",
     "write_result",
 ]
