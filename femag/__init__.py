@@ -71,6 +71,7 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.quantities import CoreLoss, LossBudget
     from femag.result import Result, solve
     from femag.ripple import Ripple
     from femag.target_gap import gap_for
@@ -81,10 +82,12 @@ _HOME = {
     "COPPER": "femag.geometry",
     "Capture": "femag.bench",
     "CaptureColumns": "femag.bench",
+    "CoreLoss": "femag.quantities",
     "CoreUnderTest": "femag.bench",
     "Foil": "femag.geometry",
     "Former": "femag.geometry",
     "LitzWire": "femag.geometry",
+    "LossBudget": "femag.quantities",
     "Loop": "femag.bench",
     "loop_of": "femag.bench",
     "material_toml": "femag.bench",
@@ -140,6 +143,7 @@ __all__ = [
     "Bounds",
     "Capture",
     "CaptureColumns",
+    "CoreLoss",
     "CoreUnderTest",
     "Design",
     "Foil",
@@ -152,6 +156,7 @@ __all__ = [
     "LinearCurve",
     "LitzWire",
     "Loop",
+    "LossBudget",
     "Magnet",
     "MeasuredPoints",
     "NumericalError",

@@ -20,6 +20,7 @@ LAYERS = (
     ("measured_inductance",),
     ("export",),
     ("plot",),
+    ("loss_answer",),
     ("answer", "core_answer", "material_answer", "bench_answer", "curve_answer", "gap_answer"),
     ("command_output",),
     ("bench_command", "curve_command", "gap_command"),

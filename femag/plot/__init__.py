@@ -1,6 +1,7 @@
 """Figures: each function takes an Axes, draws on it and returns it."""
 
 from femag.plot.core_drawing import core_drawing
+from femag.plot.core_loss_map import core_loss_map
 from femag.plot.curve_figures import (
     core_flux_figure,
     inductance_figure,
@@ -15,6 +16,7 @@ from femag.plot.loop_figure import loop_figure, waveform_figure
 __all__ = [
     "core_drawing",
     "core_flux_figure",
+    "core_loss_map",
     "flux_map",
     "gap_map",
     "inductance_figure",
