@@ -58,10 +58,12 @@ if TYPE_CHECKING:
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
+        Steinmetz,
         TabulatedCurve,
         material,
         material_library,
         read_material,
+        steinmetz_through,
     )
     from femag.measured_inductance import (
         MeasuredPoints,
@@ -70,6 +72,7 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.quantities import CoreLoss, LossBudget
     from femag.result import Result, solve
     from femag.ripple import Ripple
     from femag.target_gap import gap_for
@@ -80,10 +83,12 @@ _HOME = {
     "COPPER": "femag.geometry",
     "Capture": "femag.bench",
     "CaptureColumns": "femag.bench",
+    "CoreLoss": "femag.quantities",
     "CoreUnderTest": "femag.bench",
     "Foil": "femag.geometry",
     "Former": "femag.geometry",
     "LitzWire": "femag.geometry",
+    "LossBudget": "femag.quantities",
     "Loop": "femag.bench",
     "loop_of": "femag.bench",
     "material_toml": "femag.bench",
@@ -116,6 +121,8 @@ _HOME = {
     "PotCore": "femag.geometry",
     "Result": "femag.result",
     "Ripple": "femag.ripple",
+    "Steinmetz": "femag.materials",
+    "steinmetz_through": "femag.materials",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -139,6 +146,7 @@ __all__ = [
     "Bounds",
     "Capture",
     "CaptureColumns",
+    "CoreLoss",
     "CoreUnderTest",
     "Design",
     "Foil",
@@ -152,6 +160,7 @@ __all__ = [
     "LinearCurve",
     "LitzWire",
     "Loop",
+    "LossBudget",
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
@@ -159,6 +168,7 @@ __all__ = [
     "Result",
     "Ripple",
     "RoundWire",
+    "Steinmetz",
     "Step",
     "TabulatedCurve",
     "ToleranceError",
@@ -187,6 +197,7 @@ __all__ = [
     "read_ripple",
     "residuals",
     "solve",
+    "steinmetz_through",
     "write_curve",
     "write_result",
 ]

@@ -11,6 +11,7 @@ from rich.text import Text
 from femag.copper_answer import LOSS_COLUMNS, loss_notes, loss_rows
 from femag.design import Design
 from femag.geometry import Gap
+from femag.loss_answer import described_ripple, loss_lines
 from femag.quantities import WoundCopper
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
@@ -35,6 +36,7 @@ def print_answer(result: Result, console: Console) -> None:
     if result.copper_loss:
         lines += [_losses(result), *map(Text, loss_notes(result)), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
+    lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
         console.print(line, highlight=False)
@@ -49,6 +51,8 @@ def described(design: Design, currents: str | None = None) -> Text:
         *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
     drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
+    if design.ripple is not None and currents is None:
+        drive += f"\n{described_ripple(design.ripple, design.current)}"
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 

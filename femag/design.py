@@ -187,8 +187,14 @@ def design_hash(design: Design) -> str:
     content = asdict(replace(design, title="", driven=driven, detail=detail))
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
-    if design.ripple is None:
+    material = content["material"]
+    while "of" in material:
+        material = material["of"]
+    loss = material.pop("loss", None)
+    if design.ripple is None:  # then neither it nor the loss moves anything
         del content["ripple"]
+    elif loss is not None:
+        content["loss"] = loss | {"source": ""}
     for text in ("name", "source", "notes"):
         content["material"].pop(text, None)
     text = json.dumps(_with_floats(content), sort_keys=True)

@@ -20,7 +20,7 @@ LAYERS = (
     ("measured_inductance",),
     ("export",),
     ("plot",),
-    ("copper_answer",),
+    ("copper_answer", "loss_answer"),
     (
         "answer",
         "core_answer",

@@ -20,7 +20,8 @@ from pydantic_core import PydanticCustomError
 
 from femag.errors import InputError
 from femag.geometry import ALUMINIUM, COPPER, DETAILS, FAMILIES, LIMITS, Detail, Limit
-from femag.materials import is_material_file
+from femag.materials import Steinmetz, is_material_file, loss_of_table
+from femag.materials.loss_table import TABLE
 from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
@@ -67,6 +68,9 @@ def _read_point(pair: object) -> tuple[float, float]:
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
 
 
+Loss = Annotated[Steinmetz, PlainValidator(partial(loss_of_table, key="core.material.loss"))]
+
+
 class MaterialTable(_Table):
     """A magnetisation curve by its parameters, its points, or where it is found."""
 
@@ -86,6 +90,7 @@ class MaterialTable(_Table):
     )
     source: str | None = Field(default=None, description="text in quotes")
     notes: list[str] = Field(default=[], description="a list of texts")
+    loss: Loss | None = Field(default=None, description=TABLE)
 
     @model_validator(mode="before")
     @classmethod

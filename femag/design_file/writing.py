@@ -11,7 +11,13 @@ import tomli_w
 from femag.design import Design
 from femag.design_file.tables import METALS
 from femag.geometry import Conductor, Core, Foil, Gap, LitzWire, RoundWire, Winding
-from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, TabulatedCurve
+from femag.materials import (
+    FroehlichCurve,
+    LinearCurve,
+    MagnetisationCurve,
+    TabulatedCurve,
+    loss_document,
+)
 from femag.ripple import Ripple
 from femag.units import exact_text
 
@@ -48,7 +54,8 @@ def _core_document(core: Core, material: MagnetisationCurve) -> Document:
     if published is not None:
         document["core_factor"] = exact_text(published, "1/m")
     lengths = {name: exact_text(length, "m", "m") for name, length in core.sizes.items()}
-    return document | {"material": _material_document(material), "dimensions": lengths}
+    loss = {} if material.loss is None else {"loss": loss_document(material.loss)}
+    return document | {"material": _material_document(material) | loss, "dimensions": lengths}
 
 
 def _material_document(curve: MagnetisationCurve) -> Document:

@@ -2,6 +2,7 @@
 
 from femag.plot.copper_figures import copper_map, keep_out_chart, layer_bars
 from femag.plot.core_drawing import core_drawing
+from femag.plot.core_loss_map import core_loss_map
 from femag.plot.curve_figures import (
     core_flux_figure,
     inductance_figure,
@@ -17,6 +18,7 @@ __all__ = [
     "copper_map",
     "core_drawing",
     "core_flux_figure",
+    "core_loss_map",
     "flux_map",
     "gap_map",
     "inductance_figure",
