@@ -30,9 +30,10 @@ if TYPE_CHECKING:
         normal_curve,
         read_capture,
     )
+    from femag.copper_distance import KeepOut, keep_out
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
-    from femag.design_file import design_toml, read_design
+    from femag.design_file import design_toml, read_design, read_ripple
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
@@ -60,10 +61,12 @@ if TYPE_CHECKING:
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
+        Steinmetz,
         TabulatedCurve,
         material,
         material_library,
         read_material,
+        steinmetz_through,
     )
     from femag.measured_inductance import (
         MeasuredPoints,
@@ -72,7 +75,9 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.quantities import CoreLoss, LossBudget
     from femag.result import Result, solve
+    from femag.ripple import Ripple
     from femag.target_gap import gap_for
     from femag.winding_matrix import WindingMatrix, winding_matrix
 
@@ -82,10 +87,12 @@ _HOME = {
     "COPPER": "femag.geometry",
     "Capture": "femag.bench",
     "CaptureColumns": "femag.bench",
+    "CoreLoss": "femag.quantities",
     "CoreUnderTest": "femag.bench",
     "Foil": "femag.geometry",
     "Former": "femag.geometry",
     "LitzWire": "femag.geometry",
+    "LossBudget": "femag.quantities",
     "Loop": "femag.bench",
     "loop_of": "femag.bench",
     "material_toml": "femag.bench",
@@ -119,6 +126,9 @@ _HOME = {
     "NumericalError": "femag.errors",
     "PotCore": "femag.geometry",
     "Result": "femag.result",
+    "Ripple": "femag.ripple",
+    "Steinmetz": "femag.materials",
+    "steinmetz_through": "femag.materials",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -126,8 +136,11 @@ _HOME = {
     "catalogue_core": "femag.geometry",
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
+    "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
+    "KeepOut": "femag.copper_distance",
+    "keep_out": "femag.copper_distance",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
     "write_field": "femag.export.mesh_files",
@@ -143,6 +156,7 @@ __all__ = [
     "Bounds",
     "Capture",
     "CaptureColumns",
+    "CoreLoss",
     "CoreUnderTest",
     "Design",
     "Foil",
@@ -152,15 +166,19 @@ __all__ = [
     "GapfieldError",
     "InductanceCurve",
     "InputError",
+    "KeepOut",
     "LinearCurve",
     "LitzWire",
     "Loop",
+    "LossBudget",
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
     "PotCore",
     "Result",
+    "Ripple",
     "RoundWire",
+    "Steinmetz",
     "Step",
     "TabulatedCurve",
     "ToleranceError",
@@ -172,6 +190,7 @@ __all__ = [
     "fitted_design",
     "gap_for",
     "inductance_curve",
+    "keep_out",
     "loop_of",
     "material",
     "material_library",
@@ -186,8 +205,10 @@ __all__ = [
     "read_material",
     "read_measured",
     "read_result",
+    "read_ripple",
     "residuals",
     "solve",
+    "steinmetz_through",
     "winding_matrix",
     "write_circuit",
     "write_curve",

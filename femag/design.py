@@ -29,6 +29,7 @@ from femag.geometry import (
     upper_half,
 )
 from femag.materials import MagnetisationCurve
+from femag.ripple import Ripple
 
 FAR_RADIUS = 60.0
 """Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
@@ -66,6 +67,8 @@ class Design:
     detail : {"block", "turn"}
         How the field sees windings that have a conductor: as blocks of uniform current, or turn by
         turn.
+    ripple : Ripple, optional
+        What of the current alternates; its highest current is `current`.
     """
 
     core: Core
@@ -77,6 +80,7 @@ class Design:
     driven: tuple[str, ...] = ()
     title: str = ""
     detail: Detail = "block"
+    ripple: Ripple | None = None
 
     def __post_init__(self) -> None:
         for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
@@ -183,6 +187,14 @@ def design_hash(design: Design) -> str:
     content = asdict(replace(design, title="", driven=driven, detail=detail))
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
+    material = content["material"]
+    while "of" in material:
+        material = material["of"]
+    loss = material.pop("loss", None)
+    if design.ripple is None:  # then neither it nor the loss moves anything
+        del content["ripple"]
+    elif loss is not None:
+        content["loss"] = loss | {"source": ""}
     for text in ("name", "source", "notes"):
         content["material"].pop(text, None)
     text = json.dumps(_with_floats(content), sort_keys=True)

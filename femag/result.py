@@ -14,9 +14,14 @@ from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
+    CoreLoss,
+    LossBudget,
     SectionMean,
     VolumeShare,
+    WindingLoss,
     WoundCopper,
+    copper_loss,
+    core_loss,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
@@ -86,6 +91,10 @@ class Result:
         Flux linkage in Wb without current from either side; None without magnets.
     magnet_coenergy : Bounds or None
         Co-energy without current, J, which is below 0; None without magnets.
+    copper_loss : tuple of WindingLoss
+        Loss of every winding, W; none without a ripple.
+    core_loss : CoreLoss or None
+        Loss of the core under the ripple; None without a ripple or without loss parameters.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -108,6 +117,8 @@ class Result:
     design_hash: str
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
+    copper_loss: tuple[WindingLoss, ...] = ()
+    core_loss: CoreLoss | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -149,6 +160,23 @@ class Result:
     def al_value(self) -> float:
         """Inductance over turns squared, H."""
         return self.inductance.value / self.design.turns**2
+
+    @property
+    def loss_budget(self) -> LossBudget | None:
+        """Losses under current and ripple, added up; None without a ripple."""
+        ripple = self.design.ripple
+        if ripple is None:
+            return None
+        resistances = {copper.name: copper.resistance for copper in self.copper}
+        driven = [winding.name for winding in self.design.driven_windings]
+        known = all(name in resistances for name in driven)
+        resistance = sum(resistances.get(name, 0.0) for name in driven)
+        parts = [part for loss in self.copper_loss for part in (loss.ripple, loss.crossing)]
+        return LossBudget(
+            core=self.core_loss.total if self.core_loss else None,
+            copper_dc=ripple.bias(self.current) ** 2 * resistance if known else None,
+            copper_ripple=sum(part for part in parts if part) if None not in parts else None,
+        )
 
     @property
     def fringing_factor(self) -> float:
@@ -210,6 +238,7 @@ def solve(
         section_means=section_means(design, solution),
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
+        copper_loss=copper_loss(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,
@@ -217,8 +246,15 @@ def solve(
         design_hash=design_hash(design),
         magnet_flux_linkage_of_sides=idle.flux_linkage_of_sides if idle else None,
         magnet_coenergy=idle.coenergy if idle else None,
+        core_loss=_core_loss(design, solution),
         solution=solution,
     )
+
+
+def _core_loss(design: Design, solution: FieldSolution) -> CoreLoss | None:
+    if design.ripple is None or design.material.loss is None:
+        return None
+    return core_loss(solution, design.ripple, design.material.loss)
 
 
 def library_versions() -> dict[str, str]:

@@ -69,7 +69,7 @@ _NUMBER_AND_UNIT = re.compile(
 )
 
 TEMPERATURE = "a temperature in degrees Celsius, such as '100 C'"
-_POWER = re.compile(r"(?<=[a-zA-Z])2$")
+_POWER = re.compile(r"(?<=[a-zA-Z])([23])$")
 
 ACCEPTED = {
     "m": "a length with its unit, such as '0.5 mm' or '26 mil'",
@@ -80,6 +80,8 @@ ACCEPTED = {
     "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
+    "W/m3": "a loss density with its unit, such as '400 kW/m3'",
+    "s": "a time with its unit, such as '10 us'",
 }
 """What is accepted for a quantity of each SI unit, for messages and the file reference."""
 
@@ -92,7 +94,8 @@ def si_value(text: object, unit: str) -> float:
     text : object
         What the user wrote.
     unit : str
-        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``.
+        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``,
+        ``"s"``.
 
     Raises
     ------
@@ -125,7 +128,7 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
 
     registry = _registry()
     try:
-        units = (registry.parse_units(_POWER.sub("**2", text)) for text in (name, unit))
+        units = (registry.parse_units(_POWER.sub(r"**\1", text)) for text in (name, unit))
         factor = registry.Quantity(1.0, next(units)).to(next(units)).magnitude
     except pint.DimensionalityError as error:
         raise InputError(

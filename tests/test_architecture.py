@@ -10,16 +10,17 @@ import femag
 ROOT = Path(femag.__file__).parent
 LAYERS = (
     ("units", "errors", "line_search"),
-    ("materials", "geometry"),
+    ("materials", "geometry", "ripple"),
     ("bench",),
     ("hand", "design", "mesh"),
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "current_curve", "target_gap", "winding_matrix", "environment"),
+    ("result", "current_curve", "target_gap", "winding_matrix", "copper_distance", "environment"),
     ("measured_inductance",),
     ("export",),
     ("plot",),
+    ("copper_answer", "loss_answer"),
     (
         "answer",
         "core_answer",
@@ -28,9 +29,17 @@ LAYERS = (
         "curve_answer",
         "gap_answer",
         "winding_answer",
+        "keep_out_answer",
     ),
     ("command_output",),
-    ("bench_command", "curve_command", "gap_command", "winding_command", "machine_command"),
+    (
+        "bench_command",
+        "curve_command",
+        "gap_command",
+        "winding_command",
+        "keep_out_command",
+        "machine_command",
+    ),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

@@ -9,8 +9,12 @@ from femag.design_file import DesignTable, design_from_toml
 from femag.hand import FORMULAS
 
 ROOT = Path(__file__).parents[1]
-EXECUTED = ("README.md", "docs/guide.md", "docs/examples/compare-by-hand.md",
-            "docs/examples/review-plots.md")
+EXECUTED = (
+    "README.md",
+    "docs/guide.md",
+    "docs/examples/compare-by-hand.md",
+    "docs/examples/review-plots.md",
+)
 RUN = r"```python\n(.*?)```(?:\n\nprints\n\n```\n(.*?)```)?"
 """A block of Python, and what it and those before it print."""
 

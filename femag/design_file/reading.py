@@ -11,6 +11,7 @@ from typing import Any
 from pydantic import ValidationError
 
 from femag.design import Design
+from femag.design_file.drive import drive_ripple
 from femag.design_file.materials import material_curve
 from femag.design_file.messages import first_error, renumbered, written_value
 from femag.design_file.tables import (
@@ -103,6 +104,7 @@ def _design(table: DesignTable, folder: Path) -> Design:
         driven=tuple(table.drive.winding),
         title=table.title,
         detail=table.solve.detail,
+        ripple=drive_ripple(table.drive, folder),
     )
 
 

@@ -8,12 +8,20 @@ from __future__ import annotations
 from functools import partial
 from typing import Annotated, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, model_validator
+from pydantic import (
+    BaseModel,
+    BeforeValidator,
+    ConfigDict,
+    Field,
+    PlainValidator,
+    model_validator,
+)
 from pydantic_core import PydanticCustomError
 
 from femag.errors import InputError
 from femag.geometry import ALUMINIUM, COPPER, DETAILS, FAMILIES, LIMITS, Detail, Limit
-from femag.materials import is_material_file
+from femag.materials import Steinmetz, is_material_file, loss_of_table
+from femag.materials.loss_table import TABLE
 from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
@@ -39,6 +47,9 @@ Length = Annotated[
 Current = Annotated[
     float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
+Frequency = Annotated[
+    float, BeforeValidator(partial(_read_quantity, "Hz")), Field(description=ACCEPTED["Hz"])
+]
 Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
 CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
 FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
@@ -55,6 +66,9 @@ def _read_point(pair: object) -> tuple[float, float]:
 
 
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
+
+
+Loss = Annotated[Steinmetz, PlainValidator(partial(loss_of_table, key="core.material.loss"))]
 
 
 class MaterialTable(_Table):
@@ -76,6 +90,7 @@ class MaterialTable(_Table):
     )
     source: str | None = Field(default=None, description="text in quotes")
     notes: list[str] = Field(default=[], description="a list of texts")
+    loss: Loss | None = Field(default=None, description=TABLE)
 
     @model_validator(mode="before")
     @classmethod
@@ -223,10 +238,45 @@ class WindingTable(_Table):
     divider: Length = 0.0
 
 
+Samples = tuple[tuple[float, float], ...]
+
+
+def _read_waveform(given: object) -> str | Samples:
+    """Return a path as it is, or pairs of share of the period and current in A."""
+    if isinstance(given, str):
+        return given
+    if not isinstance(given, list):
+        raise PydanticCustomError("quantity", "neither a path nor a list of pairs")
+    return tuple(map(_read_sample, given))
+
+
+def _read_sample(pair: object) -> tuple[float, float]:
+    if not isinstance(pair, list | tuple) or len(pair) != 2:
+        raise PydanticCustomError("quantity", "not pairs of a share of the period and a current")
+    if isinstance(pair[0], bool) or not isinstance(pair[0], int | float):
+        raise PydanticCustomError("quantity", "a share of the period is no number")
+    return float(pair[0]), _read_quantity("A", pair[1])
+
+
 class DriveTable(_Table):
     """What flows."""
 
     current: Current = 1.0
+    ripple: Current | None = Field(
+        default=None, description="a current from peak to peak, such as '1 A'"
+    )
+    frequency: Frequency | None = Field(default=None, description=ACCEPTED["Hz"])
+    shape: Literal["triangle", "sine"] = Field(
+        default="triangle", description="'triangle' or 'sine'"
+    )
+    rise: float = Field(
+        default=0.5, description="share of the period in which a triangle rises, such as 0.4"
+    )
+    waveform: Annotated[str | Samples, PlainValidator(_read_waveform)] | None = Field(
+        default=None,
+        description="the path of a CSV file of one period, or a list of pairs such as "
+        "[[0, '1 A'], [0.4, '2 A'], [1, '1 A']]",
+    )
     winding: list[str] = Field(default=[], description="a list of winding names, driven in series")
 
 
