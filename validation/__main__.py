@@ -13,6 +13,7 @@ FOLDERS = (
     "air_coils",
     "sphere",
     "nonlinear_pot",
+    "core_loss",
     "round_post_fringing",
     "finite_post",
     "pot_core_26_16",
