@@ -30,6 +30,7 @@ if TYPE_CHECKING:
         normal_curve,
         read_capture,
     )
+    from femag.copper_distance import KeepOut, keep_out
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design, read_ripple
@@ -132,6 +133,8 @@ _HOME = {
     "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
+    "KeepOut": "femag.copper_distance",
+    "keep_out": "femag.copper_distance",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
 }
@@ -153,6 +156,7 @@ __all__ = [
     "GapfieldError",
     "InductanceCurve",
     "InputError",
+    "KeepOut",
     "LinearCurve",
     "LitzWire",
     "Loop",
@@ -175,6 +179,7 @@ __all__ = [
     "fitted_design",
     "gap_for",
     "inductance_curve",
+    "keep_out",
     "loop_of",
     "material",
     "material_library",

@@ -8,6 +8,7 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+from femag.copper_answer import LOSS_COLUMNS, loss_notes, loss_rows
 from femag.design import Design
 from femag.geometry import Gap
 from femag.loss_answer import described_ripple, loss_lines
@@ -32,6 +33,8 @@ def print_answer(result: Result, console: Console) -> None:
     lines += [Text(_where_it_saturates(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
+    if result.copper_loss:
+        lines += [_losses(result), *map(Text, loss_notes(result)), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
     lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
@@ -163,6 +166,13 @@ def _copper(result: Result) -> Table:
             f"{copper.wire_length:.3g} m",
             f"{with_unit(copper.resistance, 'ohm', 3)} at {copper.temperature:g} C",
         )
+    return table
+
+
+def _losses(result: Result) -> Table:
+    table = columns(*LOSS_COLUMNS, words=["loss of"])
+    for row in loss_rows(result):
+        table.add_row(*row)
     return table
 
 

@@ -18,6 +18,7 @@ from femag.command_output import check_targets, make_folder, quantity, shown_pro
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.keep_out_command import keep_out_command
 
 if TYPE_CHECKING:
     from femag.design import Design
@@ -26,6 +27,7 @@ if TYPE_CHECKING:
 
 STOPPED = 130
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
+COPPER_FILE = "copper.png"
 
 app = typer.Typer(
     add_completion=False,
@@ -143,6 +145,7 @@ def cores_command(
 app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
+app.command("keepout")(keep_out_command)
 
 
 @app.command("materials")
@@ -187,7 +190,8 @@ def _answer(
 
     print_answer(result, Console(width=WIDTH))
     if out is not None:
-        typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
+        files = (*FOLDER_FILES, *([COPPER_FILE] if _has_turn_losses(result) else []))
+        typer.echo(f"\nWritten to {out}: {', '.join(files)}")
 
 
 def _write(result: Result, json: str | None, out: Path | None, texts: Mapping[Path, str]) -> None:
@@ -212,6 +216,15 @@ def _write(result: Result, json: str | None, out: Path | None, texts: Mapping[Pa
             stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
         write_figure(lambda ax: flux_map(result, ax), section)
         write_figure(lambda ax: gap_map(result, ax), gap)
+        if _has_turn_losses(result):
+            from femag.plot import copper_map, layer_bars, write_panels
+
+            draws = (lambda ax: copper_map(result, ax), lambda ax: layer_bars(result, ax))
+            write_panels(draws, stack.enter_context(whole_file(out / COPPER_FILE)))
+
+
+def _has_turn_losses(result: Result) -> bool:
+    return any(loss.crossing_of_turns for loss in result.copper_loss)
 
 
 def _bracket(solution: FieldSolution) -> str:

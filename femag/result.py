@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import platform
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
 from importlib.metadata import version
 
@@ -18,7 +18,9 @@ from femag.quantities import (
     LossBudget,
     SectionMean,
     VolumeShare,
+    WindingLoss,
     WoundCopper,
+    copper_loss,
     core_loss,
     gap_factor,
     incremental_inductance_of_sides,
@@ -91,6 +93,8 @@ class Result:
         Co-energy without current, J, which is below 0; None without magnets.
     core_loss : CoreLoss or None
         Loss of the core under the ripple; None without a ripple or without loss parameters.
+    copper_loss : tuple of WindingLoss
+        Loss of every winding, W; none without a ripple.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -114,6 +118,7 @@ class Result:
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
     core_loss: CoreLoss | None = None
+    copper_loss: tuple[WindingLoss, ...] = ()
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -159,16 +164,15 @@ class Result:
     @property
     def loss_budget(self) -> LossBudget | None:
         """Losses under current and ripple, added up; None without a ripple."""
-        ripple = self.design.ripple
-        if ripple is None:
+        if self.design.ripple is None:
             return None
-        resistances = {copper.name: copper.resistance for copper in self.copper}
-        driven = [winding.name for winding in self.design.driven_windings]
-        known = all(name in resistances for name in driven)
-        resistance = sum(resistances.get(name, 0.0) for name in driven)
+        copper = self.copper_loss
         return LossBudget(
             core=self.core_loss.total if self.core_loss else None,
-            copper_dc=ripple.bias(self.current) ** 2 * resistance if known else None,
+            copper_dc=_sum_if_known([loss.dc for loss in copper]),
+            copper_ripple=_sum_if_known(
+                [p for loss in copper for p in (loss.ripple, loss.crossing)]
+            ),
         )
 
     @property
@@ -231,6 +235,7 @@ def solve(
         section_means=section_means(design, solution),
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
+        copper_loss=copper_loss(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,
@@ -241,6 +246,11 @@ def solve(
         core_loss=_core_loss(design, solution),
         solution=solution,
     )
+
+
+def _sum_if_known(losses: Sequence[float | None]) -> float | None:
+    known = [loss for loss in losses if loss is not None]
+    return sum(known) if len(known) == len(losses) else None
 
 
 def _core_loss(design: Design, solution: FieldSolution) -> CoreLoss | None:
