@@ -70,8 +70,8 @@ def _core_notes(loss: CoreLoss, straight_legs: bool) -> str:
     ]
     if abs(loss.bend) > BEND:
         notes.append(
-            "As the core saturates, B does not follow the current in proportion: that would add "
-            f"about {100.0 * loss.bend:.2g} %."
+            "As the core saturates, B does not follow the current in proportion, which adds "
+            f"{100.0 * loss.bend:.2g} %."
         )
     return " ".join([*notes, STRAIGHT_LEGS] if straight_legs else notes)
 

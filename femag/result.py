@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import platform
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
 from importlib.metadata import version
 
@@ -164,18 +164,15 @@ class Result:
     @property
     def loss_budget(self) -> LossBudget | None:
         """Losses under current and ripple, added up; None without a ripple."""
-        ripple = self.design.ripple
-        if ripple is None:
+        if self.design.ripple is None:
             return None
-        resistances = {copper.name: copper.resistance for copper in self.copper}
-        driven = [winding.name for winding in self.design.driven_windings]
-        known = all(name in resistances for name in driven)
-        resistance = sum(resistances.get(name, 0.0) for name in driven)
-        parts = [part for loss in self.copper_loss for part in (loss.ripple, loss.crossing)]
+        copper = self.copper_loss
         return LossBudget(
             core=self.core_loss.total if self.core_loss else None,
-            copper_dc=ripple.bias(self.current) ** 2 * resistance if known else None,
-            copper_ripple=sum(part for part in parts if part) if None not in parts else None,
+            copper_dc=_sum_if_known([loss.dc for loss in copper]),
+            copper_ripple=_sum_if_known(
+                [p for loss in copper for p in (loss.ripple, loss.crossing)]
+            ),
         )
 
     @property
@@ -249,6 +246,11 @@ def solve(
         core_loss=_core_loss(design, solution),
         solution=solution,
     )
+
+
+def _sum_if_known(losses: Sequence[float | None]) -> float | None:
+    known = [loss for loss in losses if loss is not None]
+    return sum(known) if len(known) == len(losses) else None
 
 
 def _core_loss(design: Design, solution: FieldSolution) -> CoreLoss | None:

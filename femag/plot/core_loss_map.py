@@ -6,10 +6,10 @@ from typing import TYPE_CHECKING
 
 import matplotlib as mpl
 import numpy as np
-from matplotlib.collections import LineCollection
 from matplotlib.colors import ListedColormap, LogNorm
 from matplotlib.tri import Triangulation
 
+from femag.plot.flux_map import draw_outlines
 from femag.quantities import CoreLoss, field_map
 from femag.result import Result
 
@@ -56,11 +56,7 @@ def core_loss_map(result: Result, ax: Axes) -> Axes:
         norm=LogNorm(top / 10.0**DECADES, top),
         rasterized=True,
     )
-    for role, width, style in (("core", 1.8, "solid"), ("winding", 1.2, (0, (4, 2)))):
-        edges = KILO * fields.outlines.get(role, np.empty((0, 2, 2)))
-        ax.add_collection(
-            LineCollection(list(edges), colors="black", linewidths=width, linestyles=[style])
-        )
+    draw_outlines(ax, fields)
     core = KILO * fields.outlines["core"].reshape(-1, 2)
     margin = 0.06 * np.ptp(core[:, 1])
     ax.set(

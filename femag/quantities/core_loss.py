@@ -11,6 +11,7 @@ from femag.field.bounds import FieldSolution
 from femag.field.swing import Swing, swing
 from femag.materials import Steinmetz
 from femag.mesh import SectionMesh
+from femag.quantities.shape_of_swing import shape_ratio
 from femag.quantities.waveform_factor import loop_shares, waveform_factor
 from femag.ripple import Ripple
 
@@ -83,8 +84,7 @@ class CoreLoss:
     share_in_range : float
         Share of the loss where the swing lies in the range that the parameters were fitted in.
     bend : float
-        What B's own shape adds to the loss where it does not follow the current in proportion, as a
-        share: an estimate with the field at the middle of the ripple as well; not in `total`.
+        What it adds, as a share, that B does not follow the current in proportion; in `total`.
     material : Steinmetz
         Parameters that were used.
     swing : Swing or None
@@ -131,9 +131,13 @@ def core_loss(solution: FieldSolution, ripple: Ripple, material: Steinmetz) -> C
     volume = between.weight[inside]
     factor = waveform_factor(ripple, material.alpha, material.beta)
     changes = [_magnitude(change[inside]) for change in between.change_of_sides]
-    of_sides = [
+    straight = [
         factor * material.loss_density(ripple.frequency, 0.5 * change) for change in changes
     ]
+    in_proportion = volume * 0.5 * (straight[0] + straight[1])
+    exponents = material.alpha, material.beta
+    ratio = shape_ratio(between, inside, in_proportion, ripple, exponents)
+    of_sides = [ratio * density for density in straight]
     change, density = 0.5 * (changes[0] + changes[1]), 0.5 * (of_sides[0] + of_sides[1])
     loss = volume * density
     low, high = material.flux_densities
@@ -148,7 +152,7 @@ def core_loss(solution: FieldSolution, ripple: Ripple, material: Steinmetz) -> C
         minor_loops=0 if ripple.shape == "sine" else len(loop_shares(ripple, material.alpha)) - 1,
         frequency_in_range=material.frequencies[0] <= ripple.frequency <= material.frequencies[1],
         share_in_range=float(loss[fitted].sum()) / total,
-        bend=_bend(between, inside, loss, material.alpha),
+        bend=total / float(in_proportion.sum()) - 1.0,
         material=material,
         swing=between,
     )
@@ -184,17 +188,3 @@ def _volume_shares(volume: Array, change: Array, density: Array) -> tuple[LossSh
         LossShare(share, float(0.5 * change.flat[i]), float(density.flat[i]))
         for share, i in zip(SHARES, found, strict=True)
     )
-
-
-def _bend(between: Swing, inside: NDArray[np.bool_], loss: Array, alpha: float) -> float:
-    """Return what two straight pieces of B, to and from the middle, add to the loss, as a share.
-
-    The current passes both halves of its range at the same rate, so that the loss goes with the
-    mean of |dB|^alpha over both instead of with that of the whole.
-    """
-    change, lower = between.change_of_sides[0][inside], between.lower_half[inside]
-    whole = _magnitude(change)
-    halves = [_magnitude(lower), _magnitude(change - lower)]
-    shares = [2.0 * half / np.maximum(whole, 1e-300) for half in halves]
-    ratio = 0.5 * (shares[0] ** alpha + shares[1] ** alpha)
-    return float(np.sum(loss * ratio) / np.sum(loss)) - 1.0
