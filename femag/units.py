@@ -80,6 +80,7 @@ ACCEPTED = {
     "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
+    "s": "a time with its unit, such as '60 s'",
 }
 """What is accepted for a quantity of each SI unit, for messages and the file reference."""
 
@@ -92,7 +93,8 @@ def si_value(text: object, unit: str) -> float:
     text : object
         What the user wrote.
     unit : str
-        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``.
+        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``,
+        ``"s"``.
 
     Raises
     ------
@@ -123,10 +125,8 @@ def si_value(text: object, unit: str) -> float:
 def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
     import pint
 
-    registry = _registry()
     try:
-        units = (registry.parse_units(_POWER.sub("**2", text)) for text in (name, unit))
-        factor = registry.Quantity(1.0, next(units)).to(next(units)).magnitude
+        return _unit_ratio(name, unit)
     except pint.DimensionalityError as error:
         raise InputError(
             f"{name!r} is not a unit of this quantity", value=text, accepted=accepted
@@ -135,7 +135,14 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
         near = difflib.get_close_matches(name, _names(), n=1, cutoff=0.7)
         hint = f", nearest known: {near[0]!r}" if near else ""
         raise InputError(f"unknown unit {name!r}{hint}", value=text, accepted=accepted) from error
-    return float(factor)
+
+
+@cache
+def _unit_ratio(name: str, unit: str) -> float:
+    """Return how many of `unit` one of `name` is; pint's errors pass."""
+    registry = _registry()
+    units = (registry.parse_units(_POWER.sub("**2", text)) for text in (name, unit))
+    return float(registry.Quantity(1.0, next(units)).to(next(units)).magnitude)
 
 
 def _names() -> list[str]:

@@ -1,14 +1,38 @@
 """Design files: TOML in and out, checked key by key."""
 
-from femag.design_file.reading import design_from_document, design_from_toml, read_design
+from femag.design_file.keys import (
+    files_of,
+    folder_of,
+    plain_value,
+    unit_of_key,
+    with_key,
+    written_number,
+)
+from femag.design_file.messages import first_error
+from femag.design_file.reading import (
+    check_tables,
+    design_from_document,
+    design_from_toml,
+    read_design,
+    read_document,
+)
 from femag.design_file.tables import DesignTable
 from femag.design_file.writing import design_document, design_toml
 
 __all__ = [
     "DesignTable",
+    "check_tables",
     "design_document",
     "design_from_document",
     "design_from_toml",
     "design_toml",
+    "files_of",
+    "first_error",
+    "folder_of",
+    "plain_value",
     "read_design",
+    "read_document",
+    "unit_of_key",
+    "with_key",
+    "written_number",
 ]

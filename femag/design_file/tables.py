@@ -19,14 +19,16 @@ from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
 
 
-def _read_quantity(unit: str, text: object) -> float:
+def read_quantity(unit: str, text: object) -> float:
+    """Return the number in SI of a text, for pydantic."""
     try:
         return si_value(text, unit)
     except InputError as error:
         raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
 
 
-def _read_temperature(text: object) -> float:
+def read_temperature(text: object) -> float:
+    """Return the degrees Celsius of a text, for pydantic."""
     try:
         return celsius(text)
     except InputError as error:
@@ -34,14 +36,14 @@ def _read_temperature(text: object) -> float:
 
 
 Length = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "m")), Field(description=ACCEPTED["m"])
+    float, BeforeValidator(partial(read_quantity, "m")), Field(description=ACCEPTED["m"])
 ]
 Current = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
+    float, BeforeValidator(partial(read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
-Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
-CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
-FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
+Temperature = Annotated[float, BeforeValidator(read_temperature), Field(description=TEMPERATURE)]
+CoreFactor = Annotated[float, BeforeValidator(partial(read_quantity, "1/m"))]
+FluxDensity = Annotated[float, BeforeValidator(partial(read_quantity, "T"))]
 
 
 class _Table(BaseModel):
@@ -51,7 +53,7 @@ class _Table(BaseModel):
 def _read_point(pair: object) -> tuple[float, float]:
     if not isinstance(pair, list | tuple) or len(pair) != 2:
         raise PydanticCustomError("quantity", "not a pair of H and B")
-    return _read_quantity("A/m", pair[0]), _read_quantity("T", pair[1])
+    return read_quantity("A/m", pair[0]), read_quantity("T", pair[1])
 
 
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
@@ -79,7 +81,7 @@ class MaterialTable(_Table):
 
     @model_validator(mode="before")
     @classmethod
-    def _of_text(cls, given: object) -> object:
+    def of_text(cls, given: object) -> object:
         """Turn a text alone into the table that it stands for."""
         if not isinstance(given, str):
             return given
