@@ -70,6 +70,7 @@ if TYPE_CHECKING:
         residuals,
     )
     from femag.result import Result, solve
+    from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
 
 _HOME = {
@@ -123,6 +124,11 @@ _HOME = {
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
     "solve": "femag.result",
+    "Sample": "femag.study",
+    "Study": "femag.study",
+    "StudyTable": "femag.study",
+    "read_study": "femag.study",
+    "read_table": "femag.study",
     "write_result": "femag.export.result_file",
 }
 
@@ -151,7 +157,10 @@ __all__ = [
     "PotCore",
     "Result",
     "RoundWire",
+    "Sample",
     "Step",
+    "Study",
+    "StudyTable",
     "TabulatedCurve",
     "ToleranceError",
     "Winding",
@@ -175,6 +184,8 @@ __all__ = [
     "read_material",
     "read_measured",
     "read_result",
+    "read_study",
+    "read_table",
     "residuals",
     "solve",
     "write_curve",

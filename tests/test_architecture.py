@@ -17,7 +17,7 @@ LAYERS = (
     ("field",),
     ("quantities",),
     ("result", "current_curve", "target_gap"),
-    ("measured_inductance",),
+    ("measured_inductance", "study"),
     ("export",),
     ("plot",),
     ("answer", "core_answer", "material_answer", "bench_answer", "curve_answer", "gap_answer"),
