@@ -1,7 +1,7 @@
 """Meshes of a section: the one module that touches gmsh.
 
 Straight-sided triangles, so that polygonal sections are represented exactly. The gmsh model is
-global: one meshing at a time in a process.
+global: one meshing at a time in a process, other threads wait.
 """
 
 from __future__ import annotations
@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
+from threading import Lock
 from types import ModuleType
 from typing import Any
 
@@ -39,6 +40,9 @@ CORNER_ROUNDS = 2
 """How often elements at singular corners are divided before the first solution."""
 GROWTH = 0.5
 """Largest element size over the distance from the middle plus the extent of the parts."""
+
+
+_ONE_AT_A_TIME = Lock()
 
 
 @dataclass(frozen=True)
@@ -185,6 +189,11 @@ def _gmsh_session() -> Iterator[ModuleType]:
             f"gmsh does not load ({error}); on Debian or Ubuntu install libgl1 libglu1-mesa "
             "libxcursor1 libxft2 libxinerama1 libgomp1"
         ) from error
+    with _ONE_AT_A_TIME:
+        yield from _initialised(gmsh)
+
+
+def _initialised(gmsh: ModuleType) -> Iterator[ModuleType]:
     gmsh.initialize(interruptible=False, readConfigFiles=False)
     try:
         for name, value in (

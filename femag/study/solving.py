@@ -5,11 +5,20 @@ from __future__ import annotations
 import time
 from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Any
+from functools import lru_cache
+from typing import TYPE_CHECKING, Any
 
 from femag.design_file import design_from_document
 from femag.errors import GapfieldError, MissingLibraryError
 from femag.study.quantities import Value, kept
+
+if TYPE_CHECKING:
+    from femag.design import Design
+    from femag.geometry import Section
+    from femag.mesh import SectionMesh
+
+MESHES = 8
+"""Coarse meshes that a worker keeps: cases that differ in current or material only share one."""
 
 
 @dataclass(frozen=True)
@@ -58,7 +67,8 @@ def solved_case(document: Mapping[str, Any], file: str | None, keep: tuple[str, 
 
     started = time.perf_counter()
     try:
-        result = solve(design_from_document(document, file))
+        design = design_from_document(document, file)
+        result = solve(design, mesh=_coarse_mesh_of(design))
         values = kept(result, keep)
     except MissingLibraryError:
         raise
@@ -70,6 +80,20 @@ def solved_case(document: Mapping[str, Any], file: str | None, keep: tuple[str, 
         return failed(f"{type(error).__name__}: {error}", time.perf_counter() - started)
     seconds = time.perf_counter() - started
     return Answer(values, "", seconds, result.design_hash, result.versions)
+
+
+def _coarse_mesh_of(design: Design) -> SectionMesh:
+    """Return the mesh that a solution starts from: a function of the section alone, so kept."""
+    from femag.design import meshed_section
+
+    return _coarse_mesh(meshed_section(design))
+
+
+@lru_cache(MESHES)
+def _coarse_mesh(section: Section) -> SectionMesh:
+    from femag.mesh import coarse_mesh
+
+    return coarse_mesh(section)
 
 
 def failed(reason: str, seconds: float = 0.0) -> Answer:
