@@ -18,6 +18,7 @@ from femag.command_output import check_targets, make_folder, quantity, shown_pro
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.study_command import study_command
 
 if TYPE_CHECKING:
     from femag.design import Design
@@ -143,6 +144,7 @@ def cores_command(
 app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
+app.command("study")(study_command)
 
 
 @app.command("materials")

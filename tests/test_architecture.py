@@ -20,9 +20,17 @@ LAYERS = (
     ("measured_inductance", "study"),
     ("export",),
     ("plot",),
-    ("answer", "core_answer", "material_answer", "bench_answer", "curve_answer", "gap_answer"),
+    (
+        "answer",
+        "core_answer",
+        "material_answer",
+        "bench_answer",
+        "curve_answer",
+        "gap_answer",
+        "study_answer",
+    ),
     ("command_output",),
-    ("bench_command", "curve_command", "gap_command"),
+    ("bench_command", "curve_command", "gap_command", "study_command"),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

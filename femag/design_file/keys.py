@@ -5,14 +5,19 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterator, Mapping, Sequence
 from functools import cache, partial
-from numbers import Real
 from pathlib import Path
 from typing import Any, get_args, get_origin
 
 from pydantic import BaseModel, BeforeValidator
 
 from femag.design_file.messages import table_in
-from femag.design_file.tables import DesignTable, MaterialTable, read_quantity, read_temperature
+from femag.design_file.tables import (
+    DesignTable,
+    MaterialTable,
+    material_table,
+    read_quantity,
+    read_temperature,
+)
 from femag.errors import InputError
 from femag.materials import is_material_file
 from femag.units import celsius, exact_text, si_value
@@ -55,8 +60,8 @@ def _with_parts(
     inside = document.get(name)
     if field is not None and get_origin(field.annotation) is list:
         return {**document, name: _with_entry(inside or [], inner, rest, value, key)}
-    if inner is MaterialTable and isinstance(inside, str):
-        inside = MaterialTable.of_text(inside)
+    if inner is MaterialTable:
+        inside = material_table(inside)
     if not isinstance(inside, Mapping | None):
         raise InputError(
             f"{inside!r} stands at {name!r} in the base", key=key, accepted=f"{name!r} as a table"
@@ -72,7 +77,7 @@ def _with_entry(
     rest = parts[1:] if number else parts
     if index > len(entries):
         raise InputError(f"the base has {len(entries)} entries of this list", key=key)
-    found = list(entries)
+    found: list[Any] = list(entries)
     if index == len(found):
         found.append({})
     found[index] = _with_parts(found[index], table, rest, value, key) if rest else value
@@ -144,7 +149,7 @@ def plain_value(key: str, value: object) -> Any:
         raise error.changed(key=key) from error
 
 
-def written_number(key: str, value: Real) -> Any:
+def written_number(key: str, value: float) -> Any:
     """Return what stands in a design file for a number in SI (temperatures in C)."""
     unit = unit_of_key(key)
     if not unit:

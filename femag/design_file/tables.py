@@ -56,6 +56,13 @@ def _read_point(pair: object) -> tuple[float, float]:
     return read_quantity("A/m", pair[0]), read_quantity("T", pair[1])
 
 
+def material_table(given: object) -> object:
+    """Return the table that a material's text alone stands for; what is no text, as it is."""
+    if not isinstance(given, str):
+        return given
+    return {"file" if is_material_file(given) else "name": given}
+
+
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
 
 
@@ -81,11 +88,8 @@ class MaterialTable(_Table):
 
     @model_validator(mode="before")
     @classmethod
-    def of_text(cls, given: object) -> object:
-        """Turn a text alone into the table that it stands for."""
-        if not isinstance(given, str):
-            return given
-        return {"file" if is_material_file(given) else "name": given}
+    def _of_text(cls, given: object) -> object:
+        return material_table(given)
 
 
 class DimensionsTable(_Table):

@@ -62,7 +62,7 @@ class Span:
 
 def _between(first: float, last: float, share: float, log: bool) -> float:
     if log:
-        return first * (last / first) ** share
+        return float(first * (last / first) ** share)
     return first + (last - first) * share
 
 

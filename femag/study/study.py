@@ -9,7 +9,6 @@ from concurrent.futures import Executor
 from contextlib import ExitStack
 from dataclasses import dataclass, field
 from functools import cached_property
-from numbers import Real
 from pathlib import Path
 from typing import Any
 
@@ -127,7 +126,7 @@ class Study:
                 store = Path(folder) / "study.sqlite"
             opened = stack.enter_context(self.opened(store))
             opened.start_run(retry)
-            task = Task(self.plan, self.keep, _versions(), limit, executor is not None)
+            task = Task(self.plan, tuple(self.keep), _versions(), limit, executor is not None)
             places = _places(stack, workers, executor, in_flight, opened.counts()["open"])
             run_cases(opened, task, places, progress)
             return table_of(opened)
@@ -266,6 +265,5 @@ def _written_rows(
 def _written(key: str, value: Any) -> Any:
     plain = value.item() if hasattr(value, "item") else value  # numpy's numbers
     unit_of_key(key)
-    if isinstance(plain, Real) and not isinstance(plain, bool):
-        return written_number(key, plain)
-    return plain
+    is_number = isinstance(plain, int | float) and not isinstance(plain, bool)
+    return written_number(key, plain) if is_number else plain

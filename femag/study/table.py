@@ -15,7 +15,7 @@ from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
 from femag.design_file import plain_value, unit_of_key
-from femag.errors import MissingLibraryError
+from femag.errors import InputError, MissingLibraryError
 from femag.study.quantities import ENTRIES, QUANTITIES, unit_of_column
 from femag.study.store import Row, Store
 
@@ -75,6 +75,24 @@ class StudyTable:
         """The varied keys."""
         return tuple(key for axis in self.axes for key in axis.keys)
 
+    def where(self, column: str, value: object) -> StudyTable:
+        """Return the table of the cases that have a value in a column; they are listed then.
+
+        Raises
+        ------
+        InputError
+            If there is no such column or no such case.
+        """
+        values = self.columns.get(column, [])
+        places = [place for place, found in enumerate(values) if found == value]
+        if not places:
+            known = sorted({str(found) for found in values}) if values else self.columns
+            raise InputError("no such case", key=column, value=value, accepted=", ".join(known))
+        columns = {name: [all_[place] for place in places] for name, all_ in self.columns.items()}
+        return StudyTable(
+            columns, self.units, (Axis("case", self.settings, len(places)),), self.about
+        )
+
     def frame(self) -> pandas.DataFrame:
         """Return a pandas frame; ``frame.attrs["units"]`` holds the units.
 
@@ -83,8 +101,7 @@ class StudyTable:
         MissingLibraryError
             If pandas is not installed.
         """
-        pandas = optional("pandas")
-        frame = pandas.DataFrame(self.columns)
+        frame: pandas.DataFrame = optional("pandas").DataFrame(self.columns)
         frame.attrs["units"] = dict(self.units)
         return frame
 
@@ -98,7 +115,7 @@ class StudyTable:
         MissingLibraryError
             If xarray is not installed.
         """
-        xarray = optional("xarray")
+        xarray_ = optional("xarray")
         names = tuple(axis.name for axis in self.axes)
         shape = tuple(axis.size for axis in self.axes)
         coordinates = self._coordinates()
@@ -109,7 +126,8 @@ class StudyTable:
                 grouped.setdefault(_variable(column), []).append(column)
         for variable, columns in grouped.items():
             units = self._units(columns[0])
-            arrays = [_array(self.columns[column]).reshape(shape) for column in columns]
+            texts = variable in ("state", "reason")
+            arrays = [_array(self.columns[column], texts).reshape(shape) for column in columns]
             quantity = variable.split(".")[0]
             if quantity not in ENTRIES:
                 variables[variable] = (names, arrays[0], units)
@@ -118,8 +136,9 @@ class StudyTable:
             labels = [column.removeprefix(f"{variable}.") for column in columns]
             coordinates[entry] = ((entry,), labels, {})
             variables[variable] = ((*names, entry), _stacked(arrays), units)
-        attributes = {name: self.about[name] for name in ("title", "versions") if name in self.about}
-        return xarray.Dataset(variables, coordinates, attributes)
+        attributes = {name: self.about.get(name, "") for name in ("title", "versions")}
+        dataset: xarray.Dataset = xarray_.Dataset(variables, coordinates, attributes)
+        return dataset
 
     def _units(self, column: str) -> dict[str, str]:
         unit = self.units[column]
@@ -143,11 +162,11 @@ def _variable(column: str) -> str:
     return ".".join((quantity, *parts[:1])) if quantity in ENTRIES else column
 
 
-def _array(values: Sequence[Any]) -> Any:
+def _array(values: Sequence[Any], texts: bool = False) -> Any:
     """Return values as an array: numbers with NaN for none, texts, or booleans as 0 and 1."""
     import numpy as np
 
-    if any(isinstance(value, str) for value in values):
+    if texts or any(isinstance(value, str) for value in values):
         return np.array(["" if value is None else str(value) for value in values], dtype=str)
     if all(isinstance(value, int) and not isinstance(value, bool) for value in values):
         return np.array(values, dtype=np.int64)
