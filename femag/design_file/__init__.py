@@ -1,12 +1,12 @@
 """Design files: TOML in and out, checked key by key."""
 
 from femag.design_file.keys import (
+    as_written,
     files_of,
     folder_of,
     plain_value,
     unit_of_key,
     with_key,
-    written_number,
 )
 from femag.design_file.messages import first_error
 from femag.design_file.reading import (
@@ -21,6 +21,7 @@ from femag.design_file.writing import design_document, design_toml
 
 __all__ = [
     "DesignTable",
+    "as_written",
     "check_tables",
     "design_document",
     "design_from_document",
@@ -34,5 +35,4 @@ __all__ = [
     "read_document",
     "unit_of_key",
     "with_key",
-    "written_number",
 ]

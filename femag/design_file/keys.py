@@ -149,10 +149,11 @@ def plain_value(key: str, value: object) -> Any:
         raise error.changed(key=key) from error
 
 
-def written_number(key: str, value: float) -> Any:
-    """Return what stands in a design file for a number in SI (temperatures in C)."""
+def as_written(key: str, value: Any) -> Any:
+    """Return what stands in a design file for a value; numbers are in SI (temperatures in C)."""
     unit = unit_of_key(key)
-    if not unit:
+    value = value.item() if hasattr(value, "item") else value  # numpy's numbers
+    if not unit or isinstance(value, bool) or not isinstance(value, int | float):
         return value
     if unit == CELSIUS:
         return f"{float(value)!r} C"

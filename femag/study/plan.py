@@ -95,12 +95,13 @@ class Plan:
     file: str | None = None
 
     def __post_init__(self) -> None:
-        keys = self.keys
-        for key in keys:
+        keys = [key.replace(".0.", ".") for key in self.keys]
+        for place, key in enumerate(keys):
             unit_of_key(key)
-            others = [other for other in keys if other == key or other.startswith(f"{key}.")]
-            if len(others) > 1:
-                raise InputError("is varied twice", key=others[-1], accepted="each key once")
+            if any(f"{other}.".startswith(f"{key}.") for other in keys[:place]):
+                raise InputError(
+                    "is set already", key=key, accepted="each key once, tables before what is in them"
+                )
         if not keys:
             raise InputError("nothing is varied", key="axes", accepted="one key or more")
         if len(self) > MOST_CASES:
@@ -135,8 +136,11 @@ class Plan:
 
     def _document(self, settings: Mapping[str, Any]) -> dict[str, Any]:
         document = dict(self.base)
-        for key, value in settings.items():
-            document = with_key(document, key, value)
+        try:
+            for key, value in settings.items():
+                document = with_key(document, key, value)
+        except InputError as error:
+            raise error.changed(file=self.file) from error
         return document
 
     def check(self) -> None:

@@ -12,7 +12,7 @@ from typing import Any, Literal, get_args
 
 import numpy as np
 
-from femag.design_file import plain_value, written_number
+from femag.design_file import as_written, plain_value
 from femag.errors import InputError
 from femag.study.plan import MOST_CASES, Factor
 
@@ -57,7 +57,7 @@ class Span:
         value = _between(self.first, self.last, share, self.log)
         rounded = float(f"{value:.{DIGITS}g}")
         low, high = sorted((self.first, self.last))
-        return written_number(self.key, min(max(rounded, low), high))
+        return as_written(self.key, min(max(rounded, low), high))
 
 
 def _between(first: float, last: float, share: float, log: bool) -> float:
@@ -178,7 +178,10 @@ class Sample:
         """
         from scipy.stats import qmc
 
-        spans = [span_of(key, values) for key, values in self.ranges.items()]
+        spans = [
+            span_of(key, [as_written(key, value) for value in values])
+            for key, values in self.ranges.items()
+        ]
         engine = qmc.Sobol if self.method == "sobol" else qmc.LatinHypercube
         points = np.asarray(engine(len(spans), rng=self.seed).random(self.cases))
         rows = tuple(

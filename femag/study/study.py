@@ -13,7 +13,7 @@ from pathlib import Path
 from typing import Any
 
 from femag.design import Design
-from femag.design_file import design_document, read_document, unit_of_key, written_number
+from femag.design_file import as_written, design_document, read_document
 from femag.errors import InputError
 from femag.study.plan import Factor, Plan
 from femag.study.quantities import checked_quantities
@@ -258,12 +258,5 @@ def _written_rows(
 ) -> tuple[tuple[Any, ...], ...]:
     """Return rows as in a design file: numbers in SI become texts with units."""
     return tuple(
-        tuple(_written(key, value) for key, value in zip(keys, row, strict=True)) for row in rows
+        tuple(as_written(key, value) for key, value in zip(keys, row, strict=True)) for row in rows
     )
-
-
-def _written(key: str, value: Any) -> Any:
-    plain = value.item() if hasattr(value, "item") else value  # numpy's numbers
-    unit_of_key(key)
-    is_number = isinstance(plain, int | float) and not isinstance(plain, bool)
-    return written_number(key, plain) if is_number else plain

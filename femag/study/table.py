@@ -200,8 +200,9 @@ def table_of(store: Store) -> StudyTable:
     for key in settings:
         columns[key] = [_plain(key, row.settings[key], known) for row in rows]
     units = dict.fromkeys(columns, "") | {key: unit_of_key(key) for key in settings}
+    values = [row.values or {} for row in rows]
     for column in _kept_columns(rows):
-        columns[column] = [None if row.values is None else row.values.get(column) for row in rows]
+        columns[column] = [kept.get(column) for kept in values]
         units[column] = unit_of_column(column)
     return StudyTable(columns, units, axes, about)
 
