@@ -6,6 +6,8 @@ global: one meshing at a time in a process, other threads wait.
 
 from __future__ import annotations
 
+import ctypes
+import signal
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
@@ -194,7 +196,8 @@ def _gmsh_session() -> Iterator[ModuleType]:
 
 
 def _initialised(gmsh: ModuleType) -> Iterator[ModuleType]:
-    gmsh.initialize(interruptible=False, readConfigFiles=False)
+    with _broken_pipes_as_before():
+        gmsh.initialize(interruptible=False, readConfigFiles=False)
     try:
         for name, value in (
             ("General.Terminal", 0),
@@ -209,6 +212,25 @@ def _initialised(gmsh: ModuleType) -> Iterator[ModuleType]:
         yield gmsh
     finally:
         gmsh.finalize()
+
+
+@contextmanager
+def _broken_pipes_as_before() -> Iterator[None]:
+    """Undo what gmsh does to SIGPIPE: a write to a pipe or socket that is closed would be deadly.
+
+    Python's own `signal` would not do: it sees no changes by others and needs the main thread.
+    """
+    if not hasattr(signal, "SIGPIPE"):
+        yield
+        return
+    get, put = ctypes.pythonapi.PyOS_getsig, ctypes.pythonapi.PyOS_setsig
+    get.restype = put.restype = ctypes.c_void_p
+    put.argtypes = (ctypes.c_int, ctypes.c_void_p)
+    before = get(signal.SIGPIPE)
+    try:
+        yield
+    finally:
+        put(signal.SIGPIPE, before)
 
 
 def _build_surfaces(gmsh: Any, section: Section) -> dict[int, int]:

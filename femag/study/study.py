@@ -211,7 +211,7 @@ def _places(
     open_cases: int,
 ) -> list[Worker]:
     """Return what takes cases: processes that leave with the stack, or slots of an executor."""
-    number = workers or usable_processors()
+    number = usable_processors() if workers is None else workers
     if number < 1:
         raise InputError("no workers", key="workers", value=workers, accepted="1 or more")
     if executor is not None:
