@@ -100,7 +100,9 @@ class Plan:
             unit_of_key(key)
             if any(f"{other}.".startswith(f"{key}.") for other in keys[:place]):
                 raise InputError(
-                    "is set already", key=key, accepted="each key once, tables before what is in them"
+                    "is set already",
+                    key=key,
+                    accepted="each key once, tables before what is in them",
                 )
         if not keys:
             raise InputError("nothing is varied", key="axes", accepted="one key or more")

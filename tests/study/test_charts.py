@@ -22,8 +22,9 @@ GAPS = (2e-3, 0.5e-3, 1e-3, 0.0)
 POST = 10e-3
 
 
-def table(heights: tuple[float, ...] = HEIGHTS, holes: tuple[float, ...] = (0.0, 5e-3)) -> StudyTable:
+def table(heights: tuple[float, ...] = HEIGHTS) -> StudyTable:
     """Cases with numbers by rule: fringing factor 1 + gap/post + height, errors by place."""
+    holes = (0.0, 5e-3)
     rows = [(h, d, g) for h in heights for d in holes for g in GAPS]
     columns: dict[str, list] = {
         "case": list(range(len(rows))),
@@ -129,7 +130,9 @@ def test_cells_show_errors_in_per_cent_darker_when_larger() -> None:
     columns = table().columns | {"hand.error.round edge": [errors[gap] for gap in GAPS] * 4}
     shown = replace(table(), columns=columns)
     ax = fm.plot.hand_error_chart(shown, "round edge", Figure().add_subplot())
-    cells = sorted(zip(ax.texts, ax.collections, strict=True), key=lambda cell: cell[0].get_position()[0])
+    cells = sorted(
+        zip(ax.texts, ax.collections, strict=True), key=lambda cell: cell[0].get_position()[0]
+    )
     assert [text.get_text() for text, _ in cells] == ["-0.4"] * 2 + ["+6.0"] * 2 + ["+31"] * 2
     tones = [float(patch.get_facecolor()[0][0]) for _, patch in cells]
     assert tones[0] > tones[2] > tones[4]

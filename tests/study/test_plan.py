@@ -161,31 +161,64 @@ def test_a_case_is_known_by_design_files_and_versions(folder: Path) -> None:
 @pytest.mark.parametrize(
     ("text", "problem"),
     [
-        ('[axes]\n"gap.lenght" = ["1 mm"]', "gap.lenght: unknown key; accepted: nearest known key: 'gap.length'"),
+        (
+            '[axes]\n"gap.lenght" = ["1 mm"]',
+            "gap.lenght: unknown key; accepted: nearest known key: 'gap.length'",
+        ),
         ('[axes]\n"gap.length" = []', "gap.length: empty"),
-        ('[axes]\n"gap.length" = ["1 mm", "2 A"]', "gap.length = '2 A': 'A' is not a unit of this quantity"),
+        (
+            '[axes]\n"gap.length" = ["1 mm", "2 A"]',
+            "gap.length = '2 A': 'A' is not a unit of this quantity",
+        ),
         ('[axes]\n"gap.length" = [0.5]', "gap.length = 0.5: the unit is missing"),
         ('[axes]\n"gap.length" = ["1 mm", "1 mm"]', "stands there twice"),
-        ('[axes]\n"gap.length" = ["20 mm", "30 mm"]', "none of the 2 cases is a design; the first: "),
-        ('[axes]\n"winding.turns" = [10, 2.5]', "winding.turns = 2.5: not usable; accepted: a whole number"),
+        (
+            '[axes]\n"gap.length" = ["20 mm", "30 mm"]',
+            "none of the 2 cases is a design; the first: ",
+        ),
+        (
+            '[axes]\n"winding.turns" = [10, 2.5]',
+            "winding.turns = 2.5: not usable; accepted: a whole number",
+        ),
         ('[axes]\n"gap.2.length" = ["1 mm"]', "gap.2.length: the base has 1 entries of this list"),
         ('[axes]\n"gap.length" = "1 mm:2 mm"', "not a row of steps"),
         ('[axes]\n"gap.length" = "1 mm:2 mm:0"', "0 steps"),
         ('[axes]\n"gap.length" = "0 mm:2 mm:5:log"', "not a range"),
         ("", "nothing is varied"),
-        ('axis = 1\n[axes]\n"gap.length" = ["1 mm"]', "axis: unknown key; accepted: nearest known key: 'axes'"),
+        (
+            'axis = 1\n[axes]\n"gap.length" = ["1 mm"]',
+            "axis: unknown key; accepted: nearest known key: 'axes'",
+        ),
         ('keep = ["inductanse"]\n[axes]\n"gap.length" = ["1 mm"]', "nearest known: 'inductance'"),
-        ('[axes]\n"gap.length" = ["1 mm"]\n[[case]]\n"gap.length" = "2 mm"', "gap.length: is set already"),
-        ('[axes]\n"core.material.temperature" = ["60 C"]\n"core.material" = ["mnzn-power"]', "core.material: is set already"),
-        ('[[case]]\n"gap.length" = "2 mm"\n[[case]]\n"winding.turns" = 2', "stands in some cases only"),
-        ('[[together]]\n"gap.length" = ["2 mm"]\n"winding.turns" = [2, 3]', "lists of different lengths"),
+        (
+            '[axes]\n"gap.length" = ["1 mm"]\n[[case]]\n"gap.length" = "2 mm"',
+            "gap.length: is set already",
+        ),
+        (
+            '[axes]\n"core.material.temperature" = ["60 C"]\n"core.material" = ["mnzn-power"]',
+            "core.material: is set already",
+        ),
+        (
+            '[[case]]\n"gap.length" = "2 mm"\n[[case]]\n"winding.turns" = 2',
+            "stands in some cases only",
+        ),
+        (
+            '[[together]]\n"gap.length" = ["2 mm"]\n"winding.turns" = [2, 3]',
+            "lists of different lengths",
+        ),
         ('[sample]\ncases = 100\n[ranges]\n"gap.length" = ["1 mm", "2 mm"]', "no power of 2"),
-        ('[sample]\ncases = 4\n[ranges]\n"gap.length" = ["1 mm", "2 A"]', "is not a unit of this quantity"),
-        ('[sample]\ncases = 4', "sample: stands alone"),
+        (
+            '[sample]\ncases = 4\n[ranges]\n"gap.length" = ["1 mm", "2 A"]',
+            "is not a unit of this quantity",
+        ),
+        ("[sample]\ncases = 4", "sample: stands alone"),
         ('[ranges]\n"gap.length" = ["1 mm", "2 mm"]', "ranges: stands alone"),
-        ('[sample]\nmethod = "grid"\ncases = 4\n[ranges]\n"gap.length" = ["1 mm", "2 mm"]', "'sobol' or 'latin hypercube'"),
+        (
+            '[sample]\nmethod = "grid"\ncases = 4\n[ranges]\n"gap.length" = ["1 mm", "2 mm"]',
+            "'sobol' or 'latin hypercube'",
+        ),
     ],
-)  # fmt: skip
+)
 def test_bad_plans_are_one_line_each(folder: Path, text: str, problem: str) -> None:
     with pytest.raises(fm.InputError) as refused:
         study_of(folder, text).plan.check()

@@ -101,9 +101,7 @@ def test_a_second_run_solves_nothing_again(coarse: fm.Design, tmp_path: Path) ->
     assert [(state.done, state.here) for state in seen] == [(2, 0)]
 
 
-def test_the_first_interrupt_finishes_what_is_in_flight(
-    coarse: fm.Design, tmp_path: Path
-) -> None:
+def test_the_first_interrupt_finishes_what_is_in_flight(coarse: fm.Design, tmp_path: Path) -> None:
     study = fm.Study(coarse, {"gap.length": [(5 + n) * 1e-4 for n in range(6)]})
 
     def interrupt(state: Progress) -> None:
@@ -124,6 +122,7 @@ def test_the_first_interrupt_finishes_what_is_in_flight(
     assert whole.columns == study.run(executor=AtOnce()).columns
 
 
+@pytest.mark.slow
 def test_a_stuck_process_is_ended_alone_and_tried_again_on_request(
     coarse: fm.Design, tmp_path: Path
 ) -> None:
