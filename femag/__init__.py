@@ -78,6 +78,7 @@ if TYPE_CHECKING:
     from femag.quantities import CoreLoss, LossBudget
     from femag.result import Result, solve
     from femag.ripple import Ripple
+    from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
     from femag.winding_matrix import WindingMatrix, winding_matrix
 
@@ -142,6 +143,11 @@ _HOME = {
     "KeepOut": "femag.copper_distance",
     "keep_out": "femag.copper_distance",
     "solve": "femag.result",
+    "Sample": "femag.study",
+    "Study": "femag.study",
+    "StudyTable": "femag.study",
+    "read_study": "femag.study",
+    "read_table": "femag.study",
     "write_result": "femag.export.result_file",
     "write_field": "femag.export.mesh_files",
     "write_mesh": "femag.export.mesh_files",
@@ -178,8 +184,11 @@ __all__ = [
     "Result",
     "Ripple",
     "RoundWire",
+    "Sample",
     "Steinmetz",
     "Step",
+    "Study",
+    "StudyTable",
     "TabulatedCurve",
     "ToleranceError",
     "Winding",
@@ -206,6 +215,8 @@ __all__ = [
     "read_measured",
     "read_result",
     "read_ripple",
+    "read_study",
+    "read_table",
     "residuals",
     "solve",
     "steinmetz_through",

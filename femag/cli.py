@@ -20,6 +20,7 @@ from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
 from femag.keep_out_command import keep_out_command
 from femag.machine_command import check_command, report_command
+from femag.study_command import study_command
 from femag.winding_command import windings_command
 
 if TYPE_CHECKING:
@@ -163,6 +164,7 @@ app.command("windings")(windings_command)
 app.command("check")(check_command)
 app.command("report")(report_command)
 app.command("keepout")(keep_out_command)
+app.command("study")(study_command)
 
 
 @app.command("materials")

@@ -13,6 +13,7 @@ from femag.field.adapt import adapted_solution, inductance_bounds
 from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
+from femag.mesh import SectionMesh
 from femag.quantities import (
     CoreLoss,
     LossBudget,
@@ -186,6 +187,7 @@ def solve(
     current: float | None = None,
     tolerance: float | None = None,
     progress: Callable[[FieldSolution], None] | None = None,
+    mesh: SectionMesh | None = None,
 ) -> Result:
     """Return inductance between bounds, and everything that goes with it, for one current.
 
@@ -199,6 +201,8 @@ def solve(
         Wanted half width between the bounds over the value; the design's own when left out.
     progress : callable, optional
         Called with the field solution of every refinement.
+    mesh : SectionMesh, optional
+        Mesh of the design's section to start from; a coarse one when left out.
 
     Raises
     ------
@@ -216,7 +220,7 @@ def solve(
         tolerance=design.tolerance if tolerance is None else tolerance,
     )
     solution, refinements = adapted_solution(
-        field_problem(design), design.current, design.tolerance, progress
+        field_problem(design), design.current, design.tolerance, progress, mesh
     )
     inductance, idle = inductance_bounds(solution), solution.idle
     hand_input = (design.core, design.gaps, design.turns, design.current, design.material)

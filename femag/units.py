@@ -126,10 +126,8 @@ def si_value(text: object, unit: str) -> float:
 def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
     import pint
 
-    registry = _registry()
     try:
-        units = (registry.parse_units(_POWER.sub(r"**\1", text)) for text in (name, unit))
-        factor = registry.Quantity(1.0, next(units)).to(next(units)).magnitude
+        return _unit_ratio(name, unit)
     except pint.DimensionalityError as error:
         raise InputError(
             f"{name!r} is not a unit of this quantity", value=text, accepted=accepted
@@ -138,7 +136,14 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
         near = difflib.get_close_matches(name, _names(), n=1, cutoff=0.7)
         hint = f", nearest known: {near[0]!r}" if near else ""
         raise InputError(f"unknown unit {name!r}{hint}", value=text, accepted=accepted) from error
-    return float(factor)
+
+
+@cache
+def _unit_ratio(name: str, unit: str) -> float:
+    """Return how many of `unit` one of `name` is; pint's errors pass."""
+    registry = _registry()
+    units = (registry.parse_units(_POWER.sub(r"**\1", text)) for text in (name, unit))
+    return float(registry.Quantity(1.0, next(units)).to(next(units)).magnitude)
 
 
 def _names() -> list[str]:

@@ -17,7 +17,7 @@ LAYERS = (
     ("field",),
     ("quantities",),
     ("result", "current_curve", "target_gap", "winding_matrix", "copper_distance", "environment"),
-    ("measured_inductance",),
+    ("measured_inductance", "study"),
     ("export",),
     ("plot",),
     ("copper_answer", "loss_answer"),
@@ -30,6 +30,7 @@ LAYERS = (
         "gap_answer",
         "winding_answer",
         "keep_out_answer",
+        "study_answer",
     ),
     ("command_output",),
     (
@@ -39,6 +40,7 @@ LAYERS = (
         "winding_command",
         "keep_out_command",
         "machine_command",
+        "study_command",
     ),
     ("cli",),
 )

@@ -27,14 +27,16 @@ from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
 
 
-def _read_quantity(unit: str, text: object) -> float:
+def read_quantity(unit: str, text: object) -> float:
+    """Return the number in SI of a text, for pydantic."""
     try:
         return si_value(text, unit)
     except InputError as error:
         raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
 
 
-def _read_temperature(text: object) -> float:
+def read_temperature(text: object) -> float:
+    """Return the degrees Celsius of a text, for pydantic."""
     try:
         return celsius(text)
     except InputError as error:
@@ -42,17 +44,17 @@ def _read_temperature(text: object) -> float:
 
 
 Length = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "m")), Field(description=ACCEPTED["m"])
+    float, BeforeValidator(partial(read_quantity, "m")), Field(description=ACCEPTED["m"])
 ]
 Current = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
+    float, BeforeValidator(partial(read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
 Frequency = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "Hz")), Field(description=ACCEPTED["Hz"])
+    float, BeforeValidator(partial(read_quantity, "Hz")), Field(description=ACCEPTED["Hz"])
 ]
-Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
-CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
-FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
+Temperature = Annotated[float, BeforeValidator(read_temperature), Field(description=TEMPERATURE)]
+CoreFactor = Annotated[float, BeforeValidator(partial(read_quantity, "1/m"))]
+FluxDensity = Annotated[float, BeforeValidator(partial(read_quantity, "T"))]
 
 
 class _Table(BaseModel):
@@ -62,7 +64,14 @@ class _Table(BaseModel):
 def _read_point(pair: object) -> tuple[float, float]:
     if not isinstance(pair, list | tuple) or len(pair) != 2:
         raise PydanticCustomError("quantity", "not a pair of H and B")
-    return _read_quantity("A/m", pair[0]), _read_quantity("T", pair[1])
+    return read_quantity("A/m", pair[0]), read_quantity("T", pair[1])
+
+
+def material_table(given: object) -> object:
+    """Return the table that a material's text alone stands for; what is no text, as it is."""
+    if not isinstance(given, str):
+        return given
+    return {"file" if is_material_file(given) else "name": given}
 
 
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
@@ -95,10 +104,7 @@ class MaterialTable(_Table):
     @model_validator(mode="before")
     @classmethod
     def _of_text(cls, given: object) -> object:
-        """Turn a text alone into the table that it stands for."""
-        if not isinstance(given, str):
-            return given
-        return {"file" if is_material_file(given) else "name": given}
+        return material_table(given)
 
 
 class DimensionsTable(_Table):
@@ -255,7 +261,7 @@ def _read_sample(pair: object) -> tuple[float, float]:
         raise PydanticCustomError("quantity", "not pairs of a share of the period and a current")
     if isinstance(pair[0], bool) or not isinstance(pair[0], int | float):
         raise PydanticCustomError("quantity", "a share of the period is no number")
-    return float(pair[0]), _read_quantity("A", pair[1])
+    return float(pair[0]), read_quantity("A", pair[1])
 
 
 class DriveTable(_Table):

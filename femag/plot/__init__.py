@@ -13,14 +13,18 @@ from femag.plot.curve_figures import (
 from femag.plot.figure_file import write_figure, write_panels
 from femag.plot.flux_map import flux_map, gap_map
 from femag.plot.loop_figure import loop_figure, waveform_figure
+from femag.plot.study_figures import al_chart, fringing_chart, hand_error_chart
 
 __all__ = [
+    "al_chart",
     "copper_map",
     "core_drawing",
     "core_flux_figure",
     "core_loss_map",
     "flux_map",
+    "fringing_chart",
     "gap_map",
+    "hand_error_chart",
     "inductance_figure",
     "keep_out_chart",
     "layer_bars",
