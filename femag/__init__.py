@@ -31,6 +31,7 @@ if TYPE_CHECKING:
         read_capture,
     )
     from femag.copper_distance import KeepOut, keep_out
+    from femag.coupled_windings import WindingMatrix, winding_matrix
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design, read_ripple
@@ -80,7 +81,6 @@ if TYPE_CHECKING:
     from femag.ripple import Ripple
     from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
-    from femag.winding_matrix import WindingMatrix, winding_matrix
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -151,8 +151,8 @@ _HOME = {
     "write_result": "femag.export.result_file",
     "write_field": "femag.export.mesh_files",
     "write_mesh": "femag.export.mesh_files",
-    "WindingMatrix": "femag.winding_matrix",
-    "winding_matrix": "femag.winding_matrix",
+    "WindingMatrix": "femag.coupled_windings",
+    "winding_matrix": "femag.coupled_windings",
 }
 
 __all__ = [

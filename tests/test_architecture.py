@@ -16,7 +16,7 @@ LAYERS = (
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "current_curve", "target_gap", "winding_matrix", "copper_distance", "environment"),
+    ("result", "current_curve", "target_gap", "coupled_windings", "copper_distance", "environment"),
     ("measured_inductance", "study"),
     ("export",),
     ("plot",),
