@@ -10,7 +10,7 @@ from rich.text import Text
 
 from femag.design import Design
 from femag.geometry import Gap
-from femag.quantities import WoundCopper
+from femag.quantities import Pull, WoundCopper
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
 
@@ -28,7 +28,7 @@ def print_answer(result: Result, console: Console) -> None:
     if design.title:
         lines.append(Text(design.title, style="bold"))
     lines += [described(design), "", _inductances(result), "", _flux_densities(result)]
-    lines += [Text(_where_it_saturates(result)), ""]
+    lines += [Text(_where_it_saturates(result)), Text(_pulls(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
@@ -144,6 +144,31 @@ def _where_it_saturates(result: Result) -> str:
         f"Saturates first: {fullest.name}. Half, 90 % and 99 % of the core's volume lie below "
         f"{levels} T."
     )
+
+
+def _pulls(result: Result) -> str:
+    """Say what the halves and the faces of the gaps are pulled together with."""
+    force = result.force
+    apart = max(_apart_ways(pull) for pull in (force.halves, *force.gaps))
+    strongest: dict[str, Pull] = {}
+    for pull in force.gaps:
+        leg = f"{pull.name.partition(' gap')[0]} gap"
+        strongest[leg] = max(strongest.get(leg, pull), pull, key=lambda one: one.force)
+    faces = "".join(
+        f" Faces of the {leg}: {with_unit(pull.force, 'N', 3)}, "
+        f"{with_unit(pull.pressure, 'Pa', 3)}."
+        for leg, pull in strongest.items()
+    )
+    return (
+        f"Pull of the halves at {result.current:g} A: {with_unit(force.halves.force, 'N', 3)} on "
+        f"the {force.halves.name}.{faces} Estimates, {100 * apart:.1g} % apart."
+    )
+
+
+def _apart_ways(pull: Pull) -> float:
+    """Return how far the estimates of a pull are apart, over their mean."""
+    estimates = (*pull.stress_of_sides, *pull.work_of_sides)
+    return (max(estimates) - min(estimates)) / abs(pull.force) if pull.force else 0.0
 
 
 def _copper(result: Result) -> Table:

@@ -14,9 +14,11 @@ from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.quantities import (
+    Force,
     SectionMean,
     VolumeShare,
     WoundCopper,
+    force_of,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
@@ -74,6 +76,8 @@ class Result:
         Flux density, T, that half, 90 % and 99 % of the core's volume stay below.
     copper : tuple of WoundCopper
         Layers, wire and resistance of every winding that has a conductor.
+    force : Force
+        Pull of the halves and of the faces of every gap, N; estimates.
     unknowns, refinements : int
         Unknowns of both sides on the last mesh; number of refinements.
     seconds : float
@@ -101,6 +105,7 @@ class Result:
     section_means: tuple[SectionMean, ...]
     volume_shares: tuple[VolumeShare, ...]
     copper: tuple[WoundCopper, ...]
+    force: Force
     unknowns: int
     refinements: int
     seconds: float
@@ -210,6 +215,7 @@ def solve(
         section_means=section_means(design, solution),
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
+        force=force_of(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,

@@ -14,6 +14,7 @@ FOLDERS = (
     "sphere",
     "nonlinear_pot",
     "round_post_fringing",
+    "gap_force",
     "finite_post",
     "pot_core_26_16",
     "round_leg_3d",

@@ -13,7 +13,7 @@ from femag.export.document import Entry, check_against_design, document_of_file
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
-from femag.quantities import SectionMean, VolumeShare, WoundCopper
+from femag.quantities import Force, Pull, SectionMean, VolumeShare, WoundCopper
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -68,6 +68,24 @@ class CopperEntry(Entry):
     layers_in_sections: tuple[int, ...]
 
 
+class PullEntry(Entry):
+    """An attraction along the axis: N, and Pa on an area in m2; of sides: flux, potential."""
+
+    name: str
+    force: float
+    pressure: float
+    area: float
+    stress_of_sides: tuple[float, float]
+    work_of_sides: tuple[float, float]
+
+
+class ForceEntry(Entry):
+    """Pull of the halves, on what bears it, and of the faces of every gap."""
+
+    halves: PullEntry
+    gaps: list[PullEntry]
+
+
 class ResultDocument(Entry):
     """Everything in a result but the fields, SI."""
 
@@ -93,6 +111,7 @@ class ResultDocument(Entry):
     section_means: list[SectionMeanEntry]
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
+    force: ForceEntry
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -167,6 +186,10 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
+        force=ForceEntry(
+            halves=_pull_entry(result.force.halves),
+            gaps=[_pull_entry(pull) for pull in result.force.gaps],
+        ),
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
@@ -177,6 +200,14 @@ def _document(result: Result) -> ResultDocument:
 
 def _bounds_entry(bounds: Bounds) -> BoundsEntry:
     return BoundsEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper)
+
+
+def _pull_entry(pull: Pull) -> PullEntry:
+    return PullEntry(**vars(pull), force=pull.force, pressure=pull.pressure)
+
+
+def _pull(entry: PullEntry) -> Pull:
+    return Pull(**entry.model_dump(exclude={"force", "pressure"}))
 
 
 def _bounds_or_none(entry: BoundsEntry | None) -> Bounds | None:
@@ -201,6 +232,9 @@ def _result(document: ResultDocument, file: str) -> Result:
         section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
         volume_shares=tuple(VolumeShare(**s.model_dump()) for s in document.volume_shares),
         copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
+        force=Force(
+            _pull(document.force.halves), tuple(_pull(pull) for pull in document.force.gaps)
+        ),
         unknowns=document.unknowns,
         refinements=document.refinements,
         seconds=document.seconds,
