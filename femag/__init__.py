@@ -69,8 +69,12 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.part_tolerances import PartTolerances
     from femag.result import Result, solve
+    from femag.sensitivities import sensitivities
     from femag.target_gap import gap_for
+    from femag.target_turns import turns_for
+    from femag.tolerance_budget import sampled_spread, tolerance_budget
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -121,7 +125,12 @@ _HOME = {
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
     "read_result": "femag.export.result_file",
+    "PartTolerances": "femag.part_tolerances",
     "gap_for": "femag.target_gap",
+    "sampled_spread": "femag.tolerance_budget",
+    "sensitivities": "femag.sensitivities",
+    "tolerance_budget": "femag.tolerance_budget",
+    "turns_for": "femag.target_turns",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
 }
@@ -148,6 +157,7 @@ __all__ = [
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
+    "PartTolerances",
     "PotCore",
     "Result",
     "RoundWire",
@@ -176,7 +186,11 @@ __all__ = [
     "read_measured",
     "read_result",
     "residuals",
+    "sampled_spread",
+    "sensitivities",
     "solve",
+    "tolerance_budget",
+    "turns_for",
     "write_curve",
     "write_result",
 ]

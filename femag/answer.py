@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+from femag.answer_table import columns as columns
 from femag.design import Design
 from femag.geometry import Gap
 from femag.quantities import Pull, WoundCopper
 from femag.result import Result
+from femag.tolerance_answer import budget_lines
 from femag.units import with_common_unit, with_unit
 
 WIDTH = 80
@@ -31,6 +31,8 @@ def print_answer(result: Result, console: Console) -> None:
     lines += [Text(_where_it_saturates(result)), Text(_pulls(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
+    if result.tolerance_budget is not None:
+        lines += [*budget_lines(result.tolerance_budget), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
@@ -227,14 +229,6 @@ def _hand_caveat(result: Result) -> list[Text]:
             "the shape of the gap only."
         ),
     ]
-
-
-def columns(*names: str, words: Sequence[str], gap: int = 2) -> Table:
-    """Return an empty table without lines: columns of `words` to the left, numbers to the right."""
-    table = Table(box=None, padding=(0, gap, 0, 0), pad_edge=False, header_style="underline")
-    for name in names:
-        table.add_column(name, justify="left" if name in words else "right", overflow="fold")
-    return table
 
 
 def _provenance(result: Result) -> str:

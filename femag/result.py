@@ -25,6 +25,7 @@ from femag.quantities import (
     volume_shares,
     wound_copper,
 )
+from femag.tolerance_budget import ToleranceBudget, tolerance_budget
 
 LIBRARIES = ("gapfield", "numpy", "scipy", "scikit-fem", "gmsh")
 
@@ -90,6 +91,8 @@ class Result:
         Flux linkage in Wb without current from either side; None without magnets.
     magnet_coenergy : Bounds or None
         Co-energy without current, J, which is below 0; None without magnets.
+    tolerance_budget : ToleranceBudget or None
+        What the design's tolerances do to the inductance; None where it gives none.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -113,6 +116,7 @@ class Result:
     design_hash: str
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
+    tolerance_budget: ToleranceBudget | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -223,6 +227,7 @@ def solve(
         design_hash=design_hash(design),
         magnet_flux_linkage_of_sides=idle.flux_linkage_of_sides if idle else None,
         magnet_coenergy=idle.coenergy if idle else None,
+        tolerance_budget=tolerance_budget(design, solution) if design.part_tolerances else None,
         solution=solution,
     )
 

@@ -38,6 +38,7 @@ from femag.geometry import (
     catalogue_core,
     core_of_family,
 )
+from femag.part_tolerances import PartTolerances
 
 
 def read_design(path: str | Path) -> Design:
@@ -103,7 +104,12 @@ def _design(table: DesignTable, folder: Path) -> Design:
         driven=tuple(table.drive.winding),
         title=table.title,
         detail=table.solve.detail,
+        part_tolerances=_part_tolerances(table),
     )
+
+
+def _part_tolerances(table: DesignTable) -> PartTolerances | None:
+    return None if table.tolerance is None else PartTolerances(**table.tolerance.model_dump())
 
 
 def _core(table: CoreTable, folder: Path) -> Core:

@@ -12,6 +12,7 @@ from femag.design import Design
 from femag.design_file.tables import METALS
 from femag.geometry import Conductor, Core, Foil, Gap, LitzWire, RoundWire, Winding
 from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, TabulatedCurve
+from femag.part_tolerances import SHARES, PartTolerances
 from femag.units import exact_text
 
 Document = dict[str, Any]
@@ -31,6 +32,8 @@ def design_document(design: Design) -> Document:
         document["solve"]["detail"] = design.detail
     if design.driven:
         document["drive"]["winding"] = list(design.driven)
+    if design.part_tolerances is not None:
+        document["tolerance"] = _tolerance_document(design.part_tolerances)
     return document
 
 
@@ -94,6 +97,14 @@ def _gap_document(gap: Gap) -> Document:
             "recoil_permeability": float(gap.magnet.recoil_permeability),
         }
     return document
+
+
+def _tolerance_document(tolerances: PartTolerances) -> Document:
+    return {
+        name: float(half) if name in SHARES else exact_text(half, "m", "m")
+        for name, half in asdict(tolerances).items()
+        if half
+    }
 
 
 def _winding_document(winding: Winding) -> Document:

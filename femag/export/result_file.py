@@ -10,6 +10,7 @@ from pydantic import Field
 from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
 from femag.export.document import Entry, check_against_design, document_of_file
+from femag.export.tolerance_entry import ToleranceBudgetEntry, budget_entry, budget_of_entry
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
@@ -112,6 +113,7 @@ class ResultDocument(Entry):
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
     force: ForceEntry
+    tolerance_budget: ToleranceBudgetEntry | None = None
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -190,6 +192,7 @@ def _document(result: Result) -> ResultDocument:
             halves=_pull_entry(result.force.halves),
             gaps=[_pull_entry(pull) for pull in result.force.gaps],
         ),
+        tolerance_budget=budget_entry(result.tolerance_budget) if result.tolerance_budget else None,
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
@@ -240,4 +243,7 @@ def _result(document: ResultDocument, file: str) -> Result:
         seconds=document.seconds,
         versions=document.versions,
         design_hash=document.design_hash,
+        tolerance_budget=(
+            budget_of_entry(document.tolerance_budget) if document.tolerance_budget else None
+        ),
     )

@@ -27,6 +27,7 @@ from femag.geometry.effective import (
     effective_parameters,
 )
 from femag.geometry.families import FAMILIES, core_of_family
+from femag.geometry.gap_change import changed_gaps, with_gap_length
 from femag.geometry.gap_faces import Step
 from femag.geometry.gaps import Gap, gap_length
 from femag.geometry.layers import (
@@ -106,6 +107,7 @@ __all__ = [
     "Winding",
     "catalogue",
     "catalogue_core",
+    "changed_gaps",
     "coil_regions",
     "core_cuts",
     "core_factor",
@@ -135,4 +137,5 @@ __all__ = [
     "turned_regions",
     "upper_half",
     "winding_room",
+    "with_gap_length",
 ]

@@ -5,7 +5,10 @@ from femag.materials.curves import (
     FroehlichCurve,
     LinearCurve,
     MagnetisationCurve,
+    ResaturatedCurve,
     ScaledCurve,
+    with_permeability,
+    with_saturation,
 )
 from femag.materials.diagnosis import curve_through
 from femag.materials.library import library_material, material, material_library
@@ -19,6 +22,7 @@ __all__ = [
     "LinearCurve",
     "MagnetisationCurve",
     "Material",
+    "ResaturatedCurve",
     "ScaledCurve",
     "TabulatedCurve",
     "curve_through",
@@ -27,4 +31,6 @@ __all__ = [
     "material",
     "material_library",
     "read_material",
+    "with_permeability",
+    "with_saturation",
 ]
