@@ -33,6 +33,7 @@ if TYPE_CHECKING:
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design
+    from femag.design_slopes import sensitivities
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.curve_file import read_curve, write_curve
     from femag.export.result_file import read_result, write_result
@@ -71,10 +72,9 @@ if TYPE_CHECKING:
     )
     from femag.part_tolerances import PartTolerances
     from femag.result import Result, solve
-    from femag.sensitivities import sensitivities
     from femag.target_gap import gap_for
     from femag.target_turns import turns_for
-    from femag.tolerance_budget import sampled_spread, tolerance_budget
+    from femag.tolerance_budget import sampled_spread
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -128,8 +128,7 @@ _HOME = {
     "PartTolerances": "femag.part_tolerances",
     "gap_for": "femag.target_gap",
     "sampled_spread": "femag.tolerance_budget",
-    "sensitivities": "femag.sensitivities",
-    "tolerance_budget": "femag.tolerance_budget",
+    "sensitivities": "femag.design_slopes",
     "turns_for": "femag.target_turns",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
@@ -189,7 +188,6 @@ __all__ = [
     "sampled_spread",
     "sensitivities",
     "solve",
-    "tolerance_budget",
     "turns_for",
     "write_curve",
     "write_result",

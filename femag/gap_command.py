@@ -23,7 +23,13 @@ FluxDensityOption = Annotated[
 TurnsOption = Annotated[int | None, typer.Option(help="Turns instead of the design's.")]
 SampleOption = Annotated[
     int | None,
-    typer.Option("--sample", metavar="N", help="Solve N samples of the tolerances as well."),
+    typer.Option(
+        "--sample",
+        metavar="N",
+        min=2,
+        max=100_000,
+        help="Solve N samples of the tolerances as well.",
+    ),
 ]
 JsonOption = Annotated[
     str | None,

@@ -9,6 +9,7 @@ from functools import cached_property
 from typing import Any
 
 import numpy as np
+from scipy.interpolate import pchip_interpolate
 
 from femag.design import Design, design_hash
 from femag.errors import InputError, NumericalError, number
@@ -26,6 +27,8 @@ from femag.tolerance_budget import ToleranceBudget, tolerance_budget
 MOST_SOLUTIONS = 12
 SHARE = 0.5
 """Share of the tolerance that the middle of the bounds may be off; the bounds have the rest."""
+TABLE = 60
+"""Gaps at which every hand formula is tabulated."""
 STEP = 1e-4
 """Change of the gap for its derivative, over the gap."""
 
@@ -300,13 +303,14 @@ def _longest_gap(design: Design) -> float:
 def _hand_gaps(design: Design, target: float) -> tuple[HandGap, ...]:
     """Return the gap that each formula asks for, to a thousandth."""
     short, long = _shortest_gap(design), _longest_gap(design)
-    lengths = np.geomspace(short, long, 60)
+    lengths = np.geomspace(short, long, TABLE)
     tables = np.array([_hand_inductances(with_gap(design, float(length))) for length in lengths])
     gaps = []
     for formula, column in zip(FORMULAS, tables.T, strict=True):
         falling = np.minimum.accumulate(column)  # some formulas turn up again at long gaps
         reached = falling[0] > target > falling[-1]
-        gap = float(np.exp(np.interp(-np.log(target), -np.log(falling), np.log(lengths))))
+        reluctance, place = np.unique(-np.log(falling), return_index=True)
+        gap = float(np.exp(pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))))
         gaps.append(HandGap(formula.name, gap if reached else None))
     return tuple(gaps)
 

@@ -19,7 +19,7 @@ LAYERS = (
     ("quantities",),
     ("tolerance_budget",),
     ("result", "current_curve", "target_gap"),
-    ("sensitivities", "target_turns"),
+    ("design_slopes", "target_turns"),
     ("measured_inductance",),
     ("export",),
     ("plot",),

@@ -185,17 +185,17 @@ class ResaturatedCurve:
     ----------
     of : MagnetisationCurve
         The material.
-    factor : float
+    share : float
         s, above 0.
     """
 
     of: MagnetisationCurve
-    factor: float
+    share: float
 
     def __post_init__(self) -> None:
         accepted = "a number above 0"
-        if not 0.0 < number(self.factor, "factor", accepted) < np.inf:
-            raise InputError("out of range", key="factor", value=self.factor, accepted=accepted)
+        if not 0.0 < number(self.share, "share", accepted) < np.inf:
+            raise InputError("out of range", key="share", value=self.share, accepted=accepted)
 
     @property
     def is_linear(self) -> bool:
@@ -210,27 +210,27 @@ class ResaturatedCurve:
     @property
     def label(self) -> str:
         """One line for tables and figures."""
-        return f"{self.of.label}, saturating at {self.factor:.4g} of that"
+        return f"{self.of.label}, saturating at {self.share:.4g} of that"
 
     def flux_density(self, field_strength: Array) -> Array:
         """B in T for H in A/m."""
-        return self.factor * self.of.flux_density(field_strength / self.factor)
+        return self.share * self.of.flux_density(field_strength / self.share)
 
     def field_strength(self, flux_density: Array) -> Array:
         """H in A/m for B in T."""
-        return self.factor * self.of.field_strength(flux_density / self.factor)
+        return self.share * self.of.field_strength(flux_density / self.share)
 
     def differential_permeability(self, field_strength: Array) -> Array:
         """dB/dH in H/m at H in A/m."""
-        return self.of.differential_permeability(field_strength / self.factor)
+        return self.of.differential_permeability(field_strength / self.share)
 
     def coenergy_density(self, field_strength: Array) -> Array:
         """Integral of B dH from 0 to H, J/m3."""
-        return self.factor**2 * self.of.coenergy_density(field_strength / self.factor)
+        return self.share**2 * self.of.coenergy_density(field_strength / self.share)
 
     def energy_density(self, flux_density: Array) -> Array:
         """Integral of H dB from 0 to B, J/m3."""
-        return self.factor**2 * self.of.energy_density(flux_density / self.factor)
+        return self.share**2 * self.of.energy_density(flux_density / self.share)
 
 
 @dataclass(frozen=True)
