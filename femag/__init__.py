@@ -35,6 +35,7 @@ if TYPE_CHECKING:
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design, read_ripple
+    from femag.design_slopes import sensitivities
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
@@ -76,11 +77,14 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.part_tolerances import PartTolerances
     from femag.quantities import CoreLoss, LossBudget
     from femag.result import Result, solve
     from femag.ripple import Ripple
     from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
+    from femag.target_turns import turns_for
+    from femag.tolerance_budget import sampled_spread
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -139,9 +143,13 @@ _HOME = {
     "read_design": "femag.design_file",
     "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
+    "PartTolerances": "femag.part_tolerances",
     "gap_for": "femag.target_gap",
     "KeepOut": "femag.copper_distance",
     "keep_out": "femag.copper_distance",
+    "sampled_spread": "femag.tolerance_budget",
+    "sensitivities": "femag.design_slopes",
+    "turns_for": "femag.target_turns",
     "solve": "femag.result",
     "Sample": "femag.study",
     "Study": "femag.study",
@@ -180,6 +188,7 @@ __all__ = [
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
+    "PartTolerances",
     "PotCore",
     "Result",
     "Ripple",
@@ -218,8 +227,11 @@ __all__ = [
     "read_study",
     "read_table",
     "residuals",
+    "sampled_spread",
+    "sensitivities",
     "solve",
     "steinmetz_through",
+    "turns_for",
     "winding_matrix",
     "write_circuit",
     "write_curve",

@@ -5,6 +5,7 @@ from femag.quantities.copper_loss import LayerLoss, WindingLoss, copper_loss
 from femag.quantities.core_loss import CoreLoss, LossShare, PartLoss, core_loss
 from femag.quantities.core_volume import VolumeShare, core_share_above, volume_shares
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
+from femag.quantities.force import Force, Pull, force_of
 from femag.quantities.fringing import gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
 from femag.quantities.loss_budget import LossBudget
@@ -19,10 +20,12 @@ from femag.quantities.section_means import (
 __all__ = [
     "CoreLoss",
     "FieldMap",
+    "Force",
     "LayerLoss",
     "LossBudget",
     "LossShare",
     "PartLoss",
+    "Pull",
     "RippleField",
     "SectionMean",
     "VolumeShare",
@@ -33,6 +36,7 @@ __all__ = [
     "core_share_above",
     "field_map",
     "flux_through_discs",
+    "force_of",
     "gap_factor",
     "incremental_inductance_of_sides",
     "mean_flux_densities",
