@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from femag.quantities import LayerLoss, WindingLoss
 from femag.result import Result
-from femag.units import with_common_unit, with_unit
+from femag.units import with_common_unit
 
 LOSS_COLUMNS = ("loss of", "turns", "DC", "ripple", "crossing", "total")
 MOST_LAYERS = 12
@@ -31,16 +31,9 @@ def loss_rows(result: Result) -> list[tuple[str, ...]]:
 
 
 def loss_notes(result: Result) -> list[str]:
-    """Return what the ripple is, and what the losses leave out."""
-    ripple = result.design.ripple
-    assert ripple is not None
-    bias = with_unit(ripple.bias(result.current), "A")
-    notes = [
-        f"{ripple.shape if ripple.shape != 'samples' else 'waveform'} of "
-        f"{with_unit(ripple.peak_to_peak, 'A')} from peak to peak at "
-        f"{with_unit(ripple.frequency, 'Hz')} about {bias}. {LOSS_NOTE}"
-    ]
-    return notes + [f"winding {row.name}: {row.note}." for row in result.copper_loss if row.note]
+    """Return what the losses are, and what they leave out."""
+    notes = [f"winding {row.name}: {row.note}." for row in result.copper_loss if row.note]
+    return [LOSS_NOTE, *notes]
 
 
 def _layer_name(row: LayerLoss, several: bool) -> str:

@@ -91,10 +91,10 @@ class Result:
         Flux linkage in Wb without current from either side; None without magnets.
     magnet_coenergy : Bounds or None
         Co-energy without current, J, which is below 0; None without magnets.
-    core_loss : CoreLoss or None
-        Loss of the core under the ripple; None without a ripple or without loss parameters.
     copper_loss : tuple of WindingLoss
         Loss of every winding, W; none without a ripple.
+    core_loss : CoreLoss or None
+        Loss of the core under the ripple; None without a ripple or without loss parameters.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -117,8 +117,8 @@ class Result:
     design_hash: str
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
-    core_loss: CoreLoss | None = None
     copper_loss: tuple[WindingLoss, ...] = ()
+    core_loss: CoreLoss | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from femag.export.document import Entry
 from femag.materials import Steinmetz
-from femag.quantities import CoreLoss, LossBudget, LossShare, PartLoss
+from femag.quantities import CoreLoss, LayerLoss, LossBudget, LossShare, PartLoss, WindingLoss
 
 
 class PartLossEntry(Entry):
@@ -58,6 +58,43 @@ class LossBudgetEntry(Entry):
     copper_dc: float | None
     copper_ripple: float | None
     total: float
+
+
+class LayerLossEntry(Entry):
+    """Loss of a layer: W; radius in m; null where out of range."""
+
+    section: int
+    layer: int
+    turns: int
+    radius: float
+    dc: float
+    ripple: float | None
+    crossing: float | None
+
+
+class CopperLossEntry(Entry):
+    """Loss of a winding: W; squared field in T2 m3; null where out of range."""
+
+    name: str
+    dc: float | None
+    ripple: float | None
+    crossing: float | None
+    squared_field: float
+    layers: tuple[LayerLossEntry, ...]
+    crossing_of_turns: tuple[float, ...]
+    note: str
+
+
+def copper_loss_entry(loss: WindingLoss) -> CopperLossEntry:
+    """Return the entry of a winding's loss."""
+    layers = tuple(LayerLossEntry(**vars(layer)) for layer in loss.layers)
+    return CopperLossEntry(**(vars(loss) | {"layers": layers}))
+
+
+def copper_loss_of(entry: CopperLossEntry) -> WindingLoss:
+    """Return the loss of a winding from its entry."""
+    layers = tuple(LayerLoss(**layer.model_dump()) for layer in entry.layers)
+    return WindingLoss(**(entry.model_dump() | {"layers": layers}))
 
 
 def core_loss_entry(loss: CoreLoss) -> CoreLossEntry:

@@ -11,8 +11,11 @@ from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
 from femag.export.document import Entry, check_against_design, document_of_file
 from femag.export.loss_entries import (
+    CopperLossEntry,
     CoreLossEntry,
     LossBudgetEntry,
+    copper_loss_entry,
+    copper_loss_of,
     core_loss_entry,
     core_loss_of,
     loss_budget_entry,
@@ -20,7 +23,7 @@ from femag.export.loss_entries import (
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
-from femag.quantities import LayerLoss, SectionMean, VolumeShare, WindingLoss, WoundCopper
+from femag.quantities import SectionMean, VolumeShare, WoundCopper
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -75,31 +78,6 @@ class CopperEntry(Entry):
     layers_in_sections: tuple[int, ...]
 
 
-class LayerLossEntry(Entry):
-    """Loss of a layer: W; radius in m; null where out of range."""
-
-    section: int
-    layer: int
-    turns: int
-    radius: float
-    dc: float
-    ripple: float | None
-    crossing: float | None
-
-
-class CopperLossEntry(Entry):
-    """Loss of a winding: W; squared field in T2 m3; null where out of range."""
-
-    name: str
-    dc: float | None
-    ripple: float | None
-    crossing: float | None
-    squared_field: float
-    layers: tuple[LayerLossEntry, ...]
-    crossing_of_turns: tuple[float, ...]
-    note: str
-
-
 class ResultDocument(Entry):
     """Everything in a result but the fields, SI."""
 
@@ -125,9 +103,9 @@ class ResultDocument(Entry):
     section_means: list[SectionMeanEntry]
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
+    copper_loss: list[CopperLossEntry] = Field(default_factory=list)
     core_loss: CoreLossEntry | None = None
     losses: LossBudgetEntry | None = None
-    copper_loss: list[CopperLossEntry] = Field(default_factory=list)
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -202,25 +180,15 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
+        copper_loss=[copper_loss_entry(loss) for loss in result.copper_loss],
         core_loss=core_loss_entry(result.core_loss) if result.core_loss else None,
         losses=loss_budget_entry(result.loss_budget) if result.loss_budget else None,
-        copper_loss=[_copper_loss_entry(loss) for loss in result.copper_loss],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
         refinements=result.refinements,
         seconds=result.seconds,
     )
-
-
-def _copper_loss_entry(loss: WindingLoss) -> CopperLossEntry:
-    layers = tuple(LayerLossEntry(**vars(layer)) for layer in loss.layers)
-    return CopperLossEntry(**(vars(loss) | {"layers": layers}))
-
-
-def _copper_loss(entry: CopperLossEntry) -> WindingLoss:
-    layers = tuple(LayerLoss(**layer.model_dump()) for layer in entry.layers)
-    return WindingLoss(**(entry.model_dump() | {"layers": layers}))
 
 
 def _bounds_entry(bounds: Bounds) -> BoundsEntry:
@@ -249,8 +217,8 @@ def _result(document: ResultDocument, file: str) -> Result:
         section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
         volume_shares=tuple(VolumeShare(**s.model_dump()) for s in document.volume_shares),
         copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
+        copper_loss=tuple(copper_loss_of(entry) for entry in document.copper_loss),
         core_loss=core_loss_of(document.core_loss) if document.core_loss else None,
-        copper_loss=tuple(_copper_loss(entry) for entry in document.copper_loss),
         unknowns=document.unknowns,
         refinements=document.refinements,
         seconds=document.seconds,

@@ -151,7 +151,7 @@ def test_squared_field_is_the_loss_that_the_potential_gives(wound: fm.Design) ->
     whole = np.array([f"winding main, turn {n}" for n in range(1, 51)])[upper]
     names = [name for name in solution.sides.mesh.names if name.startswith("winding main, turn")]
     kept = [names.index(name) for name in whole]
-    np.testing.assert_allclose(exact[kept], (per_length * length)[upper], rtol=0.005)
+    np.testing.assert_allclose(exact[kept], (per_length * length)[upper], rtol=0.005, atol=1e-16)
 
 
 def test_block_and_turn_by_turn_agree(wound: fm.Design) -> None:
