@@ -177,12 +177,11 @@ class Result:
         if self.design.ripple is None:
             return None
         copper = self.copper_loss
+        by_ripple = [part for loss in copper for part in (loss.ripple, loss.crossing)]
         return LossBudget(
             core=self.core_loss.total if self.core_loss else None,
             copper_dc=_sum_if_known([loss.dc for loss in copper]),
-            copper_ripple=_sum_if_known(
-                [p for loss in copper for p in (loss.ripple, loss.crossing)]
-            ),
+            copper_ripple=_sum_if_known(by_ripple),
         )
 
     @property
