@@ -11,6 +11,8 @@ from rich.text import Text
 from femag.design import Design
 from femag.geometry import Gap
 from femag.quantities import WoundCopper
+from femag.requirement_answer import requirement_lines
+from femag.requirement_checks import requirement_checks
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
 
@@ -27,7 +29,10 @@ def print_answer(result: Result, console: Console) -> None:
     lines: list[Text | Table | str] = []
     if design.title:
         lines.append(Text(design.title, style="bold"))
-    lines += [described(design), "", _inductances(result), "", _flux_densities(result)]
+    lines += [described(design), ""]
+    if design.requirements:
+        lines += [*requirement_lines(requirement_checks(result)), ""]
+    lines += [_inductances(result), "", _flux_densities(result)]
     lines += [Text(_where_it_saturates(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]

@@ -25,6 +25,8 @@ if TYPE_CHECKING:
     from femag.result import Result
 
 STOPPED = 130
+MISSED = 1
+"""Exit code where the design misses a requirement."""
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
 
 app = typer.Typer(
@@ -67,10 +69,11 @@ def solve_command(
     current: CurrentOption = None,
     json: JsonOption = None,
     out: OutOption = None,
-) -> None:
+) -> int:
     """Solve a design file.
 
-    Prints the inductance between bounds, beside the hand calculation.
+    Prints the inductance between bounds, beside the hand calculation. Leaves with 1 when the design
+    misses a requirement.
     """
     from femag.design_file import read_design
 
@@ -78,7 +81,7 @@ def solve_command(
         raise InputError(
             "is the design itself", key="--json", value=json, accepted="another file, or -"
         )
-    _answer(_with_current(read_design(design), current), json, out)
+    return _answer(_with_current(read_design(design), current), json, out)
 
 
 @app.command("demo")
@@ -168,19 +171,21 @@ def _with_current(design: Design, current: str | None) -> Design:
 
 def _answer(
     design: Design, json: str | None, out: Path | None, texts: Mapping[Path, str] | None = None
-) -> None:
-    """Solve, then write files, with `texts` among them, then print."""
+) -> int:
+    """Solve, write files, with `texts` among them, print; return 1 if a requirement is missed."""
+    from femag.requirement_checks import all_kept, requirement_checks
     from femag.result import solve
 
     check_targets(json, out)
     with shown_progress(_bracket) as progress:
         result = solve(design, progress=progress)
     _write(result, json, out, texts or {})
+    code = 0 if all_kept(requirement_checks(result)) else MISSED
     if json == "-":
         from femag.export.result_file import result_json
 
         typer.echo(result_json(result), nl=False)
-        return
+        return code
     from rich.console import Console
 
     from femag.answer import WIDTH, print_answer
@@ -188,6 +193,7 @@ def _answer(
     print_answer(result, Console(width=WIDTH))
     if out is not None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
+    return code
 
 
 def _write(result: Result, json: str | None, out: Path | None, texts: Mapping[Path, str]) -> None:

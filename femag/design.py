@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Sequence
-from dataclasses import asdict, dataclass, replace
+from dataclasses import asdict, dataclass, field, replace
 from typing import Any
 
 from femag.errors import InputError, number
@@ -29,6 +29,7 @@ from femag.geometry import (
     upper_half,
 )
 from femag.materials import MagnetisationCurve
+from femag.requirements import Requirements
 
 FAR_RADIUS = 60.0
 """Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
@@ -66,6 +67,8 @@ class Design:
     detail : {"block", "turn"}
         How the field sees windings that have a conductor: as blocks of uniform current, or turn by
         turn.
+    requirements : Requirements
+        Limits that the design has to keep; none unless given.
     """
 
     core: Core
@@ -77,6 +80,7 @@ class Design:
     driven: tuple[str, ...] = ()
     title: str = ""
     detail: Detail = "block"
+    requirements: Requirements = field(default_factory=Requirements)
 
     def __post_init__(self) -> None:
         for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
@@ -86,6 +90,11 @@ class Design:
         _check_names(self.windings, self.driven)
         _check_detail(self.detail, self.windings)
         _check_core(self.core, self.material)
+        if not isinstance(self.requirements, Requirements):
+            raise InputError(
+                "not requirements", key="require", value=self.requirements,
+                accepted="Requirements(inductance_least=380e-6)",
+            )  # fmt: skip
         if not isinstance(self.title, str) or not self.title.isprintable():
             raise InputError(
                 "not printable", key="title", value=self.title,
@@ -181,6 +190,7 @@ def design_hash(design: Design) -> str:
     wound = any(winding.conductor is not None for winding in design.windings)
     detail: Detail = design.detail if wound else "block"
     content = asdict(replace(design, title="", driven=driven, detail=detail))
+    content.pop("requirements")
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
     for text in ("name", "source", "notes"):

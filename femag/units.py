@@ -80,6 +80,8 @@ ACCEPTED = {
     "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
+    "W": "a power with its unit, such as '2.5 W'",
+    "N": "a force with its unit, such as '40 N'",
 }
 """What is accepted for a quantity of each SI unit, for messages and the file reference."""
 
@@ -140,7 +142,8 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
 
 def _names() -> list[str]:
     return ["mm", "cm", "um", "m", "mil", "inch", "in", "A", "mA", "kA", "T", "mT", "G", "gauss",
-            "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz"]  # fmt: skip
+            "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz",
+            "W", "mW", "kW", "N", "mN", "kN"]  # fmt: skip
 
 
 def celsius(text: object) -> float:

@@ -10,19 +10,29 @@ import femag
 ROOT = Path(femag.__file__).parent
 LAYERS = (
     ("units", "errors", "line_search"),
-    ("materials", "geometry"),
+    ("materials", "geometry", "requirements"),
     ("bench",),
     ("hand", "design", "mesh"),
     ("design_file",),
     ("field",),
     ("quantities",),
     ("result", "current_curve", "target_gap"),
-    ("measured_inductance",),
+    ("measured_inductance", "requirement_checks"),
+    ("review",),
     ("export",),
     ("plot",),
-    ("answer", "core_answer", "material_answer", "bench_answer", "curve_answer", "gap_answer"),
+    ("sheet",),
+    (
+        "answer",
+        "requirement_answer",
+        "core_answer",
+        "material_answer",
+        "bench_answer",
+        "curve_answer",
+        "gap_answer",
+    ),
     ("command_output",),
-    ("bench_command", "curve_command", "gap_command"),
+    ("bench_command", "curve_command", "gap_command", "sheet_command"),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

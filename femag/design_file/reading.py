@@ -38,6 +38,7 @@ from femag.geometry import (
     catalogue_core,
     core_of_family,
 )
+from femag.requirements import Requirements
 
 
 def read_design(path: str | Path) -> Design:
@@ -103,6 +104,7 @@ def _design(table: DesignTable, folder: Path) -> Design:
         driven=tuple(table.drive.winding),
         title=table.title,
         detail=table.solve.detail,
+        requirements=Requirements(**table.require.model_dump()),
     )
 
 

@@ -42,6 +42,9 @@ Current = Annotated[
 Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
 CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
 FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
+Inductance = Annotated[float, BeforeValidator(partial(_read_quantity, "H"))]
+Power = Annotated[float, BeforeValidator(partial(_read_quantity, "W"))]
+Force = Annotated[float, BeforeValidator(partial(_read_quantity, "N"))]
 
 
 class _Table(BaseModel):
@@ -237,6 +240,21 @@ class SolveTable(_Table):
     detail: Detail = Field(default="block", description=" or ".join(map(repr, DETAILS)))
 
 
+class RequireTable(_Table):
+    """What the design has to keep."""
+
+    inductance_least: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    inductance_most: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    incremental_inductance_least: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    post_flux_density_most: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    flux_density_most: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    loss_most: Power | None = Field(default=None, description=ACCEPTED["W"])
+    force_most: Force | None = Field(default=None, description=ACCEPTED["N"])
+    copper_clearance_least: Length | None = Field(default=None, description=ACCEPTED["m"])
+    temperature_least: Temperature | None = Field(default=None, description=TEMPERATURE)
+    fit: bool = Field(default=False, description="true or false")
+
+
 class DesignTable(_Table):
     """The whole file."""
 
@@ -246,3 +264,4 @@ class DesignTable(_Table):
     winding: list[WindingTable] = Field(description="tables headed [[winding]]")
     drive: DriveTable = Field(default=DriveTable(), description="a table, [drive]")
     solve: SolveTable = Field(default=SolveTable(), description="a table, [solve]")
+    require: RequireTable = Field(default=RequireTable(), description="a table, [require]")

@@ -12,6 +12,7 @@ from femag.design import Design
 from femag.design_file.tables import METALS
 from femag.geometry import Conductor, Core, Foil, Gap, LitzWire, RoundWire, Winding
 from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, TabulatedCurve
+from femag.requirements import Requirements
 from femag.units import exact_text
 
 Document = dict[str, Any]
@@ -31,6 +32,8 @@ def design_document(design: Design) -> Document:
         document["solve"]["detail"] = design.detail
     if design.driven:
         document["drive"]["winding"] = list(design.driven)
+    if design.requirements:
+        document["require"] = _requirements_document(design.requirements)
     return document
 
 
@@ -129,6 +132,16 @@ def _conductor_document(conductor: Conductor) -> Document:
         case Foil(thickness, width):
             foil = {"foil": exact_text(thickness, "m", "m")} | insulation
             return foil if width is None else foil | {"width": exact_text(width, "m", "m")}
+
+
+def _requirements_document(requirements: Requirements) -> Document:
+    document: Document = {
+        limit.key: f"{float(limit.value)!r} C"
+        if limit.unit == "C"
+        else exact_text(limit.value, limit.unit)
+        for limit in requirements.limits()
+    }
+    return document | {"fit": True} if requirements.fit else document
 
 
 def _lengths_document(lengths: Mapping[str, float]) -> Document:

@@ -14,6 +14,7 @@ from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
 from femag.quantities import SectionMean, VolumeShare, WoundCopper
+from femag.requirement_checks import RequirementCheck, requirement_checks
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -68,6 +69,21 @@ class CopperEntry(Entry):
     layers_in_sections: tuple[int, ...]
 
 
+class RequirementEntry(Entry):
+    """A requirement of the design beside what is known, SI or degrees Celsius; margin a share."""
+
+    key: str
+    unit: str
+    sense: Literal["least", "most"]
+    limit: float | None
+    value: float | None
+    lower: float | None
+    upper: float | None
+    basis: str
+    margin: float | None
+    verdict: Literal["kept", "missed", "not shown"]
+
+
 class ResultDocument(Entry):
     """Everything in a result but the fields, SI."""
 
@@ -93,6 +109,7 @@ class ResultDocument(Entry):
     section_means: list[SectionMeanEntry]
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
+    requirements: list[RequirementEntry] = Field(default_factory=list)
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -167,11 +184,24 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
+        requirements=[_requirement_entry(check) for check in requirement_checks(result)],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
         refinements=result.refinements,
         seconds=result.seconds,
+    )
+
+
+def _requirement_entry(check: RequirementCheck) -> RequirementEntry:
+    return RequirementEntry(
+        key=check.key,
+        unit=check.unit,
+        sense=check.sense,
+        limit=check.limit,
+        margin=check.margin,
+        verdict=check.verdict,
+        **vars(check.known),
     )
 
 

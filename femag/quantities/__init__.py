@@ -1,8 +1,10 @@
 """Quantities: what engineers read off the fields."""
 
 from femag.quantities.copper import WoundCopper, wound_copper
+from femag.quantities.copper_clearance import CopperClearance, copper_clearance, gap_openings
 from femag.quantities.core_volume import VolumeShare, core_share_above, volume_shares
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
+from femag.quantities.field_points import PointFields, point_fields
 from femag.quantities.fringing import gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
 from femag.quantities.section_means import (
@@ -13,17 +15,22 @@ from femag.quantities.section_means import (
 )
 
 __all__ = [
+    "CopperClearance",
     "FieldMap",
+    "PointFields",
     "SectionMean",
     "VolumeShare",
     "WoundCopper",
+    "copper_clearance",
     "core_share_above",
     "field_map",
     "flux_through_discs",
     "gap_factor",
+    "gap_openings",
     "incremental_inductance_of_sides",
     "mean_flux_densities",
     "plain_gap_reluctance",
+    "point_fields",
     "section_means",
     "typical_peak",
     "volume_shares",

@@ -73,13 +73,13 @@ def flux_through_discs(solution: FieldSolution, points: Array) -> Array:
         r and z in m.
     """
     basis = solution.sides.discretisation.basis
-    element, local = _located(solution, points)
+    element, local = located(solution, points)
     shapes = [basis.elem.lbasis(local, i)[0] for i in range(6)]
     u = np.sum(shapes * nodal_u(solution)[basis.element_dofs[:, element]], axis=0)
     return np.asarray(2.0 * np.pi * points[0] ** 2 * u)
 
 
-def _located(solution: FieldSolution, points: Array) -> tuple[Index, Array]:
+def located(solution: FieldSolution, points: Array) -> tuple[Index, Array]:
     """Return the element that each point lies in (or nearest to) and its place there."""
     mapping = solution.sides.discretisation.basis.mapping
     elements = solution.sides.mesh.triangles.nelements

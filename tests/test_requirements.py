@@ -1,0 +1,161 @@
+import json
+from dataclasses import replace
+from importlib.resources import files
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+import femag as fm
+from femag import cli
+from femag.design import design_hash
+from femag.design_file import design_from_toml
+from femag.quantities import copper_clearance
+from femag.requirement_checks import all_kept, requirement_checks
+from femag.requirements import KINDS, Requirements
+
+DEMO = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
+ALL = """
+[require]
+inductance_least = "380 uH"
+inductance_most = "420 uH"
+incremental_inductance_least = "300 uH"
+post_flux_density_most = "0.4 T"
+flux_density_most = "0.41 T"
+loss_most = "3 W"
+force_most = "90 N"
+copper_clearance_least = "1 mm"
+temperature_least = "60 C"
+fit = true
+"""
+COARSE = DEMO.replace("tolerance = 1e-3", "tolerance = 1e-2")
+
+
+@pytest.fixture(scope="module")
+def result() -> fm.Result:
+    return fm.solve(design_from_toml(COARSE))
+
+
+def checked(result: fm.Result, **limits: float | bool) -> list[tuple[str, float | None]]:
+    design = replace(result.design, requirements=Requirements(**limits))
+    checks = requirement_checks(replace(result, design=design))
+    return [(check.verdict, check.margin) for check in checks]
+
+
+def test_requirements_are_read_and_written_and_leave_the_hash_alone() -> None:
+    design = design_from_toml(DEMO + ALL)
+    assert {limit.key for limit in design.requirements.limits()} == set(KINDS)
+    assert design.requirements.force_most == 90.0
+    assert design_from_toml(fm.design_toml(design)) == design
+    assert design_hash(design) == design_hash(design_from_toml(DEMO))
+    assert not design_from_toml(DEMO).requirements
+
+
+@pytest.mark.parametrize(
+    ("line", "text"),
+    [
+        ('inductance_least = "3 mm"', "inductance_least = '3 mm': 'mm' is not a unit of this"),
+        ("inductance_least = 3", "inductance_least = 3: the unit is missing"),
+        ('inductance_leest = "3 mH"', "nearest known key: 'inductance_least'"),
+        ('loss_most = "-2 W"', "loss_most = '-2 W': out of range; accepted: a power"),
+        ('temperature_least = "-300 C"', "accepted: a temperature in degrees Celsius"),
+        ('fit = "yes"', "fit = 'yes': not usable; accepted: true or false"),
+        (
+            'inductance_least = "3 H"\ninductance_most = "2 H"',
+            "inductance_most = '2 H': no inductance is left between the limits",
+        ),
+    ],
+)
+def test_bad_requirements_get_one_line(line: str, text: str) -> None:
+    with pytest.raises(fm.InputError) as caught:
+        design_from_toml(f"{DEMO}\n[require]\n{line}\n", "d.toml")
+    assert str(caught.value).startswith("d.toml: require.")
+    assert text in str(caught.value)
+
+
+def test_an_inductance_is_judged_by_its_worse_bound(result: fm.Result) -> None:
+    lower, upper = result.inductance.lower, result.inductance.upper
+    ((verdict, margin),) = checked(result, inductance_least=0.95 * lower)
+    assert (verdict, margin) == ("kept", pytest.approx(1 / 0.95 - 1.0))
+    ((verdict, margin),) = checked(result, inductance_most=1.05 * upper)
+    assert (verdict, margin) == ("kept", pytest.approx(1.0 - 1 / 1.05))
+    assert checked(result, inductance_least=1.01 * upper)[0][0] == "missed"
+    assert checked(result, inductance_most=0.99 * lower)[0][0] == "missed"
+
+
+def test_a_limit_between_the_bounds_is_not_shown_and_not_kept(result: fm.Result) -> None:
+    middle = result.inductance.value
+    for key in ("inductance_least", "inductance_most"):
+        design = replace(result.design, requirements=Requirements(**{key: middle}))
+        checks = requirement_checks(replace(result, design=design))
+        assert [check.verdict for check in checks] == ["not shown"]
+        assert not all_kept(checks)
+    assert all_kept(())
+
+
+def test_flux_densities_are_the_largest_means(result: fm.Result) -> None:
+    means = {mean.name: mean.flux_density for mean in result.section_means}
+    post = max(value for name, value in means.items() if name.startswith("post"))
+    everywhere = max(means.values())
+    for key, value in (("post_flux_density_most", post), ("flux_density_most", everywhere)):
+        assert checked(result, **{key: 2.0 * value}) == [("kept", pytest.approx(0.5))]
+        assert checked(result, **{key: 0.9 * value})[0][0] == "missed"
+
+
+def test_what_has_no_value_is_not_shown_with_its_reason(result: fm.Result) -> None:
+    design = replace(result.design, requirements=Requirements(temperature_least=60.0, fit=True))
+    checks = requirement_checks(replace(result, design=design))
+    assert [check.verdict for check in checks] == ["not shown"] * 2
+    assert [check.known.basis for check in checks] == [
+        "no winding has a conductor",
+        "winding main has no conductor",
+    ]
+
+
+def test_wound_conductors_fit_at_their_temperature(pot_26_16: fm.Design) -> None:
+    winding = fm.Winding(50, conductor=fm.RoundWire(0.5e-3, 0.03e-3), temperature=80.0)
+    design = replace(pot_26_16, windings=(winding,))
+    result = fm.solve(design, tolerance=2e-2)
+    assert checked(result, temperature_least=60.0, fit=True) == [("kept", 20.0), ("kept", None)]
+    assert checked(result, temperature_least=100.0) == [("missed", -20.0)]
+
+
+def test_clearance_is_the_distance_of_metal_from_the_opening(pot_26_16: fm.Design) -> None:
+    found = copper_clearance(pot_26_16)
+    assert found is not None
+    assert (found.distance, found.gap) == (pytest.approx(0.65e-3), pytest.approx(0.5e-3))
+    wire = fm.RoundWire(0.5e-3, 0.03e-3)
+    former = fm.Former(wall=0.6e-3, flange=0.6e-3)
+    wound = replace(pot_26_16, windings=(fm.Winding(16, conductor=wire, former=former),))
+    found = copper_clearance(wound)
+    assert found is not None
+    centre, half_pitch = 0.6e-3 + 0.28e-3, 0.28e-3  # no turn of 16 lies at z = 0
+    expected = np.hypot(centre, max(half_pitch - 0.25e-3, 0.0)) - 0.25e-3
+    assert found.distance == pytest.approx(expected)
+    assert copper_clearance(replace(pot_26_16, gaps=())) is None
+
+
+def test_clearance_counts_from_the_legs_too_with_a_spacer(pot_26_16: fm.Design) -> None:
+    block = fm.Block(8e-3, 10.3e-3, -4.8e-3, 4.8e-3)
+    design = replace(pot_26_16, windings=(fm.Winding(50, block),), gaps=fm.Gap(0.2e-3, "all"))
+    found = copper_clearance(design)
+    assert found is not None
+    assert found.distance == pytest.approx(0.3e-3)
+
+
+@pytest.mark.parametrize(
+    ("limit", "code", "word"), [("380 uH", 0, "kept"), ("500 uH", 1, "missed")]
+)
+def test_solve_prints_the_table_and_leaves_with_1_on_a_miss(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], limit: str, code: int, word: str
+) -> None:
+    file = tmp_path / "d.toml"
+    file.write_text(f'{COARSE}\n[require]\ninductance_least = "{limit}"\n')
+    assert cli.main(["solve", str(file), "--json", str(tmp_path / "r.json")]) == code
+    out = capsys.readouterr().out
+    (line,) = [line for line in out.splitlines() if f"at least {limit}" in line]
+    assert line.split()[-1] == word
+    (entry,) = json.loads((tmp_path / "r.json").read_text())["requirements"]
+    assert (entry["key"], entry["verdict"]) == ("inductance_least", word)
+    assert entry["lower"] < entry["value"] < entry["upper"]
+    assert fm.read_result(tmp_path / "r.json").design.requirements.inductance_least
