@@ -33,10 +33,10 @@ def print_answer(result: Result, console: Console) -> None:
     if design.requirements:
         lines += [*requirement_lines(requirement_checks(result)), ""]
     lines += [_inductances(result), "", _flux_densities(result)]
-    lines += [Text(_where_it_saturates(result)), ""]
+    lines += [Text(where_it_saturates(result)), ""]
     if result.copper:
         lines += [_copper(result), ""]
-    lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
+    lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
         console.print(line, highlight=False)
@@ -48,13 +48,14 @@ def described(design: Design, currents: str | None = None) -> Text:
     parts = [
         *([core.name] if core.name else []),
         core.description,
-        *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
+        *([described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
     drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
-def _described_gap(gap: Gap) -> str:
+def described_gap(gap: Gap) -> str:
+    """Return a gap in words."""
     words = [f"{1e3 * gap.length:g} mm gap in the post"]
     if gap.leg == "all":
         words = [f"{1e3 * gap.length:g} mm spacer in all legs"]
@@ -142,7 +143,8 @@ def _flux_densities(result: Result) -> Table:
     return table
 
 
-def _where_it_saturates(result: Result) -> str:
+def where_it_saturates(result: Result) -> str:
+    """Return the fullest section, and what flux density shares of the core stay below."""
     fullest = max(result.section_means, key=lambda mean: mean.flux_density)
     levels = ", ".join(f"{share.flux_density:.3f}" for share in result.volume_shares)
     return (
@@ -158,7 +160,7 @@ def _copper(result: Result) -> Table:
         table.add_row(
             copper.name,
             f"{copper.turns}",
-            _layers(copper),
+            layers_text(copper),
             f"{copper.fill:.2f}",
             f"{1e3 * copper.mean_turn_length:.1f} mm",
             f"{copper.wire_length:.3g} m",
@@ -167,8 +169,8 @@ def _copper(result: Result) -> Table:
     return table
 
 
-def _layers(copper: WoundCopper) -> str:
-    """Say how many layers there are, of each section from the lowest where they differ."""
+def layers_text(copper: WoundCopper) -> str:
+    """Return how many layers there are, of each section from the lowest where they differ."""
     counts = copper.layers_in_sections
     if len(counts) == 1:
         return f"{copper.layers}"
@@ -190,8 +192,8 @@ def _hand_formulas(result: Result) -> Table:
     return table
 
 
-def _hand_caveat(result: Result) -> list[Text]:
-    """Say where the errors are not the fringing formulas' own, and why none is inside its range."""
+def hand_caveat(result: Result) -> list[Text]:
+    """Return where errors are not the fringing formulas' own, and why none is inside its range."""
     lines = []
     if any(gap.is_shaped for gap in result.design.gaps):
         lines.append(Text("No formula knows shaped faces: all count as outside of their ranges."))
@@ -218,19 +220,22 @@ def columns(*names: str, words: Sequence[str], gap: int = 2) -> Table:
 
 
 def _provenance(result: Result) -> str:
-    if result.design.material.is_linear:
-        rest = "The bounds are rigorous for this straight-sided model."
-    elif result.magnet_coenergy is None:
-        rest = "The bounds hold up to the quadrature of the energy densities."
-    else:
-        rest = (
-            "The co-energies with and without current are bounded up to the quadrature of the "
-            "energy densities; the inductance also rests on the magnet's flux linkage, which "
-            "counts with the distance of two estimates and has no bound."
-        )
     return (
         f"{result.unknowns} unknowns, {result.refinements} refinements, {result.seconds:.2f} s. "
-        f"{rest} {result.design.core.model_note}"
+        f"{what_is_bounded(result)} {result.design.core.model_note}"
+    )
+
+
+def what_is_bounded(result: Result) -> str:
+    """Return what the bounds of a result's inductance are good for."""
+    if result.design.material.is_linear:
+        return "The bounds are rigorous for this straight-sided model."
+    if result.magnet_coenergy is None:
+        return "The bounds hold up to the quadrature of the energy densities."
+    return (
+        "The co-energies with and without current are bounded up to the quadrature of the "
+        "energy densities; the inductance also rests on the magnet's flux linkage, which "
+        "counts with the distance of two estimates and has no bound."
     )
 
 

@@ -18,6 +18,7 @@ from femag.command_output import check_targets, make_folder, quantity, shown_pro
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.sheet_command import MISSED, sheet_command
 
 if TYPE_CHECKING:
     from femag.design import Design
@@ -25,8 +26,6 @@ if TYPE_CHECKING:
     from femag.result import Result
 
 STOPPED = 130
-MISSED = 1
-"""Exit code where the design misses a requirement."""
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
 
 app = typer.Typer(
@@ -146,6 +145,7 @@ def cores_command(
 app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
+app.command("sheet")(sheet_command)
 
 
 @app.command("materials")

@@ -21,7 +21,6 @@ LAYERS = (
     ("review",),
     ("export",),
     ("plot",),
-    ("sheet",),
     (
         "answer",
         "requirement_answer",
@@ -31,6 +30,7 @@ LAYERS = (
         "curve_answer",
         "gap_answer",
     ),
+    ("sheet",),
     ("command_output",),
     ("bench_command", "curve_command", "gap_command", "sheet_command"),
     ("cli",),

@@ -8,20 +8,31 @@ from femag.plot.curve_figures import (
     material_figure,
     shearing_panels,
 )
-from femag.plot.figure_file import write_figure, write_panels
+from femag.plot.field_lines import layer_field, post_face_field
+from femag.plot.figure_file import Draw, figure_bytes, untitled, write_figure, write_panels
 from femag.plot.flux_map import flux_map, gap_map
 from femag.plot.loop_figure import loop_figure, waveform_figure
+from femag.plot.review_figures import convergence, material_curve
+from femag.plot.section_drawing import section_drawing
 
 __all__ = [
+    "Draw",
+    "convergence",
     "core_drawing",
     "core_flux_figure",
+    "figure_bytes",
     "flux_map",
     "gap_map",
     "inductance_figure",
+    "layer_field",
     "linkage_figure",
     "loop_figure",
+    "material_curve",
     "material_figure",
+    "post_face_field",
+    "section_drawing",
     "shearing_panels",
+    "untitled",
     "waveform_figure",
     "write_figure",
     "write_panels",
