@@ -425,9 +425,9 @@
   element("current").max = `${fields.length - 1}`;
   const gap = data.views.gap;
   kept = [(gap[0] + gap[1]) / 2, (gap[2] + gap[3]) / 2];
-  [view.r, view.z, view.height] = [(whole[0] + whole[1]) / 2, (whole[2] + whole[3]) / 2, whole[3] - whole[2]];
   drawScale();
   fit();
+  show(whole);
   setCurrent(data.start);
   new ResizeObserver(fit).observe(canvas);
 })();

@@ -3,17 +3,24 @@
 from __future__ import annotations
 
 import base64
+import fcntl
 import json
 import os
 import select
 import shutil
-import subprocess
 import time
 from collections.abc import Iterator
+from dataclasses import replace
+from importlib.resources import files
 from pathlib import Path
 from typing import Any
 
 import pytest
+
+from femag.design_file import design_from_toml
+from femag.requirements import Requirements
+from femag.review import Review, review
+from femag.sheet import review_sheet
 
 NAMES = ("chromium", "chromium-browser", "google-chrome")
 PATIENCE = 60.0
@@ -28,18 +35,22 @@ class Browser:
     """
 
     def __init__(self, program: str, folder: Path) -> None:
-        to_read, self._to = os.pipe()
-        self._answers, to_write = os.pipe()
+        ends = [fcntl.fcntl(end, fcntl.F_DUPFD_CLOEXEC, 10) for end in (*os.pipe(), *os.pipe())]
+        to_read, self._to, self._answers, to_write = ends
         arguments = [
             "--headless=new", "--remote-debugging-pipe", "--no-sandbox", "--disable-gpu",
             "--no-first-run", "--disable-extensions", "--disable-dev-shm-usage",
             "--hide-scrollbars", f"--user-data-dir={folder}", "about:blank",
         ]  # fmt: skip
-        self._process = subprocess.Popen(
-            ["sh", "-c", f'exec "$@" 3<&{to_read} 4>&{to_write}', "sh", program, *arguments],
-            pass_fds=(to_read, to_write),
-            stdout=subprocess.DEVNULL,
-            stderr=subprocess.DEVNULL,
+        self._process = os.posix_spawn(
+            program,
+            [program, *arguments],
+            os.environ,
+            file_actions=[
+                *((os.POSIX_SPAWN_OPEN, out, os.devnull, os.O_RDWR, 0) for out in (1, 2)),
+                (os.POSIX_SPAWN_DUP2, to_read, 3),
+                (os.POSIX_SPAWN_DUP2, to_write, 4),
+            ],
         )
         os.close(to_read)
         os.close(to_write)
@@ -150,10 +161,32 @@ class Browser:
 
     def close(self) -> None:
         """End the browser."""
+        self._session = None
+        self.ask("Browser.close")
         os.close(self._to)
         os.close(self._answers)
-        self._process.terminate()
-        self._process.wait(timeout=20)
+        os.waitpid(self._process, 0)
+
+
+TITLE = "<script>alert('a & b')</script>"
+LIMITS = {"inductance_least": 500e-6, "inductance_most": 600e-6, "fit": True}
+
+
+@pytest.fixture(scope="session")
+def reviewed() -> Review:
+    """The demo under a title that looks like a tag; it misses a requirement."""
+    text = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
+    design = design_from_toml(text.replace("tolerance = 1e-3", "tolerance = 1e-2"))
+    required = replace(design, title=TITLE, requirements=Requirements(**LIMITS))
+    return review(required, [2.0, 6.0])
+
+
+@pytest.fixture(scope="session")
+def sheet(reviewed: Review, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Its sheet, as of a file whose path looks like a tag."""
+    file = tmp_path_factory.mktemp("sheet") / 'it\'s a "review".html'
+    file.write_text(review_sheet(reviewed, "a \"b\" <i>'c'</i>.toml"), encoding="utf-8")
+    return file
 
 
 @pytest.fixture(scope="session")
