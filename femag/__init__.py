@@ -34,7 +34,10 @@ if TYPE_CHECKING:
     from femag.design import Design
     from femag.design_file import design_toml, read_design
     from femag.errors import GapfieldError, InputError, NumericalError
+    from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
+    from femag.export.curve_table import write_curve_table
+    from femag.export.mesh_files import write_field, write_mesh
     from femag.export.result_file import read_result, write_result
     from femag.field.adapt import ToleranceError
     from femag.field.bounds import Bounds
@@ -71,6 +74,7 @@ if TYPE_CHECKING:
     )
     from femag.result import Result, solve
     from femag.target_gap import gap_for
+    from femag.winding_matrix import WindingMatrix, winding_matrix
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -100,7 +104,9 @@ _HOME = {
     "InductanceCurve": "femag.current_curve",
     "inductance_curve": "femag.current_curve",
     "read_curve": "femag.export.curve_file",
+    "write_circuit": "femag.export.circuit_model",
     "write_curve": "femag.export.curve_file",
+    "write_curve_table": "femag.export.curve_table",
     "MeasuredPoints": "femag.measured_inductance",
     "fitted_design": "femag.measured_inductance",
     "measured_curve": "femag.measured_inductance",
@@ -124,6 +130,10 @@ _HOME = {
     "gap_for": "femag.target_gap",
     "solve": "femag.result",
     "write_result": "femag.export.result_file",
+    "write_field": "femag.export.mesh_files",
+    "write_mesh": "femag.export.mesh_files",
+    "WindingMatrix": "femag.winding_matrix",
+    "winding_matrix": "femag.winding_matrix",
 }
 
 __all__ = [
@@ -155,6 +165,7 @@ __all__ = [
     "TabulatedCurve",
     "ToleranceError",
     "Winding",
+    "WindingMatrix",
     "catalogue",
     "catalogue_core",
     "design_toml",
@@ -177,7 +188,12 @@ __all__ = [
     "read_result",
     "residuals",
     "solve",
+    "winding_matrix",
+    "write_circuit",
     "write_curve",
+    "write_curve_table",
+    "write_field",
+    "write_mesh",
     "write_result",
 ]
 

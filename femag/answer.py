@@ -22,6 +22,8 @@ HAND_NOTE = (
     "G: window height."
 )
 
+OTHER_WINDINGS = "Inductance matrix, coupling and leakage of the windings: gapfield windings."
+
 
 def print_answer(result: Result, console: Console) -> None:
     """Print what the field says about a design, the hand formulas beside it, and cautions."""
@@ -34,6 +36,8 @@ def print_answer(result: Result, console: Console) -> None:
         lines += [*requirement_lines(requirement_checks(result)), ""]
     lines += [_inductances(result), "", _flux_densities(result)]
     lines += [Text(where_it_saturates(result)), ""]
+    if len(design.windings) > 1:
+        lines += [Text(OTHER_WINDINGS), ""]
     if result.copper:
         lines += [_copper(result), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]

@@ -14,11 +14,13 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from femag.bench_command import bench_command
-from femag.command_output import check_targets, make_folder, quantity, shown_progress
+from femag.command_output import check_file, check_targets, make_folder, quantity, shown_progress
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.machine_command import check_command, report_command
 from femag.sheet_command import MISSED, sheet_command
+from femag.winding_command import windings_command
 
 if TYPE_CHECKING:
     from femag.design import Design
@@ -45,6 +47,14 @@ JsonOption = Annotated[
 OutOption = Annotated[
     Path | None, typer.Option("--out", metavar="DIR", help="Write JSON and figures into a folder.")
 ]
+FieldOption = Annotated[
+    Path | None,
+    typer.Option("--field", metavar="FILE.vtu", help="Write B and H on the mesh as VTU."),
+]
+MeshOption = Annotated[
+    Path | None,
+    typer.Option("--mesh", metavar="FILE.msh", help="Write the mesh with named regions as MSH."),
+]
 
 
 @app.callback(invoke_without_command=True)
@@ -68,6 +78,8 @@ def solve_command(
     current: CurrentOption = None,
     json: JsonOption = None,
     out: OutOption = None,
+    field: FieldOption = None,
+    mesh: MeshOption = None,
 ) -> int:
     """Solve a design file.
 
@@ -80,7 +92,9 @@ def solve_command(
         raise InputError(
             "is the design itself", key="--json", value=json, accepted="another file, or -"
         )
-    return _answer(_with_current(read_design(design), current), json, out)
+    check_file("--field", field, ".vtu")
+    check_file("--mesh", mesh, ".msh")
+    return _answer(_with_current(read_design(design), current), json, out, meshed=(field, mesh))
 
 
 @app.command("demo")
@@ -146,6 +160,9 @@ app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
 app.command("sheet")(sheet_command)
+app.command("windings")(windings_command)
+app.command("check")(check_command)
+app.command("report")(report_command)
 
 
 @app.command("materials")
@@ -170,16 +187,22 @@ def _with_current(design: Design, current: str | None) -> Design:
 
 
 def _answer(
-    design: Design, json: str | None, out: Path | None, texts: Mapping[Path, str] | None = None
+    design: Design,
+    json: str | None,
+    out: Path | None,
+    texts: Mapping[Path, str] | None = None,
+    meshed: tuple[Path | None, Path | None] = (None, None),
 ) -> int:
-    """Solve, write files, with `texts` among them, print; return 1 if a requirement is missed."""
+    """Solve, write files, with `texts`, field and mesh among them, print; return the exit code."""
     from femag.requirement_checks import all_kept, requirement_checks
     from femag.result import solve
 
     check_targets(json, out)
     with shown_progress(_bracket) as progress:
         result = solve(design, progress=progress)
-    _write(result, json, out, texts or {})
+    with ExitStack() as stack:
+        _write_on_mesh(result, *meshed, stack)
+        _write(result, json, out, texts or {}, stack)
     code = 0 if all_kept(requirement_checks(result)) else MISSED
     if json == "-":
         from femag.export.result_file import result_json
@@ -196,28 +219,43 @@ def _answer(
     return code
 
 
-def _write(result: Result, json: str | None, out: Path | None, texts: Mapping[Path, str]) -> None:
-    """Write all files that were asked for; each is renamed only when all are written."""
+def _write_on_mesh(result: Result, field: Path | None, mesh: Path | None, stack: ExitStack) -> None:
+    """Write field and mesh where they were asked for; renamed when the stack is left."""
+    if field is None and mesh is None:
+        return
+    from femag.export.mesh_files import write_field, write_mesh
+    from femag.export.whole_file import whole_file
+
+    for file, write in ((field, write_field), (mesh, write_mesh)):
+        if file is not None:
+            write(result, stack.enter_context(whole_file(file)))
+
+
+def _write(
+    result: Result,
+    json: str | None,
+    out: Path | None,
+    texts: Mapping[Path, str],
+    stack: ExitStack,
+) -> None:
+    """Write the other files that were asked for; each is renamed when the stack is left."""
     from femag.export.result_file import result_json
     from femag.export.whole_file import whole_file
 
-    with ExitStack() as stack:
-        if json is not None and json != "-":
-            target = stack.enter_context(whole_file(json))
-            target.write_text(result_json(result), encoding="utf-8")
-        if out is None:
-            return
-        from femag.plot import flux_map, gap_map, write_figure
+    if json is not None and json != "-":
+        target = stack.enter_context(whole_file(json))
+        target.write_text(result_json(result), encoding="utf-8")
+    if out is None:
+        return
+    from femag.plot import flux_map, gap_map, write_figure
 
-        make_folder(out)
-        document, section, gap = (
-            stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
-        )
-        document.write_text(result_json(result), encoding="utf-8")
-        for file, text in texts.items():
-            stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
-        write_figure(lambda ax: flux_map(result, ax), section)
-        write_figure(lambda ax: gap_map(result, ax), gap)
+    make_folder(out)
+    document, section, gap = (stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES)
+    document.write_text(result_json(result), encoding="utf-8")
+    for file, text in texts.items():
+        stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
+    write_figure(lambda ax: flux_map(result, ax), section)
+    write_figure(lambda ax: gap_map(result, ax), gap)
 
 
 def _bracket(solution: FieldSolution) -> str:

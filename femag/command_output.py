@@ -41,6 +41,32 @@ def check_targets(json: str | None, out: Path | None) -> None:
         raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
 
 
+def check_file(option: str, file: Path | None, ending: str) -> None:
+    """Refuse before the work a file that cannot be written after it.
+
+    Parameters
+    ----------
+    option : str
+        Its name, for messages.
+    file : Path or None
+        File to write, if any.
+    ending : str
+        What its name must end with, such as ".csv".
+
+    Raises
+    ------
+    InputError
+        If it has another ending, is a folder, or its folder does not exist.
+    """
+    if file is None:
+        return
+    if file.suffix.lower() != ending or file.is_dir() or not file.parent.is_dir():
+        raise InputError(
+            "cannot be written", key=option, value=str(file),
+            accepted=f"a file that ends with {ending}, in a folder that exists",
+        )  # fmt: skip
+
+
 def quantity(option: str, text: str, unit: str) -> float:
     """Return the value in SI of an option's text.
 

@@ -10,7 +10,13 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, make_folder, shown_progress
+from femag.command_output import (
+    check_file,
+    check_spares,
+    check_targets,
+    make_folder,
+    shown_progress,
+)
 from femag.errors import InputError, NumericalError
 
 if TYPE_CHECKING:
@@ -48,6 +54,13 @@ JsonOption = Annotated[
 OutOption = Annotated[
     Path | None, typer.Option("--out", metavar="DIR", help="Write JSON and figures into a folder.")
 ]
+CircuitOption = Annotated[
+    Path | None,
+    typer.Option("--circuit", metavar="FILE.cir", help="Write a subcircuit in SPICE syntax."),
+]
+TableOption = Annotated[
+    Path | None, typer.Option("--table", metavar="FILE.csv", help="Write the points as CSV.")
+]
 MeasuredOption = Annotated[
     Path | None,
     typer.Option(metavar="FILE", help="Lay measured points over it: CSV of current, inductance."),
@@ -69,6 +82,8 @@ def curve_command(
     measured: MeasuredOption = None,
     kind: KindOption = None,
     fit: FitOption = False,
+    circuit: CircuitOption = None,
+    table: TableOption = None,
 ) -> None:
     """Solve a design at many currents: inductance, flux linkage, saturation.
 
@@ -77,18 +92,25 @@ def curve_command(
     from femag.current_curve import inductance_curve
     from femag.design_file import read_design
 
-    check_spares(design, "the design", "--json", json)
-    if measured is not None:
-        check_spares(measured, "the measured points", "--json", json)
+    check_file("--circuit", circuit, ".cir")
+    check_file("--table", table, ".csv")
+    for option, target in (("--json", json), ("--table", table)):
+        check_spares(design, "the design", option, target)
+        if measured is not None:
+            check_spares(measured, "the measured points", option, target)
     check_targets(json, out)
     asked = currents_of(currents)
     solved = _with_tolerance(read_design(design), tolerance)
+    if circuit is not None:
+        _check_model(solved, design)
     points = measured_points(measured, kind, fit)
     with shown_progress(_how_far) as progress:
         curve = inductance_curve(solved, asked, progress=progress)
         beside = None if points is None else _beside(solved, points, fit)
         without_gap, reason = _without_gap(curve) if out is not None else (None, "")
-    _write(curve, beside, without_gap, json, out)
+    with ExitStack() as stack:
+        _write_tables(curve, circuit, table, stack)
+        _write(curve, beside, without_gap, (json, out), stack)
     if json == "-":
         from femag.export.curve_file import curve_json
 
@@ -218,35 +240,58 @@ def _without_gap(curve: InductanceCurve) -> tuple[InductanceCurve | None, str]:
         return None, f"\nWithout gaps there is nothing to compare with: {error}"
 
 
+def _check_model(design: Design, file: Path) -> None:
+    from femag.export.circuit_model import check_model
+
+    try:
+        check_model(design)
+    except InputError as error:
+        raise error.changed(file=str(file)) from error
+
+
+def _write_tables(
+    curve: InductanceCurve, circuit: Path | None, table: Path | None, stack: ExitStack
+) -> None:
+    """Write circuit and table where they were asked for; renamed when the stack is left."""
+    from femag.export.circuit_model import write_circuit
+    from femag.export.curve_table import write_curve_table
+    from femag.export.whole_file import whole_file
+
+    if circuit is not None:
+        write_circuit(curve, stack.enter_context(whole_file(circuit)))
+    if table is not None:
+        write_curve_table(curve, stack.enter_context(whole_file(table)))
+
+
 def _write(
     curve: InductanceCurve,
     beside: MeasuredBeside | None,
     without_gap: InductanceCurve | None,
-    json: str | None,
-    out: Path | None,
+    targets: tuple[str | None, Path | None],
+    stack: ExitStack,
 ) -> None:
-    """Write all files that were asked for; each is renamed only when all are written."""
+    """Write the JSON file and the folder; each file is renamed when the stack is left."""
     from femag.export.curve_file import curve_json
     from femag.export.whole_file import whole_file
 
-    with ExitStack() as stack:
-        if json is not None and json != "-":
-            target = stack.enter_context(whole_file(json))
-            target.write_text(curve_json(curve, beside), encoding="utf-8")
-        if out is None:
-            return
-        from femag.plot import inductance_figure, shearing_panels, write_panels
+    json, out = targets
+    if json is not None and json != "-":
+        target = stack.enter_context(whole_file(json))
+        target.write_text(curve_json(curve, beside), encoding="utf-8")
+    if out is None:
+        return
+    from femag.plot import inductance_figure, shearing_panels, write_panels
 
-        make_folder(out)
-        document, inductance, shearing = (
-            stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
-        )
-        document.write_text(curve_json(curve, beside), encoding="utf-8")
-        overlaid = (None, None) if beside is None else (beside.points, beside.residuals)
-        write_panels(
-            (lambda ax: inductance_figure(curve, ax, *overlaid),), inductance, INDUCTANCE_PANEL
-        )
-        write_panels(shearing_panels(curve, without_gap), shearing)
+    make_folder(out)
+    document, inductance, shearing = (
+        stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES
+    )
+    document.write_text(curve_json(curve, beside), encoding="utf-8")
+    overlaid = (None, None) if beside is None else (beside.points, beside.residuals)
+    write_panels(
+        (lambda ax: inductance_figure(curve, ax, *overlaid),), inductance, INDUCTANCE_PANEL
+    )
+    write_panels(shearing_panels(curve, without_gap), shearing)
 
 
 def _print(curve: InductanceCurve, beside: MeasuredBeside | None) -> None:

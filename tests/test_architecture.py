@@ -16,7 +16,7 @@ LAYERS = (
     ("design_file",),
     ("field",),
     ("quantities",),
-    ("result", "current_curve", "target_gap"),
+    ("result", "current_curve", "target_gap", "winding_matrix", "environment"),
     ("measured_inductance", "requirement_checks"),
     ("review",),
     ("export",),
@@ -29,10 +29,18 @@ LAYERS = (
         "bench_answer",
         "curve_answer",
         "gap_answer",
+        "winding_answer",
     ),
     ("sheet",),
     ("command_output",),
-    ("bench_command", "curve_command", "gap_command", "sheet_command"),
+    (
+        "bench_command",
+        "curve_command",
+        "gap_command",
+        "sheet_command",
+        "winding_command",
+        "machine_command",
+    ),
     ("cli",),
 )
 DEPTH = {name: depth for depth, layer in enumerate(LAYERS) for name in layer}

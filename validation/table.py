@@ -19,16 +19,24 @@ LEGEND = (
 )
 
 
+def cells(row: Row) -> tuple[str, ...]:
+    """Return case, quantity, reference, error, half width, whether it is held, and verdict."""
+    half = row.relative_half_width
+    return (
+        row.case,
+        row.quantity,
+        f"{row.reference:.5e} {row.unit}".strip(),
+        _ppm(row.error, "+"),
+        "-" if half is None else _ppm(half),
+        {True: "yes", False: "NO", None: "-"}[row.contained],
+        ("yes" if row.passed else "FAIL") if row.is_judged else "-",
+    )
+
+
 def row_line(row: Row) -> str:
     """Return one row in at most 80 columns."""
-    half = row.relative_half_width
-    holds = {True: "yes", False: "NO", None: "-"}[row.contained]
-    verdict = ("yes" if row.passed else "FAIL") if row.is_judged else "-"
-    reference = f"{row.reference:.5e} {row.unit}".strip()
-    return (
-        f"{row.case:<22} {row.quantity:<15} {reference:>14} {_ppm(row.error, '+'):>7} "
-        f"{'-' if half is None else _ppm(half):>6} {holds:<5} {verdict}"
-    )
+    case, quantity, reference, error, half, holds, verdict = cells(row)
+    return f"{case:<22} {quantity:<15} {reference:>14} {error:>7} {half:>6} {holds:<5} {verdict}"
 
 
 def print_rows(rows: Iterable[Row]) -> int:

@@ -85,7 +85,7 @@ def refinements(
         marked = [marked_elements(gap) for gap in gaps_to_close(solution)]
         mesh, parent = refined_mesh(sides.mesh, np.unique(np.concatenate(marked)))
         sides = both_sides(problem, mesh)
-        solution = _next_solution(solution, sides, parent, accuracy)
+        solution = solution_on_finer_mesh(solution, sides, parent, accuracy)
 
 
 def _first_solution(sides: Sides, current: float, accuracy: float) -> FieldSolution:
@@ -96,7 +96,7 @@ def _first_solution(sides: Sides, current: float, accuracy: float) -> FieldSolut
     return replace(solution, idle=field_solution(sides, 0.0, accuracy=accuracy))
 
 
-def _next_solution(
+def solution_on_finer_mesh(
     coarse: FieldSolution, fine: Sides, parent: Index, accuracy: float
 ) -> FieldSolution:
     """Return the fields of a solution on a finer mesh, started from it."""
@@ -104,7 +104,7 @@ def _next_solution(
     solution = field_solution(fine, coarse.current, start, accuracy)
     if coarse.idle is None:
         return solution
-    return replace(solution, idle=_next_solution(coarse.idle, fine, parent, accuracy))
+    return replace(solution, idle=solution_on_finer_mesh(coarse.idle, fine, parent, accuracy))
 
 
 def transferred_field_strength(coarse: FieldSolution, fine: Sides, parent: Index) -> Array | None:

@@ -10,6 +10,8 @@ principles", Proc. IEE 123 (1976) 554.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -35,15 +37,15 @@ def flux_side(
     w(B) = |B - Br|^2 / (2 mu).
     """
     numbering = numbering or _free_unknowns(discretisation)
-    turns = turn_density(problem, discretisation)
-    local = np.einsum("eiq,eq->ei", discretisation.radius_shape, turns * discretisation.weight)
     shape = discretisation.flux_shape
     return Side(
         name="flux side",
         shape=shape,
         numbering=numbering,
         source=np.zeros((len(shape), 2, shape.shape[3])),
-        load=numbering.vector(local),
+        load=turns_load(
+            discretisation, numbering, turn_density(problem.turns_per_area, discretisation)
+        ),
         weight=discretisation.weight,
         law=laws.of_flux_density,
         density=laws.energy_density,
@@ -52,12 +54,16 @@ def flux_side(
     )
 
 
-def turn_density(problem: FieldProblem, discretisation: Discretisation) -> Array:
-    """Return the turns per area of every element, 1/m2, (elements, 1)."""
+def turns_load(discretisation: Discretisation, numbering: Numbering, turns: Array) -> Array:
+    """Return the load per ampere (size,) of turns per area (elements, 1) in 1/m2."""
+    weighted = turns * discretisation.weight
+    return numbering.vector(np.einsum("eiq,eq->ei", discretisation.radius_shape, weighted))
+
+
+def turn_density(turns_per_area: Mapping[str, float], discretisation: Discretisation) -> Array:
+    """Return the turns per area of every element, 1/m2, (elements, 1), from those of regions."""
     mesh = discretisation.mesh
-    return np.array([problem.turns_per_area.get(name, 0.0) for name in mesh.names])[mesh.region][
-        :, None
-    ]
+    return np.array([turns_per_area.get(name, 0.0) for name in mesh.names])[mesh.region][:, None]
 
 
 def _free_unknowns(discretisation: Discretisation) -> Numbering:

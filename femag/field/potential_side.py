@@ -21,7 +21,7 @@ from femag.field.laws import Laws, axial_field
 from femag.field.numbering import Numbering
 from femag.field.problem import FieldProblem
 from femag.field.side import Side
-from femag.field.source_field import source_field
+from femag.field.source_field import source_fields
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -38,7 +38,8 @@ def potential_side(
     In a magnet w'(H) = mu |H + Br/mu|^2 / 2 - |Br|^2 / (2 mu).
     """
     numbering = numbering or _grouped_unknowns(discretisation)
-    source = source_field(discretisation, turn_density(problem, discretisation), laws.permeability)
+    turns = turn_density(problem.turns_per_area, discretisation)
+    source = source_fields(discretisation, turns, laws.permeability)[0]
     return Side(
         name="potential side",
         shape=np.negative(discretisation.gradient_shape),

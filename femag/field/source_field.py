@@ -26,15 +26,15 @@ Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
 
-def source_field(discretisation: Discretisation, turns: Array, permeability: Array) -> Array:
-    """Return T per ampere at the quadrature points in 1/m, (elements, 2, points).
+def source_fields(discretisation: Discretisation, turns: Array, permeability: Array) -> Array:
+    """Return T per ampere of n excitations in 1/m, (n, elements, 2, points).
 
     Parameters
     ----------
     discretisation : Discretisation
         The mesh with its quadrature.
-    turns : array, (elements, 1)
-        Turns per area, 1/m2.
+    turns : array, (elements, n)
+        Turns per area of each excitation, 1/m2.
     permeability : array, (elements, 1)
         Initial permeability, H/m.
 
@@ -53,14 +53,14 @@ def source_field(discretisation: Discretisation, turns: Array, permeability: Arr
     cotree = ~_tree_edges(triangles.facets, _edge_weights(triangles, walls, permeability))
     if np.count_nonzero(cotree) != triangles.nelements:
         raise NumericalError("the meshed domain is not simply connected")
-    circulation = np.zeros(triangles.nfacets)
-    circulation[cotree] = _circulations(edges, cotree, turns[:, 0])
-    closed = np.abs(circulation[walls]).max(initial=0.0)
-    if closed > 1e-9 * np.abs(circulation).max():
+    circulation = np.zeros((triangles.nfacets, turns.shape[1]))
+    circulation[cotree] = _circulations(edges, cotree, turns)
+    closed = np.abs(circulation[walls]).max(axis=0, initial=0.0)
+    if np.any(closed > 1e-9 * np.abs(circulation).max(axis=0)):
         raise NumericalError("a closed wall without tangential field encloses a net current")
     local = circulation[edges.element_dofs]
     shapes = np.stack([np.asarray(function[0]) for function in edges.basis])
-    return np.asarray(np.einsum("ie,iceq->ecq", local, shapes))
+    return np.asarray(np.einsum("ien,iceq->necq", local, shapes))
 
 
 def _zero_edges(discretisation: Discretisation) -> Index:
@@ -101,4 +101,4 @@ def _circulations(edges: Basis, cotree: NDArray[np.bool_], turns: Array) -> Arra
     free = number >= 0
     elements = np.broadcast_to(np.arange(len(area)), number.shape)
     stokes = csc_matrix((curl[free], (elements[free], number[free])))
-    return np.asarray(splu(stokes).solve(-turns * area))
+    return np.asarray(splu(stokes).solve(-turns * area[:, None]))

@@ -29,7 +29,7 @@ SCALE_SHARE = 0.98
 
 
 def flux_map(result: Result, ax: Axes, lines: int = 18) -> Axes:
-    """Draw flux lines over |B| in the whole section.
+    """Draw flux lines over the magnitude of B in the whole section.
 
     Parameters
     ----------
@@ -49,7 +49,7 @@ def flux_map(result: Result, ax: Axes, lines: int = 18) -> Axes:
 
 
 def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
-    """Draw flux lines over |B| around the outer edge of the post's gap, with the copper beside it.
+    """Draw flux lines over the magnitude of B around the edge of the post's gap and the copper.
 
     Of several gaps in the post the top one is drawn.
 

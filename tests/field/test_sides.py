@@ -54,7 +54,9 @@ def test_flux_side_equals_scikit_fem_forms(sides: Sides) -> None:
         return 2 * 2 * np.pi * w.x[0] ** 2 * w.turns * v
 
     mu_field = np.broadcast_to(mu, basis.dx.shape)
-    turns = np.broadcast_to(turn_density(sides.problem, sides.discretisation), basis.dx.shape)
+    turns = np.broadcast_to(
+        turn_density(sides.problem.turns_per_area, sides.discretisation), basis.dx.shape
+    )
     columns = dof_of_unknown(sides, sides.flux.numbering.unknown)
     expected = stiffness.assemble(basis, mu=mu_field)[columns][:, columns]
     zero = np.zeros_like(sides.flux.source)
@@ -87,7 +89,7 @@ def test_curl_of_the_source_field_is_the_current_density(sides: Sides) -> None:
     """T is linear in each element: fit it to the quadrature points and take dT_r/dz - dT_z/dr."""
     r, z = np.asarray(sides.discretisation.basis.global_coordinates())
     scale = 1e-3
-    turns = turn_density(sides.problem, sides.discretisation)[:, 0]
+    turns = turn_density(sides.problem.turns_per_area, sides.discretisation)[:, 0]
     curl = np.empty(len(r))
     for element, (points_r, points_z) in enumerate(zip(r, z, strict=True)):
         centred = np.stack([np.ones_like(points_r), points_r - points_r[0], points_z - points_z[0]])

@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 
 import validation.air_coils.regenerate as air_coils
+import validation.coupled_coils.regenerate as coupled_coils
 import validation.nonlinear_pot.regenerate as nonlinear_pot
 import validation.round_post_fringing.regenerate as fringing
 import validation.sphere.regenerate as sphere
@@ -15,6 +16,7 @@ from validation.rows import table_of
 
 LINES = {
     "air_coils": air_coils.lines,
+    "coupled_coils": coupled_coils.lines,
     "nonlinear_pot": nonlinear_pot.lines,
     "sphere": sphere.lines,
     "uniform_field": uniform_field.lines,

@@ -17,7 +17,14 @@ from validation.sphere import run as sphere
 from validation.table import row_line
 
 ROOT = Path(validation.__file__).parent
-BOUNDED = ("air_coils", "nonlinear_pot", "round_post_fringing", "finite_post", "pot_core_26_16")
+BOUNDED = (
+    "air_coils",
+    "coupled_coils",
+    "nonlinear_pot",
+    "round_post_fringing",
+    "finite_post",
+    "pot_core_26_16",
+)
 LINE_BY_LINE: dict[str, Callable[[dict[str, str]], Iterable[Row]]] = {
     "nonlinear_pot": nonlinear_pot.rows_of,
     "round_post_fringing": round_post_fringing.rows_of,

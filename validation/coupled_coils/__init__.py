@@ -1,0 +1,1 @@
+"""Coupled coils: mutual inductance in open space, leakage of windings over each other."""
