@@ -72,7 +72,11 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.requirement_checks import RequirementCheck, checked_requirements
+    from femag.requirements import Requirements
     from femag.result import Result, solve
+    from femag.review import Review, design_review
+    from femag.sheet import review_sheet
     from femag.target_gap import gap_for
     from femag.winding_matrix import WindingMatrix, winding_matrix
 
@@ -118,7 +122,13 @@ _HOME = {
     "LinearCurve": "femag.materials",
     "NumericalError": "femag.errors",
     "PotCore": "femag.geometry",
+    "RequirementCheck": "femag.requirement_checks",
+    "Requirements": "femag.requirements",
     "Result": "femag.result",
+    "Review": "femag.review",
+    "checked_requirements": "femag.requirement_checks",
+    "design_review": "femag.review",
+    "review_sheet": "femag.sheet",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -159,7 +169,10 @@ __all__ = [
     "MeasuredPoints",
     "NumericalError",
     "PotCore",
+    "RequirementCheck",
+    "Requirements",
     "Result",
+    "Review",
     "RoundWire",
     "Step",
     "TabulatedCurve",
@@ -168,6 +181,8 @@ __all__ = [
     "WindingMatrix",
     "catalogue",
     "catalogue_core",
+    "checked_requirements",
+    "design_review",
     "design_toml",
     "fitted_design",
     "gap_for",
@@ -187,6 +202,7 @@ __all__ = [
     "read_measured",
     "read_result",
     "residuals",
+    "review_sheet",
     "solve",
     "winding_matrix",
     "write_circuit",

@@ -12,7 +12,7 @@ from femag.design import Design
 from femag.geometry import Gap
 from femag.quantities import WoundCopper
 from femag.requirement_answer import requirement_lines
-from femag.requirement_checks import requirement_checks
+from femag.requirement_checks import checked_requirements
 from femag.result import Result
 from femag.units import with_common_unit, with_unit
 
@@ -33,7 +33,7 @@ def print_answer(result: Result, console: Console) -> None:
         lines.append(Text(design.title, style="bold"))
     lines += [described(design), ""]
     if design.requirements:
-        lines += [*requirement_lines(requirement_checks(result)), ""]
+        lines += [*requirement_lines(checked_requirements(result)), ""]
     lines += [_inductances(result), "", _flux_densities(result)]
     lines += [Text(where_it_saturates(result)), ""]
     if len(design.windings) > 1:

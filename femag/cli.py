@@ -55,6 +55,10 @@ MeshOption = Annotated[
     Path | None,
     typer.Option("--mesh", metavar="FILE.msh", help="Write the mesh with named regions as MSH."),
 ]
+FiguresOption = Annotated[
+    Path | None,
+    typer.Option("--figures", metavar="DIR", help="Write every figure of the result by itself."),
+]
 
 
 @app.callback(invoke_without_command=True)
@@ -80,6 +84,7 @@ def solve_command(
     out: OutOption = None,
     field: FieldOption = None,
     mesh: MeshOption = None,
+    figures: FiguresOption = None,
 ) -> int:
     """Solve a design file.
 
@@ -94,7 +99,9 @@ def solve_command(
         )
     check_file("--field", field, ".vtu")
     check_file("--mesh", mesh, ".msh")
-    return _answer(_with_current(read_design(design), current), json, out, meshed=(field, mesh))
+    check_targets(None, figures, "--figures")
+    asked = _with_current(read_design(design), current)
+    return _answer(asked, json, out, meshed=(field, mesh), figures=figures)
 
 
 @app.command("demo")
@@ -192,9 +199,10 @@ def _answer(
     out: Path | None,
     texts: Mapping[Path, str] | None = None,
     meshed: tuple[Path | None, Path | None] = (None, None),
+    figures: Path | None = None,
 ) -> int:
-    """Solve, write files, with `texts`, field and mesh among them, print; return the exit code."""
-    from femag.requirement_checks import all_kept, requirement_checks
+    """Solve, write files, with `texts` among them, print; return the exit code."""
+    from femag.requirement_checks import all_kept, checked_requirements
     from femag.result import solve
 
     check_targets(json, out)
@@ -202,8 +210,9 @@ def _answer(
         result = solve(design, progress=progress)
     with ExitStack() as stack:
         _write_on_mesh(result, *meshed, stack)
+        _write_figures(result, figures, stack)
         _write(result, json, out, texts or {}, stack)
-    code = 0 if all_kept(requirement_checks(result)) else MISSED
+    code = 0 if all_kept(checked_requirements(result)) else MISSED
     if json == "-":
         from femag.export.result_file import result_json
 
@@ -229,6 +238,21 @@ def _write_on_mesh(result: Result, field: Path | None, mesh: Path | None, stack:
     for file, write in ((field, write_field), (mesh, write_mesh)):
         if file is not None:
             write(result, stack.enter_context(whole_file(file)))
+
+
+def _write_figures(result: Result, folder: Path | None, stack: ExitStack) -> None:
+    """Write every figure into a folder, if one is given; renamed when the stack is left."""
+    if folder is None:
+        return
+    from femag.export.whole_file import whole_file
+    from femag.plot import result_files
+    from femag.review import mesh_row
+
+    meshes, _ = mesh_row(result.design)
+    made = result_files(result, meshes)
+    make_folder(folder, "--figures")
+    for name, content in made.items():
+        stack.enter_context(whole_file(folder / name)).write_bytes(content)
 
 
 def _write(

@@ -86,7 +86,7 @@ class RequirementCheck:
         return "missed" if missed else "not shown"
 
 
-def requirement_checks(result: Result) -> tuple[RequirementCheck, ...]:
+def checked_requirements(result: Result) -> tuple[RequirementCheck, ...]:
     """Return every requirement of a result's design beside what the result knows of it."""
     required = result.design.requirements
     checks = [_check(limit, KNOWN[limit.key](result)) for limit in required.limits()]
@@ -166,12 +166,12 @@ def _fit(result: Result) -> Known:
 KNOWN: dict[str, Callable[[Result], Known]] = {
     "inductance_least": _inductance,
     "inductance_most": _inductance,
-    "incremental_inductance_least": _incremental,
-    "post_flux_density_most": _post_flux_density,
-    "flux_density_most": _flux_density,
-    "loss_most": _loss,
-    "force_most": _force,
-    "copper_clearance_least": _clearance,
-    "temperature_least": _temperature,
+    "incremental_inductance": _incremental,
+    "flux_density": _post_flux_density,
+    "core_flux_density": _flux_density,
+    "loss": _loss,
+    "force": _force,
+    "copper_clearance": _clearance,
+    "temperature": _temperature,
 }
 """What is held against each limit."""

@@ -43,13 +43,13 @@ class Limit:
 KINDS: dict[str, tuple[str, str, Sense]] = {
     "inductance_least": ("inductance", "H", "least"),
     "inductance_most": ("inductance", "H", "most"),
-    "incremental_inductance_least": ("incremental inductance", "H", "least"),
-    "post_flux_density_most": ("flux density, post", "T", "most"),
-    "flux_density_most": ("flux density, core", "T", "most"),
-    "loss_most": ("loss", "W", "most"),
-    "force_most": ("force", "N", "most"),
-    "copper_clearance_least": ("copper to gap", "m", "least"),
-    "temperature_least": ("temperature assumed", "C", "least"),
+    "incremental_inductance": ("incremental inductance", "H", "least"),
+    "flux_density": ("flux density, post", "T", "most"),
+    "core_flux_density": ("flux density, core", "T", "most"),
+    "loss": ("loss", "W", "most"),
+    "force": ("force", "N", "most"),
+    "copper_clearance": ("copper to gap", "m", "least"),
+    "temperature": ("temperature assumed", "C", "least"),
 }
 """Words, unit and sense of every limit."""
 
@@ -62,19 +62,19 @@ class Requirements:
     ----------
     inductance_least, inductance_most : float, optional
         Of the energy inductance, H.
-    incremental_inductance_least : float, optional
+    incremental_inductance : float, optional
         Of the incremental inductance, H.
-    post_flux_density_most : float, optional
+    flux_density : float, optional
         Of the mean flux density through the post where it is largest, T.
-    flux_density_most : float, optional
+    core_flux_density : float, optional
         Of the mean flux density through the fullest section of the core, T.
-    loss_most : float, optional
+    loss : float, optional
         Of core and copper together, W.
-    force_most : float, optional
+    force : float, optional
         Of the force with which the halves of the core pull at each other, N.
-    copper_clearance_least : float, optional
+    copper_clearance : float, optional
         Of the distance between metal of a winding and the edge of a gap, m.
-    temperature_least : float, optional
+    temperature : float, optional
         Degrees Celsius that every conductor has to be computed at, or above: what the design
         assumes, not what it reaches.
     fit : bool
@@ -88,13 +88,13 @@ class Requirements:
 
     inductance_least: float | None = None
     inductance_most: float | None = None
-    incremental_inductance_least: float | None = None
-    post_flux_density_most: float | None = None
-    flux_density_most: float | None = None
-    loss_most: float | None = None
-    force_most: float | None = None
-    copper_clearance_least: float | None = None
-    temperature_least: float | None = None
+    incremental_inductance: float | None = None
+    flux_density: float | None = None
+    core_flux_density: float | None = None
+    loss: float | None = None
+    force: float | None = None
+    copper_clearance: float | None = None
+    temperature: float | None = None
     fit: bool = False
 
     def __post_init__(self) -> None:

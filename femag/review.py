@@ -12,7 +12,7 @@ from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
 from femag.measured_inductance import MeasuredPoints, residuals
 from femag.mesh import coarse_mesh
-from femag.requirement_checks import RequirementCheck, requirement_checks
+from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Result, solve
 
 STEPS = 6
@@ -85,7 +85,7 @@ class Review:
         return replace(self.result, solution=self.finest)
 
 
-def review(
+def design_review(
     design: Design,
     currents: Sequence[float] = (),
     measured: MeasuredPoints | None = None,
@@ -134,7 +134,7 @@ def review(
         meshes=meshes,
         finest=finest,
         curve=curve,
-        checks=requirement_checks(result),
+        checks=checked_requirements(result),
         measured=measured,
         residuals=() if measured is None else tuple(residuals(measured, curve).tolist()),
     )

@@ -49,7 +49,7 @@ def sheet_command(
     from femag.design_file import read_design
     from femag.export.whole_file import whole_file
     from femag.requirement_checks import all_kept
-    from femag.review import review
+    from femag.review import design_review
 
     _check_target(out)
     check_spares(design, "the design", "--out", out)
@@ -58,7 +58,7 @@ def sheet_command(
     asked = [] if currents is None else [c for c in currents_of(currents) if c != 0.0]
     points = measured_points(measured, kind, fit=False)
     with shown_progress(str) as progress:
-        reviewed = review(read_design(design), asked, points, progress)
+        reviewed = design_review(read_design(design), asked, points, progress)
         if progress is not None:
             progress("sheet")
         from femag.sheet import review_sheet

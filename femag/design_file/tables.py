@@ -245,13 +245,13 @@ class RequireTable(_Table):
 
     inductance_least: Inductance | None = Field(default=None, description=ACCEPTED["H"])
     inductance_most: Inductance | None = Field(default=None, description=ACCEPTED["H"])
-    incremental_inductance_least: Inductance | None = Field(default=None, description=ACCEPTED["H"])
-    post_flux_density_most: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
-    flux_density_most: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
-    loss_most: Power | None = Field(default=None, description=ACCEPTED["W"])
-    force_most: Force | None = Field(default=None, description=ACCEPTED["N"])
-    copper_clearance_least: Length | None = Field(default=None, description=ACCEPTED["m"])
-    temperature_least: Temperature | None = Field(default=None, description=TEMPERATURE)
+    incremental_inductance: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    flux_density: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    core_flux_density: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    loss: Power | None = Field(default=None, description=ACCEPTED["W"])
+    force: Force | None = Field(default=None, description=ACCEPTED["N"])
+    copper_clearance: Length | None = Field(default=None, description=ACCEPTED["m"])
+    temperature: Temperature | None = Field(default=None, description=TEMPERATURE)
     fit: bool = Field(default=False, description="true or false")
 
 

@@ -14,7 +14,7 @@ from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
 from femag.quantities import SectionMean, VolumeShare, WoundCopper
-from femag.requirement_checks import RequirementCheck, requirement_checks
+from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -184,7 +184,7 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
-        requirements=[_requirement_entry(check) for check in requirement_checks(result)],
+        requirements=[_requirement_entry(check) for check in checked_requirements(result)],
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,

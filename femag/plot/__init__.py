@@ -9,14 +9,14 @@ from femag.plot.curve_figures import (
     shearing_panels,
 )
 from femag.plot.field_lines import layer_field, post_face_field
-from femag.plot.figure_file import Draw, figure_bytes, untitled, write_figure, write_panels
+from femag.plot.figure_file import figure_bytes, untitled, write_figure, write_panels
 from femag.plot.flux_map import flux_map, gap_map
 from femag.plot.loop_figure import loop_figure, waveform_figure
+from femag.plot.result_files import result_files
 from femag.plot.review_figures import convergence, material_curve
 from femag.plot.section_drawing import section_drawing
 
 __all__ = [
-    "Draw",
     "convergence",
     "core_drawing",
     "core_flux_figure",
@@ -30,6 +30,7 @@ __all__ = [
     "material_curve",
     "material_figure",
     "post_face_field",
+    "result_files",
     "section_drawing",
     "shearing_panels",
     "untitled",

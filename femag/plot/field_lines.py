@@ -22,7 +22,8 @@ SAMPLES = 400
 NEAR_EDGE = 0.35
 """Share of the samples that crowd at the post's edge, where the field changes fast."""
 SHORT = 1e-4
-"""Share of the window that the line stops short of the ring, whose own field is another."""
+"""Share of the window that a line stops short of the ring, whose own field is another, and share of
+the copper that one lies inside of it: on an edge between elements B would be of either."""
 HEADROOM = 1.5
 """Height of the picture over the largest value in the middle of the gap; the edge goes beyond."""
 
@@ -86,9 +87,10 @@ def layer_field(result: Result, ax: Axes) -> Axes:
         If the result was read from a file and holds no fields.
     """
     solution = _solution(result)
-    inner, _, bottom, top = _innermost_copper(result)
+    inner, outer, bottom, top = _innermost_copper(result)
     z = np.linspace(bottom, top, SAMPLES)
-    b = 1e3 * point_fields(solution, np.stack([np.full_like(z, inner), z])).flux_density
+    radius = np.full_like(z, inner + SHORT * (outer - inner))
+    b = 1e3 * point_fields(solution, np.stack([radius, z])).flux_density
     for values, colour, style, label in (
         (np.hypot(*b), "black", "-", "size"),
         (b[0], "0.35", (0, (5, 2)), "radial part"),

@@ -9,7 +9,6 @@ from typing import Literal
 
 from femag.geometry import PotCore
 from femag.plot import (
-    Draw,
     convergence,
     core_drawing,
     figure_bytes,
@@ -22,6 +21,7 @@ from femag.plot import (
     section_drawing,
     untitled,
 )
+from femag.plot.figure_file import Draw
 from femag.plot.flux_map import Window, gap_window, section_window
 from femag.review import Review
 

@@ -19,7 +19,7 @@ import pytest
 
 from femag.design_file import design_from_toml
 from femag.requirements import Requirements
-from femag.review import Review, review
+from femag.review import Review, design_review
 from femag.sheet import review_sheet
 
 NAMES = ("chromium", "chromium-browser", "google-chrome")
@@ -178,7 +178,7 @@ def reviewed() -> Review:
     text = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
     design = design_from_toml(text.replace("tolerance = 1e-3", "tolerance = 1e-2"))
     required = replace(design, title=TITLE, requirements=Requirements(**LIMITS))
-    return review(required, [2.0, 6.0])
+    return design_review(required, [2.0, 6.0])
 
 
 @pytest.fixture(scope="session")

@@ -12,7 +12,7 @@ import pytest
 import femag as fm
 from femag.quantities import PointFields, point_fields
 from femag.requirements import Requirements
-from femag.review import Review, review
+from femag.review import Review, design_review
 from femag.sheet import review_sheet
 
 PLACES = {
@@ -215,10 +215,10 @@ def test_sheets_of_the_smallest_and_the_largest_core_open(
         windings=fm.Winding(20),
         material=fm.material("mnzn-power-100C"),
         current=0.3 * core.window_height / 0.02 / 20,
-        requirements=Requirements(inductance_least=1.0, flux_density_most=2.0),
+        requirements=Requirements(inductance_least=1.0, core_flux_density=2.0),
         title=f"{size} <b>&amp;</b> \"quoted\" 'path'",
     )
-    reviewed = review(replace(design, current=abs(design.current)))
+    reviewed = design_review(replace(design, current=abs(design.current)))
     file = written(reviewed, tmp_path / 'it\'s a "sheet".html')
     assert file.stat().st_size < 3_000_000
     browser.open(file)
