@@ -72,6 +72,8 @@ def _quantity(value: float, unit: str, *, exact: bool = False) -> str:
     """Return a value with its unit; a limit without the noughts that its text has not."""
     if unit == "C":
         return f"{value:g} C"
+    if unit == "m":
+        return f"{1e3 * value:g} mm" if exact else f"{1e3 * value:.3f} mm"
     if unit == "T":
         return f"{value:g} T" if exact else f"{value:.4f} T"
     text, symbol = with_unit(value, unit, 6 if exact else 4).split()

@@ -60,6 +60,7 @@ class Figure:
 def review_figures(review: Review) -> dict[str, Figure]:
     """Return every figure of the sheet by its name."""
     drawn, current = review.drawn, f"{review.result.current:g} A"
+    gapped = bool(review.design.gaps)
     inductance = partial(
         inductance_figure,
         review.curve,
@@ -74,11 +75,10 @@ def review_figures(review: Review) -> dict[str, Figure]:
                 "between neighbouring lines."),
         _figure("gap", untitled(partial(gap_map, drawn)), "png",
                 _map_panel(gap_window(review.design)),
-                f"The same around the outer edge of the gap at {current}, with what of the flux "
-                "reaches the copper."),
+                f"The same around the {'outer edge of the gap' if gapped else 'post'} at {current}, "
+                "with what of the flux reaches the copper."),
         _figure("post-face", partial(post_face_field, drawn), "svg", HALF,
-                f"Axial flux density across the gap against the radius at {current}. At the sharp "
-                "edges of the face it has no limit; the picture cuts it off."),
+                _across(gapped, current)),
         _figure("layer", partial(layer_field, drawn), "svg", HALF,
                 f"Flux density along the inner face of the innermost winding at {current}."),
         _figure("inductance", untitled(inductance, grid=True), "svg", (7.2, 3.7),
@@ -95,12 +95,24 @@ def review_figures(review: Review) -> dict[str, Figure]:
     return {figure.name: figure for figure in figures}
 
 
+def _across(gapped: bool, current: str) -> str:
+    """Return what the figure of the field across the gap shows."""
+    if not gapped:
+        return f"Axial flux density half way up the window against the radius at {current}."
+    return (
+        f"Axial flux density across the gap against the radius at {current}. At the sharp edges of "
+        "the face it has no limit; the picture cuts it off."
+    )
+
+
 def _drawings(review: Review) -> list[Figure]:
     """Return the drawing of the section, and of the core as ordered where that is another."""
-    design = review.design
+    design, solved = review.design, "core"
+    if not isinstance(design.core, PotCore):
+        solved = "the core of revolution that is solved instead of the core"
     drawings = [
         _figure("drawing", partial(section_drawing, design), "svg", (5.6, 4.2),
-                "Section through core, gap and copper as solved, dimensions in mm.", is_wide=True)
+                f"Section through {solved}, gap and copper, dimensions in mm.", is_wide=True)
     ]  # fmt: skip
     if not isinstance(design.core, PotCore):
         drawings.append(
