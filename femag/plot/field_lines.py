@@ -26,6 +26,8 @@ SHORT = 1e-4
 the copper that one lies inside of it: on an edge between elements B would be of either."""
 HEADROOM = 1.5
 """Height of the picture over the largest value in the middle of the gap; the edge goes beyond."""
+FOOT = 0.12
+"""Share of the height that is left below, for the names of the bands."""
 
 
 def post_face_field(result: Result, ax: Axes) -> Axes:
@@ -50,7 +52,6 @@ def post_face_field(result: Result, ax: Axes) -> Axes:
     piece = (GapPiece(0.0, 0.0), *post_pieces(result.design.gaps, core.window_height))[-1]
     radii = _radii(core.turned.hole_radius, core.turned.post_radius, core.window_radius)
     middle = _axial(solution, radii, piece.middle)
-    top = HEADROOM * float(np.abs(middle).max())
     if piece.length > 0.0 and piece.is_flat:
         face = _axial(solution, radii, piece.top)
         ax.plot(1e3 * radii, face, color="0.45", linewidth=1.1, linestyle=(0, (5, 2)),
@@ -61,11 +62,11 @@ def post_face_field(result: Result, ax: Axes) -> Axes:
     _band(ax, 1e3 * core.turned.hole_radius, 1e3 * core.turned.post_radius, "post")
     copper = _innermost_copper(result)
     _band(ax, 1e3 * copper[0], 1e3 * copper[1], "copper")
-    largest = float(middle[np.argmax(np.abs(middle))])
-    low, high = sorted((-0.12 * np.sign(largest) * top, np.sign(largest) * top))
-    ax.set(xlim=(0.0, 1e3 * radii[-1]), ylim=(low, high), xlabel="radius r, mm",
-           ylabel="axial flux density, T")  # fmt: skip
-    ax.legend(loc="upper right" if largest > 0.0 else "lower right", frameon=False)
+    low, high = HEADROOM * min(middle.min(), 0.0), HEADROOM * max(middle.max(), 0.0)
+    room = FOOT * (high - low)
+    ax.set(xlim=(0.0, 1e3 * radii[-1]), ylim=(low - room, high + room * (high == 0.0)),
+           xlabel="radius r, mm", ylabel="axial flux density, T")  # fmt: skip
+    ax.legend(loc="best", frameon=False)
     return ax
 
 

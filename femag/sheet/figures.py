@@ -75,8 +75,8 @@ def review_figures(review: Review) -> dict[str, Figure]:
                 "between neighbouring lines."),
         _figure("gap", untitled(partial(gap_map, drawn)), "png",
                 _map_panel(gap_window(review.design)),
-                f"The same around the {'outer edge of the gap' if gapped else 'post'} at {current}, "
-                "with what of the flux reaches the copper."),
+                f"The same around the {'outer edge of the gap' if gapped else 'post'} at "
+                f"{current}, with what of the flux reaches the copper."),
         _figure("post-face", partial(post_face_field, drawn), "svg", HALF,
                 _across(gapped, current)),
         _figure("layer", partial(layer_field, drawn), "svg", HALF,

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from femag.answer import described_gap, layers_text
 from femag.current_curve import CurvePoint, InductanceCurve
+from femag.curve_answer import relative_half_width
 from femag.geometry import Block
 from femag.quantities import WoundCopper, copper_clearance
 from femag.requirement_answer import interval_text, limit_text, margin_text, reason, value_text
@@ -131,7 +132,7 @@ def _point_row(point: CurvePoint) -> Row:
         shown(point.apparent_inductance, "H"),
         shown(point.incremental_inductance, "H"),
         shown(point.coenergy.value, "J"),
-        f"{100 * point.coenergy.relative_half_width:.2g} %" if point.current else "-",
+        f"{100 * relative_half_width(point):.2g} %" if point.current else "-",
     )
 
 
