@@ -22,6 +22,7 @@ from validation.table import cells
 
 ROOT = Path(__file__).parents[1]
 
+
 def write_reference_pages(folder: Path) -> None:
     """Write all pages into a folder, each anew."""
     folder.mkdir(exist_ok=True)
@@ -99,7 +100,12 @@ def python_page() -> str:
         kind = "class" if inspect.isclass(value) else "function" if callable(value) else "data"
         lines += [f"## {name}", "", "```{eval-rst}", f".. auto{kind}:: {value.__module__}.{name}"]
         lines += ["```", ""] if kind != "data" else ["   :no-value:", "```", ""]
-    lines += ["## plot", "", "`fm.plot`: one function a figure, each draws on an Axes of yours.", ""]
+    lines += [
+        "## plot",
+        "",
+        "`fm.plot`: one function a figure, each draws on an Axes of yours.",
+        "",
+    ]
     for name in importlib.import_module("femag.plot").__all__:
         value = getattr(femag.plot, name)
         lines += ["```{eval-rst}", f".. autofunction:: {value.__module__}.{name}", "```", ""]
@@ -119,7 +125,9 @@ def validation_page() -> str:
         lines += [f"## {title.lstrip('# ')}", "", re.sub("(?m)^#+ ", "### ", rest).strip(), ""]
         lines += ["| case | quantity | reference | error | half width | bounds hold it | passed |"]
         lines += ["|---|---|---|---|---|---|---|"]
-        lines += [f"| {' | '.join(_cell(cell) for cell in cells(row))} |" for row in folder_rows(folder)]
+        lines += [
+            f"| {' | '.join(_cell(cell) for cell in cells(row))} |" for row in folder_rows(folder)
+        ]
         lines.append("")
     return "\n".join(lines)
 
@@ -134,13 +142,21 @@ def _document_modules() -> Iterator[Any]:
 
 def _entries(module: Any) -> Iterator[type[Entry]]:
     for value in vars(module).values():
-        if inspect.isclass(value) and issubclass(value, Entry) and value.__module__ == module.__name__:
+        if (
+            inspect.isclass(value)
+            and issubclass(value, Entry)
+            and value.__module__ == module.__name__
+        ):
             yield value
 
 
 def _type_name(field: Any) -> str:
     annotation = field.annotation
-    text = annotation.__name__ if inspect.isclass(annotation) and "[" not in str(annotation) else str(annotation)
+    text = (
+        annotation.__name__
+        if inspect.isclass(annotation) and "[" not in str(annotation)
+        else str(annotation)
+    )
     return text.replace("typing.", "").replace("femag.export.", "")
 
 

@@ -30,9 +30,10 @@ if TYPE_CHECKING:
         normal_curve,
         read_capture,
     )
+    from femag.copper_distance import KeepOut, keep_out
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
-    from femag.design_file import design_toml, read_design
+    from femag.design_file import design_toml, read_design, read_ripple
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
@@ -60,10 +61,12 @@ if TYPE_CHECKING:
     from femag.materials import (
         FroehlichCurve,
         LinearCurve,
+        Steinmetz,
         TabulatedCurve,
         material,
         material_library,
         read_material,
+        steinmetz_through,
     )
     from femag.measured_inductance import (
         MeasuredPoints,
@@ -72,11 +75,14 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.quantities import CoreLoss, LossBudget
     from femag.requirement_checks import RequirementCheck, checked_requirements
     from femag.requirements import Requirements
     from femag.result import Result, solve
     from femag.review import Review, design_review
+    from femag.ripple import Ripple
     from femag.sheet import review_sheet
+    from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
     from femag.winding_matrix import WindingMatrix, winding_matrix
 
@@ -86,10 +92,12 @@ _HOME = {
     "COPPER": "femag.geometry",
     "Capture": "femag.bench",
     "CaptureColumns": "femag.bench",
+    "CoreLoss": "femag.quantities",
     "CoreUnderTest": "femag.bench",
     "Foil": "femag.geometry",
     "Former": "femag.geometry",
     "LitzWire": "femag.geometry",
+    "LossBudget": "femag.quantities",
     "Loop": "femag.bench",
     "loop_of": "femag.bench",
     "material_toml": "femag.bench",
@@ -129,6 +137,9 @@ _HOME = {
     "checked_requirements": "femag.requirement_checks",
     "design_review": "femag.review",
     "review_sheet": "femag.sheet",
+    "Ripple": "femag.ripple",
+    "Steinmetz": "femag.materials",
+    "steinmetz_through": "femag.materials",
     "Step": "femag.geometry",
     "ToleranceError": "femag.field.adapt",
     "Winding": "femag.geometry",
@@ -136,9 +147,17 @@ _HOME = {
     "catalogue_core": "femag.geometry",
     "design_toml": "femag.design_file",
     "read_design": "femag.design_file",
+    "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
     "gap_for": "femag.target_gap",
+    "KeepOut": "femag.copper_distance",
+    "keep_out": "femag.copper_distance",
     "solve": "femag.result",
+    "Sample": "femag.study",
+    "Study": "femag.study",
+    "StudyTable": "femag.study",
+    "read_study": "femag.study",
+    "read_table": "femag.study",
     "write_result": "femag.export.result_file",
     "write_field": "femag.export.mesh_files",
     "write_mesh": "femag.export.mesh_files",
@@ -153,6 +172,7 @@ __all__ = [
     "Bounds",
     "Capture",
     "CaptureColumns",
+    "CoreLoss",
     "CoreUnderTest",
     "Design",
     "Foil",
@@ -162,9 +182,11 @@ __all__ = [
     "GapfieldError",
     "InductanceCurve",
     "InputError",
+    "KeepOut",
     "LinearCurve",
     "LitzWire",
     "Loop",
+    "LossBudget",
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
@@ -173,8 +195,13 @@ __all__ = [
     "Requirements",
     "Result",
     "Review",
+    "Ripple",
     "RoundWire",
+    "Sample",
+    "Steinmetz",
     "Step",
+    "Study",
+    "StudyTable",
     "TabulatedCurve",
     "ToleranceError",
     "Winding",
@@ -187,6 +214,7 @@ __all__ = [
     "fitted_design",
     "gap_for",
     "inductance_curve",
+    "keep_out",
     "loop_of",
     "material",
     "material_library",
@@ -201,9 +229,13 @@ __all__ = [
     "read_material",
     "read_measured",
     "read_result",
+    "read_ripple",
+    "read_study",
+    "read_table",
     "residuals",
     "review_sheet",
     "solve",
+    "steinmetz_through",
     "winding_matrix",
     "write_circuit",
     "write_curve",

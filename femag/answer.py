@@ -8,8 +8,10 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+from femag.copper_answer import LOSS_COLUMNS, loss_notes, loss_rows
 from femag.design import Design
 from femag.geometry import Gap
+from femag.loss_answer import described_ripple, loss_lines
 from femag.quantities import WoundCopper
 from femag.requirement_answer import requirement_lines
 from femag.requirement_checks import checked_requirements
@@ -40,7 +42,10 @@ def print_answer(result: Result, console: Console) -> None:
         lines += [Text(OTHER_WINDINGS), ""]
     if result.copper:
         lines += [_copper(result), ""]
+    if result.copper_loss:
+        lines += [_losses(result), *map(Text, loss_notes(result)), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]
+    lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
         console.print(line, highlight=False)
@@ -55,6 +60,8 @@ def described(design: Design, currents: str | None = None) -> Text:
         *([described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
     drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
+    if design.ripple is not None and currents is None:
+        drive += f"\n{described_ripple(design.ripple, design.current)}"
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
@@ -170,6 +177,13 @@ def _copper(result: Result) -> Table:
             f"{copper.wire_length:.3g} m",
             f"{with_unit(copper.resistance, 'ohm', 3)} at {copper.temperature:g} C",
         )
+    return table
+
+
+def _losses(result: Result) -> Table:
+    table = columns(*LOSS_COLUMNS, words=["loss of"])
+    for row in loss_rows(result):
+        table.add_row(*row)
     return table
 
 

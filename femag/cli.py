@@ -18,8 +18,10 @@ from femag.command_output import check_file, check_targets, make_folder, quantit
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
+from femag.keep_out_command import keep_out_command
 from femag.machine_command import check_command, report_command
 from femag.sheet_command import MISSED, sheet_command
+from femag.study_command import study_command
 from femag.winding_command import windings_command
 
 if TYPE_CHECKING:
@@ -29,6 +31,7 @@ if TYPE_CHECKING:
 
 STOPPED = 130
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
+COPPER_FILE = "copper.png"
 
 app = typer.Typer(
     add_completion=False,
@@ -170,6 +173,8 @@ app.command("sheet")(sheet_command)
 app.command("windings")(windings_command)
 app.command("check")(check_command)
 app.command("report")(report_command)
+app.command("keepout")(keep_out_command)
+app.command("study")(study_command)
 
 
 @app.command("materials")
@@ -224,7 +229,8 @@ def _answer(
 
     print_answer(result, Console(width=WIDTH))
     if out is not None:
-        typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
+        files = (*FOLDER_FILES, *([COPPER_FILE] if _has_turn_losses(result) else []))
+        typer.echo(f"\nWritten to {out}: {', '.join(files)}")
     return code
 
 
@@ -280,6 +286,15 @@ def _write(
         stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
     write_figure(lambda ax: flux_map(result, ax), section)
     write_figure(lambda ax: gap_map(result, ax), gap)
+    if _has_turn_losses(result):
+        from femag.plot import copper_map, layer_bars, write_panels
+
+        draws = (lambda ax: copper_map(result, ax), lambda ax: layer_bars(result, ax))
+        write_panels(draws, stack.enter_context(whole_file(out / COPPER_FILE)))
+
+
+def _has_turn_losses(result: Result) -> bool:
+    return any(loss.crossing_of_turns for loss in result.copper_loss)
 
 
 def _bracket(solution: FieldSolution) -> str:

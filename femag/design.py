@@ -30,6 +30,7 @@ from femag.geometry import (
 )
 from femag.materials import MagnetisationCurve
 from femag.requirements import Requirements
+from femag.ripple import Ripple
 
 FAR_RADIUS = 60.0
 """Radius of the meshed space over the core's largest extent; what it cuts off is in the bounds."""
@@ -69,6 +70,8 @@ class Design:
         turn.
     requirements : Requirements
         Limits that the design has to keep; none unless given.
+    ripple : Ripple, optional
+        What of the current alternates; its highest current is `current`.
     """
 
     core: Core
@@ -81,6 +84,7 @@ class Design:
     title: str = ""
     detail: Detail = "block"
     requirements: Requirements = field(default_factory=Requirements)
+    ripple: Ripple | None = None
 
     def __post_init__(self) -> None:
         for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
@@ -193,6 +197,14 @@ def design_hash(design: Design) -> str:
     content.pop("requirements")
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
+    material = content["material"]
+    while "of" in material:
+        material = material["of"]
+    loss = material.pop("loss", None)
+    if design.ripple is None:  # then neither it nor the loss moves anything
+        del content["ripple"]
+    elif loss is not None:
+        content["loss"] = loss | {"source": ""}
     for text in ("name", "source", "notes"):
         content["material"].pop(text, None)
     text = json.dumps(_with_floats(content), sort_keys=True)

@@ -1,14 +1,17 @@
 """Meshes of a section: the one module that touches gmsh.
 
 Straight-sided triangles, so that polygonal sections are represented exactly. The gmsh model is
-global: one meshing at a time in a process.
+global: one meshing at a time in a process, other threads wait.
 """
 
 from __future__ import annotations
 
+import ctypes
+import signal
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
+from threading import Lock
 from types import ModuleType
 from typing import Any
 
@@ -39,6 +42,9 @@ CORNER_ROUNDS = 2
 """How often elements at singular corners are divided before the first solution."""
 GROWTH = 0.5
 """Largest element size over the distance from the middle plus the extent of the parts."""
+
+
+_ONE_AT_A_TIME = Lock()
 
 
 @dataclass(frozen=True)
@@ -185,7 +191,13 @@ def _gmsh_session() -> Iterator[ModuleType]:
             f"gmsh does not load ({error}); on Debian or Ubuntu install libgl1 libglu1-mesa "
             "libxcursor1 libxft2 libxinerama1 libgomp1"
         ) from error
-    gmsh.initialize(interruptible=False, readConfigFiles=False)
+    with _ONE_AT_A_TIME:
+        yield from _initialised(gmsh)
+
+
+def _initialised(gmsh: ModuleType) -> Iterator[ModuleType]:
+    with _broken_pipes_as_before():
+        gmsh.initialize(interruptible=False, readConfigFiles=False)
     try:
         for name, value in (
             ("General.Terminal", 0),
@@ -200,6 +212,25 @@ def _gmsh_session() -> Iterator[ModuleType]:
         yield gmsh
     finally:
         gmsh.finalize()
+
+
+@contextmanager
+def _broken_pipes_as_before() -> Iterator[None]:
+    """Undo what gmsh does to SIGPIPE: a write to a pipe or socket that is closed would be deadly.
+
+    Python's own `signal` would not do: it sees no changes by others and needs the main thread.
+    """
+    if not hasattr(signal, "SIGPIPE"):
+        yield
+        return
+    get, put = ctypes.pythonapi.PyOS_getsig, ctypes.pythonapi.PyOS_setsig
+    get.restype = put.restype = ctypes.c_void_p
+    put.argtypes = (ctypes.c_int, ctypes.c_void_p)
+    before = get(signal.SIGPIPE)
+    try:
+        yield
+    finally:
+        put(signal.SIGPIPE, before)
 
 
 def _build_surfaces(gmsh: Any, section: Section) -> dict[int, int]:

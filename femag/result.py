@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import platform
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field, replace
 from importlib.metadata import version
 
@@ -13,10 +13,16 @@ from femag.field.adapt import adapted_solution, inductance_bounds
 from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
 from femag.hand import HandEstimate, hand_estimates, plain_inductance
+from femag.mesh import SectionMesh
 from femag.quantities import (
+    CoreLoss,
+    LossBudget,
     SectionMean,
     VolumeShare,
+    WindingLoss,
     WoundCopper,
+    copper_loss,
+    core_loss,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
@@ -86,6 +92,10 @@ class Result:
         Flux linkage in Wb without current from either side; None without magnets.
     magnet_coenergy : Bounds or None
         Co-energy without current, J, which is below 0; None without magnets.
+    copper_loss : tuple of WindingLoss
+        Loss of every winding, W; none without a ripple.
+    core_loss : CoreLoss or None
+        Loss of the core under the ripple; None without a ripple or without loss parameters.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -108,6 +118,8 @@ class Result:
     design_hash: str
     magnet_flux_linkage_of_sides: tuple[float, float] | None = None
     magnet_coenergy: Bounds | None = None
+    copper_loss: tuple[WindingLoss, ...] = ()
+    core_loss: CoreLoss | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -151,6 +163,20 @@ class Result:
         return self.inductance.value / self.design.turns**2
 
     @property
+    def loss_budget(self) -> LossBudget | None:
+        """Losses under current and ripple, added up; None without a ripple."""
+        if self.design.ripple is None:
+            return None
+        copper = self.copper_loss
+        return LossBudget(
+            core=self.core_loss.total if self.core_loss else None,
+            copper_dc=_sum_if_known([loss.dc for loss in copper]),
+            copper_ripple=_sum_if_known(
+                [p for loss in copper for p in (loss.ripple, loss.crossing)]
+            ),
+        )
+
+    @property
     def fringing_factor(self) -> float:
         """Inductance of the field over that of the network without fringing."""
         return self.inductance.value / self.plain_inductance
@@ -161,6 +187,7 @@ def solve(
     current: float | None = None,
     tolerance: float | None = None,
     progress: Callable[[FieldSolution], None] | None = None,
+    mesh: SectionMesh | None = None,
 ) -> Result:
     """Return inductance between bounds, and everything that goes with it, for one current.
 
@@ -174,6 +201,8 @@ def solve(
         Wanted half width between the bounds over the value; the design's own when left out.
     progress : callable, optional
         Called with the field solution of every refinement.
+    mesh : SectionMesh, optional
+        Mesh of the design's section to start from; a coarse one when left out.
 
     Raises
     ------
@@ -191,7 +220,7 @@ def solve(
         tolerance=design.tolerance if tolerance is None else tolerance,
     )
     solution, refinements = adapted_solution(
-        field_problem(design), design.current, design.tolerance, progress
+        field_problem(design), design.current, design.tolerance, progress, mesh
     )
     inductance, idle = inductance_bounds(solution), solution.idle
     hand_input = (design.core, design.gaps, design.turns, design.current, design.material)
@@ -210,6 +239,7 @@ def solve(
         section_means=section_means(design, solution),
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
+        copper_loss=copper_loss(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,
@@ -217,8 +247,20 @@ def solve(
         design_hash=design_hash(design),
         magnet_flux_linkage_of_sides=idle.flux_linkage_of_sides if idle else None,
         magnet_coenergy=idle.coenergy if idle else None,
+        core_loss=_core_loss(design, solution),
         solution=solution,
     )
+
+
+def _sum_if_known(losses: Sequence[float | None]) -> float | None:
+    known = [loss for loss in losses if loss is not None]
+    return sum(known) if len(known) == len(losses) else None
+
+
+def _core_loss(design: Design, solution: FieldSolution) -> CoreLoss | None:
+    if design.ripple is None or design.material.loss is None:
+        return None
+    return core_loss(solution, design.ripple, design.material.loss)
 
 
 def library_versions() -> dict[str, str]:

@@ -69,7 +69,7 @@ _NUMBER_AND_UNIT = re.compile(
 )
 
 TEMPERATURE = "a temperature in degrees Celsius, such as '100 C'"
-_POWER = re.compile(r"(?<=[a-zA-Z])2$")
+_POWER = re.compile(r"(?<=[a-zA-Z])([23])$")
 
 ACCEPTED = {
     "m": "a length with its unit, such as '0.5 mm' or '26 mil'",
@@ -82,6 +82,8 @@ ACCEPTED = {
     "Hz": "a frequency with its unit, such as '120 kHz'",
     "W": "a power with its unit, such as '2.5 W'",
     "N": "a force with its unit, such as '40 N'",
+    "W/m3": "a loss density with its unit, such as '400 kW/m3'",
+    "s": "a time with its unit, such as '10 us'",
 }
 """What is accepted for a quantity of each SI unit, for messages and the file reference."""
 
@@ -94,7 +96,8 @@ def si_value(text: object, unit: str) -> float:
     text : object
         What the user wrote.
     unit : str
-        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``.
+        SI unit that fixes the dimension: ``"m"``, ``"A"``, ``"T"``, ``"A/m"``, ``"H"``, ``"Hz"``,
+        ``"s"``.
 
     Raises
     ------
@@ -125,10 +128,8 @@ def si_value(text: object, unit: str) -> float:
 def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
     import pint
 
-    registry = _registry()
     try:
-        units = (registry.parse_units(_POWER.sub("**2", text)) for text in (name, unit))
-        factor = registry.Quantity(1.0, next(units)).to(next(units)).magnitude
+        return _unit_ratio(name, unit)
     except pint.DimensionalityError as error:
         raise InputError(
             f"{name!r} is not a unit of this quantity", value=text, accepted=accepted
@@ -137,7 +138,14 @@ def _si_factor(name: str, unit: str, text: object, accepted: str) -> float:
         near = difflib.get_close_matches(name, _names(), n=1, cutoff=0.7)
         hint = f", nearest known: {near[0]!r}" if near else ""
         raise InputError(f"unknown unit {name!r}{hint}", value=text, accepted=accepted) from error
-    return float(factor)
+
+
+@cache
+def _unit_ratio(name: str, unit: str) -> float:
+    """Return how many of `unit` one of `name` is; pint's errors pass."""
+    registry = _registry()
+    units = (registry.parse_units(_POWER.sub(r"**\1", text)) for text in (name, unit))
+    return float(registry.Quantity(1.0, next(units)).to(next(units)).magnitude)
 
 
 def _names() -> list[str]:

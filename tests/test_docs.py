@@ -15,6 +15,11 @@ EXECUTED = (
     "docs/examples/compare-by-hand.md",
     "docs/examples/review-plots.md",
 )
+DOCUMENTS = ("README.md", "DEVELOPERS.md", *sorted(
+    str(path.relative_to(ROOT))
+    for path in (ROOT / "docs").glob("**/*.md")
+    if "reference" not in path.parts
+))  # fmt: skip
 RUN = r"```python\n(.*?)```(?:\n\nprints\n\n```\n(.*?)```)?"
 """A block of Python, and what it and those before it print."""
 
@@ -75,9 +80,7 @@ def test_readme_has_two_set_up_commands_and_ci_runs_the_second() -> None:
     assert [line for line in readme.splitlines() if pattern in line] == [commands[1]]
 
 
-@pytest.mark.parametrize("name", ["README.md", "DEVELOPERS.md", *sorted(
-    str(path.relative_to(ROOT)) for path in (ROOT / "docs").glob("**/*.md") if "reference" not in path.parts
-)])  # fmt: skip
+@pytest.mark.parametrize("name", DOCUMENTS)
 def test_links_between_documents_lead_somewhere(name: str) -> None:
     text = (ROOT / name).read_text(encoding="utf-8")
     for target in re.findall(r"\]\(([^)#:]+)\)", text):

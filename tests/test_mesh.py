@@ -1,4 +1,7 @@
 import builtins
+import os
+import signal
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import replace
 
 import numpy as np
@@ -98,3 +101,28 @@ def test_missing_system_libraries_are_named(
         coarse_mesh(meshed_section(pot_26_16))
     assert "\n" not in str(caught.value)
     assert caught.value.exit_code == 3
+
+
+@pytest.mark.skipif(not hasattr(signal, "SIGPIPE"), reason="no such signal here")
+@pytest.mark.parametrize("in_thread", [False, True])
+def test_a_closed_pipe_is_an_error_after_meshing_not_the_end(in_thread: bool) -> None:
+    """gmsh makes SIGPIPE deadly; sockets and pipes to workers would end the process silently."""
+    square = open_section((Region("a", "air", rectangle(0.0, 1.0, -1.0, 1.0)),), 3.0)
+    if in_thread:
+        with ThreadPoolExecutor(1) as thread:
+            thread.submit(coarse_mesh, square).result()
+    else:
+        coarse_mesh(square)
+    read, write = os.pipe()
+    os.close(read)
+    with pytest.raises(BrokenPipeError):
+        os.write(write, b"x")
+    os.close(write)
+
+
+def test_threads_mesh_one_after_the_other(pot_26_16: fm.Design) -> None:
+    section = meshed_section(pot_26_16)
+    alone = coarse_mesh(section)
+    with ThreadPoolExecutor(4) as threads:
+        for mesh in threads.map(coarse_mesh, [section] * 8):
+            np.testing.assert_array_equal(mesh.triangles.p, alone.triangles.p)

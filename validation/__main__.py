@@ -14,6 +14,7 @@ FOLDERS = (
     "coupled_coils",
     "sphere",
     "nonlinear_pot",
+    "core_loss",
     "round_post_fringing",
     "finite_post",
     "pot_core_26_16",

@@ -1,4 +1,4 @@
-"""Time budgets of single solutions, all measured in one run so that the ratios mean something.
+"""Time budgets of solutions and studies, measured in one run so that the ratios mean something.
 
 Run ``python -m validation.speed``. Every time is the best of several runs. Both sides run with
 one BLAS thread; NGSolve may use two threads of its own and the quicker setting counts. What is
@@ -30,6 +30,14 @@ from femag.field.problem import FieldProblem
 from femag.materials import FroehlichCurve
 from validation.pot_core_26_16.run import pot_core_design
 from validation.rows import table_of
+from validation.study_speed import (
+    GAIN,
+    GROWTH,
+    MANY_CASES,
+    MEMORY,
+    SECONDS_A_CASE,
+    study_figures,
+)
 
 RUNS = 5
 COLD_RUNS = 3
@@ -50,7 +58,7 @@ class Budget:
     what : str
         In a few words.
     seconds : float or None
-        Measured time; None when it could not be measured.
+        Measured time, or what `what` says; None when it could not be measured.
     limit : float
         Largest time in s, or largest share of `beside` where that is given.
     beside : float or None
@@ -179,6 +187,17 @@ def error_budgets(problem: FieldProblem) -> Iterator[Budget]:
             yield Budget(what, seconds, limit, beside, note)
 
 
+def study_budgets() -> Iterator[Budget]:
+    """Yield the budgets of studies; what is no time says so."""
+    found = study_figures()
+    yield Budget("study: a case at 0.2 %", found.one, SECONDS_A_CASE, note="one process")
+    yield Budget("study: two processes / one", found.two, 1 / GAIN, found.one, "s a case")
+    note = "" if found.memory else "skipped: psutil is not installed"
+    yield Budget("study: MB a process", found.memory, MEMORY, note=note)
+    what = f"study: memory over {MANY_CASES} cases"
+    yield Budget(what, found.growth, GROWTH, note=note or "end over a fifth of the way")
+
+
 def cold_budgets() -> Iterator[Budget]:
     """Yield the times of whole processes of the command line."""
     with tempfile.TemporaryDirectory() as folder:
@@ -225,7 +244,11 @@ def main() -> int:
     print("measured: seconds, or the ratio to the run beside it")
     kept = []
     for budget in itertools.chain(
-        warm_budgets(problem), [curve_budget()], error_budgets(problem), cold_budgets()
+        warm_budgets(problem),
+        [curve_budget()],
+        error_budgets(problem),
+        cold_budgets(),
+        study_budgets(),
     ):
         print("\n".join(budget_lines(budget)), flush=True)
         kept.append(budget.kept)

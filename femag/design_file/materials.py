@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -14,6 +15,7 @@ from femag.materials import (
     FroehlichCurve,
     LinearCurve,
     MagnetisationCurve,
+    TabulatedCurve,
     curve_through,
     material,
     read_material,
@@ -32,12 +34,21 @@ BESIDE = {
 def material_curve(table: MaterialTable, folder: Path) -> MagnetisationCurve:
     """Return the curve of the key core.material; a path resolves against `folder`.
 
+    Loss parameters in the table take the place of the material's.
+
     Raises
     ------
     InputError
         If keys do not go together, or the material cannot be had.
     """
-    kind = _kind(table)
+    curve = _curve(table, _kind(table), folder)
+    if table.loss is None:
+        return curve
+    assert isinstance(curve, LinearCurve | FroehlichCurve | TabulatedCurve)
+    return replace(curve, loss=table.loss)
+
+
+def _curve(table: MaterialTable, kind: str, folder: Path) -> MagnetisationCurve:
     with keyed("permeability saturation exponent points temperature source", "core.material."):
         if kind == "points":
             return _curve_of_points(table)
@@ -62,7 +73,7 @@ def _kind(table: MaterialTable) -> str:
             "nothing says what the material is", key="core.material",
             accepted="one of permeability, name, file and points",
         )  # fmt: skip
-    for key in sorted(given - {kind, *BESIDE[kind]}):
+    for key in sorted(given - {kind, "loss", *BESIDE[kind]}):
         raise InputError(
             f"does not go with {kind}", key=f"core.material.{key}",
             accepted=f"beside {kind}: {', '.join(BESIDE[kind])}",

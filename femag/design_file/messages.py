@@ -50,18 +50,18 @@ def renumbered(name: str, index: int) -> Iterator[None]:
         raise error.changed(key=key) from error
 
 
-def first_error(error: ValidationError, file: str | None) -> InputError:
-    """Return the first of a validation's errors as one line."""
+def first_error(error: ValidationError, file: str | None, root: Any = DesignTable) -> InputError:
+    """Return the first of a validation's errors as one line; `root` is the whole file's table."""
     first = min(error.errors(include_url=False), key=_unknown_keys_first)
     location = first["loc"]
     key = _dotted(location)
     if first["type"] == "extra_forbidden":
-        known = _fields_at(location[:-1])
+        known = _fields_at(location[:-1], root)
         near = difflib.get_close_matches(str(location[-1]), known, n=1, cutoff=0.5)
         accepted = f"nearest known key: {near[0]!r}" if near else ", ".join(known)
         return InputError("unknown key", key=key, accepted=accepted, file=file)
     named = _up_to_last_name(location)
-    description = _fields_at(named[:-1])[str(named[-1])] if named else "a table"
+    description = _fields_at(named[:-1], root)[str(named[-1])] if named else "a table"
     if first["type"] == "missing":
         return InputError("missing", key=key, accepted=description, file=file)
     problem = first["msg"] if first["type"] == "quantity" else "not usable"
@@ -86,15 +86,14 @@ def _dotted(location: Sequence[int | str]) -> str:
     return key
 
 
-def _fields_at(location: Sequence[int | str]) -> dict[str, str]:
-    """Return the keys of the table at a location, each with what it accepts."""
-    table: Any = DesignTable
+def _fields_at(location: Sequence[int | str], table: Any) -> dict[str, str]:
+    """Return the keys of the table at a location inside of another, each with what it accepts."""
     for part in location:
         if isinstance(part, str):
-            table = _table_in(table.model_fields[part].annotation)
+            table = table_in(table.model_fields[part].annotation)
     return {name: field.description or "" for name, field in table.model_fields.items()}
 
 
-def _table_in(annotation: Any) -> Any:
+def table_in(annotation: Any) -> Any:
     """Return the table class inside ``list[Table]`` or ``Table | None``."""
     return next((part for part in get_args(annotation) if part is not type(None)), annotation)

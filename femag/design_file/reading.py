@@ -11,6 +11,7 @@ from typing import Any
 from pydantic import ValidationError
 
 from femag.design import Design
+from femag.design_file.drive import drive_ripple
 from femag.design_file.materials import material_curve
 from femag.design_file.messages import first_error, renumbered, written_value
 from femag.design_file.tables import (
@@ -49,13 +50,24 @@ def read_design(path: str | Path) -> Design:
     InputError
         If the file cannot be read or used; it names the file, the key and the value.
     """
+    return design_from_document(read_document(path), str(path))
+
+
+def read_document(path: str | Path) -> dict[str, Any]:
+    """Return the nested mapping that a TOML file holds, not yet checked.
+
+    Raises
+    ------
+    InputError
+        If the file cannot be read.
+    """
     try:
         text = Path(path).read_text(encoding="utf-8-sig")
     except UnicodeDecodeError as error:
         raise InputError("not UTF-8 text", file=str(path), accepted="a TOML file") from error
     except OSError as error:
         raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
-    return design_from_toml(text, str(path))
+    return document_of_toml(text, str(path))
 
 
 def design_from_toml(text: str, file: str | None = None) -> Design:
@@ -66,12 +78,38 @@ def design_from_toml(text: str, file: str | None = None) -> Design:
     InputError
         If the text cannot be used.
     """
+    return design_from_document(document_of_toml(text, file), file)
+
+
+def document_of_toml(text: str, file: str | None = None) -> dict[str, Any]:
+    """Return the nested mapping that a TOML text holds, not yet checked; `file` is for messages.
+
+    Raises
+    ------
+    InputError
+        If the text is no TOML.
+    """
     try:
-        document = tomllib.loads(text)
+        return tomllib.loads(text)
     except (ValueError, RecursionError) as error:  # ValueError: also numbers too long to read
         problem = " ".join(str(error).split())
         raise InputError(f"not valid TOML ({problem})", file=file) from error
-    return design_from_document(document, file)
+
+
+def check_tables(document: Mapping[str, Any], file: str | None = None) -> None:
+    """Check that all keys of a document are known and each value is of its kind.
+
+    That is what is seen without reading other files and without geometry.
+
+    Raises
+    ------
+    InputError
+        If one is not.
+    """
+    try:
+        DesignTable.model_validate(document)
+    except ValidationError as error:
+        raise first_error(error, file) from error
 
 
 def design_from_document(document: Mapping[str, Any], file: str | None = None) -> Design:
@@ -105,6 +143,7 @@ def _design(table: DesignTable, folder: Path) -> Design:
         title=table.title,
         detail=table.solve.detail,
         requirements=Requirements(**table.require.model_dump()),
+        ripple=drive_ripple(table.drive, folder),
     )
 
 

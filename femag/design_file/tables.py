@@ -8,25 +8,35 @@ from __future__ import annotations
 from functools import partial
 from typing import Annotated, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, model_validator
+from pydantic import (
+    BaseModel,
+    BeforeValidator,
+    ConfigDict,
+    Field,
+    PlainValidator,
+    model_validator,
+)
 from pydantic_core import PydanticCustomError
 
 from femag.errors import InputError
 from femag.geometry import ALUMINIUM, COPPER, DETAILS, FAMILIES, LIMITS, Detail, Limit
-from femag.materials import is_material_file
+from femag.materials import Steinmetz, is_material_file, loss_of_table
+from femag.materials.loss_table import TABLE
 from femag.units import ACCEPTED, TEMPERATURE, celsius, si_value
 
 METALS = {"copper": COPPER, "aluminium": ALUMINIUM}
 
 
-def _read_quantity(unit: str, text: object) -> float:
+def read_quantity(unit: str, text: object) -> float:
+    """Return the number in SI of a text, for pydantic."""
     try:
         return si_value(text, unit)
     except InputError as error:
         raise PydanticCustomError("quantity", "{problem}", {"problem": error.problem}) from error
 
 
-def _read_temperature(text: object) -> float:
+def read_temperature(text: object) -> float:
+    """Return the degrees Celsius of a text, for pydantic."""
     try:
         return celsius(text)
     except InputError as error:
@@ -34,17 +44,20 @@ def _read_temperature(text: object) -> float:
 
 
 Length = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "m")), Field(description=ACCEPTED["m"])
+    float, BeforeValidator(partial(read_quantity, "m")), Field(description=ACCEPTED["m"])
 ]
 Current = Annotated[
-    float, BeforeValidator(partial(_read_quantity, "A")), Field(description=ACCEPTED["A"])
+    float, BeforeValidator(partial(read_quantity, "A")), Field(description=ACCEPTED["A"])
 ]
-Temperature = Annotated[float, BeforeValidator(_read_temperature), Field(description=TEMPERATURE)]
-CoreFactor = Annotated[float, BeforeValidator(partial(_read_quantity, "1/m"))]
-FluxDensity = Annotated[float, BeforeValidator(partial(_read_quantity, "T"))]
-Inductance = Annotated[float, BeforeValidator(partial(_read_quantity, "H"))]
-Power = Annotated[float, BeforeValidator(partial(_read_quantity, "W"))]
-Force = Annotated[float, BeforeValidator(partial(_read_quantity, "N"))]
+Frequency = Annotated[
+    float, BeforeValidator(partial(read_quantity, "Hz")), Field(description=ACCEPTED["Hz"])
+]
+Temperature = Annotated[float, BeforeValidator(read_temperature), Field(description=TEMPERATURE)]
+CoreFactor = Annotated[float, BeforeValidator(partial(read_quantity, "1/m"))]
+FluxDensity = Annotated[float, BeforeValidator(partial(read_quantity, "T"))]
+Inductance = Annotated[float, BeforeValidator(partial(read_quantity, "H"))]
+Power = Annotated[float, BeforeValidator(partial(read_quantity, "W"))]
+Force = Annotated[float, BeforeValidator(partial(read_quantity, "N"))]
 
 
 class _Table(BaseModel):
@@ -54,10 +67,20 @@ class _Table(BaseModel):
 def _read_point(pair: object) -> tuple[float, float]:
     if not isinstance(pair, list | tuple) or len(pair) != 2:
         raise PydanticCustomError("quantity", "not a pair of H and B")
-    return _read_quantity("A/m", pair[0]), _read_quantity("T", pair[1])
+    return read_quantity("A/m", pair[0]), read_quantity("T", pair[1])
+
+
+def material_table(given: object) -> object:
+    """Return the table that a material's text alone stands for; what is no text, as it is."""
+    if not isinstance(given, str):
+        return given
+    return {"file" if is_material_file(given) else "name": given}
 
 
 Point = Annotated[tuple[float, float], BeforeValidator(_read_point)]
+
+
+Loss = Annotated[Steinmetz, PlainValidator(partial(loss_of_table, key="core.material.loss"))]
 
 
 class MaterialTable(_Table):
@@ -79,14 +102,12 @@ class MaterialTable(_Table):
     )
     source: str | None = Field(default=None, description="text in quotes")
     notes: list[str] = Field(default=[], description="a list of texts")
+    loss: Loss | None = Field(default=None, description=TABLE)
 
     @model_validator(mode="before")
     @classmethod
     def _of_text(cls, given: object) -> object:
-        """Turn a text alone into the table that it stands for."""
-        if not isinstance(given, str):
-            return given
-        return {"file" if is_material_file(given) else "name": given}
+        return material_table(given)
 
 
 class DimensionsTable(_Table):
@@ -226,10 +247,45 @@ class WindingTable(_Table):
     divider: Length = 0.0
 
 
+Samples = tuple[tuple[float, float], ...]
+
+
+def _read_waveform(given: object) -> str | Samples:
+    """Return a path as it is, or pairs of share of the period and current in A."""
+    if isinstance(given, str):
+        return given
+    if not isinstance(given, list):
+        raise PydanticCustomError("quantity", "neither a path nor a list of pairs")
+    return tuple(map(_read_sample, given))
+
+
+def _read_sample(pair: object) -> tuple[float, float]:
+    if not isinstance(pair, list | tuple) or len(pair) != 2:
+        raise PydanticCustomError("quantity", "not pairs of a share of the period and a current")
+    if isinstance(pair[0], bool) or not isinstance(pair[0], int | float):
+        raise PydanticCustomError("quantity", "a share of the period is no number")
+    return float(pair[0]), read_quantity("A", pair[1])
+
+
 class DriveTable(_Table):
     """What flows."""
 
     current: Current = 1.0
+    ripple: Current | None = Field(
+        default=None, description="a current from peak to peak, such as '1 A'"
+    )
+    frequency: Frequency | None = Field(default=None, description=ACCEPTED["Hz"])
+    shape: Literal["triangle", "sine"] = Field(
+        default="triangle", description="'triangle' or 'sine'"
+    )
+    rise: float = Field(
+        default=0.5, description="share of the period in which a triangle rises, such as 0.4"
+    )
+    waveform: Annotated[str | Samples, PlainValidator(_read_waveform)] | None = Field(
+        default=None,
+        description="the path of a CSV file of one period, or a list of pairs such as "
+        "[[0, '1 A'], [0.4, '2 A'], [1, '1 A']]",
+    )
     winding: list[str] = Field(default=[], description="a list of winding names, driven in series")
 
 

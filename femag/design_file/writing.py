@@ -11,8 +11,15 @@ import tomli_w
 from femag.design import Design
 from femag.design_file.tables import METALS
 from femag.geometry import Conductor, Core, Foil, Gap, LitzWire, RoundWire, Winding
-from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, TabulatedCurve
+from femag.materials import (
+    FroehlichCurve,
+    LinearCurve,
+    MagnetisationCurve,
+    TabulatedCurve,
+    loss_document,
+)
 from femag.requirements import Requirements
+from femag.ripple import Ripple
 from femag.units import exact_text
 
 Document = dict[str, Any]
@@ -34,6 +41,8 @@ def design_document(design: Design) -> Document:
         document["drive"]["winding"] = list(design.driven)
     if design.requirements:
         document["require"] = _requirements_document(design.requirements)
+    if design.ripple is not None:
+        document["drive"] |= _ripple_document(design.ripple)
     return document
 
 
@@ -48,7 +57,8 @@ def _core_document(core: Core, material: MagnetisationCurve) -> Document:
     if published is not None:
         document["core_factor"] = exact_text(published, "1/m")
     lengths = {name: exact_text(length, "m", "m") for name, length in core.sizes.items()}
-    return document | {"material": _material_document(material), "dimensions": lengths}
+    loss = {} if material.loss is None else {"loss": loss_document(material.loss)}
+    return document | {"material": _material_document(material) | loss, "dimensions": lengths}
 
 
 def _material_document(curve: MagnetisationCurve) -> Document:
@@ -72,6 +82,17 @@ def _material_document(curve: MagnetisationCurve) -> Document:
             }
         case _:
             raise TypeError(f"{type(curve).__name__} has no place in a design file")
+
+
+def _ripple_document(ripple: Ripple) -> Document:
+    frequency = {"frequency": exact_text(ripple.frequency, "Hz")}
+    if ripple.shape == "samples":
+        samples = [[float(share), exact_text(a, "A")] for share, a in ripple.samples]
+        return {"waveform": samples} | frequency
+    document: Document = {"ripple": exact_text(ripple.peak_to_peak, "A")} | frequency
+    if ripple.shape == "triangle":
+        return document | {"rise": float(ripple.rise)}
+    return document | {"shape": ripple.shape}
 
 
 def _gap_document(gap: Gap) -> Document:

@@ -10,6 +10,16 @@ from pydantic import Field
 from femag.design_file import design_document, design_from_document
 from femag.errors import InputError
 from femag.export.document import Entry, check_against_design, document_of_file
+from femag.export.loss_entries import (
+    CopperLossEntry,
+    CoreLossEntry,
+    LossBudgetEntry,
+    copper_loss_entry,
+    copper_loss_of,
+    core_loss_entry,
+    core_loss_of,
+    loss_budget_entry,
+)
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
@@ -110,6 +120,9 @@ class ResultDocument(Entry):
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
     requirements: list[RequirementEntry] = Field(default_factory=list)
+    copper_loss: list[CopperLossEntry] = Field(default_factory=list)
+    core_loss: CoreLossEntry | None = None
+    losses: LossBudgetEntry | None = None
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -185,6 +198,9 @@ def _document(result: Result) -> ResultDocument:
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
         requirements=[_requirement_entry(check) for check in checked_requirements(result)],
+        copper_loss=[copper_loss_entry(loss) for loss in result.copper_loss],
+        core_loss=core_loss_entry(result.core_loss) if result.core_loss else None,
+        losses=loss_budget_entry(result.loss_budget) if result.loss_budget else None,
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
@@ -231,6 +247,8 @@ def _result(document: ResultDocument, file: str) -> Result:
         section_means=tuple(SectionMean(**mean.model_dump()) for mean in document.section_means),
         volume_shares=tuple(VolumeShare(**s.model_dump()) for s in document.volume_shares),
         copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
+        copper_loss=tuple(copper_loss_of(entry) for entry in document.copper_loss),
+        core_loss=core_loss_of(document.core_loss) if document.core_loss else None,
         unknowns=document.unknowns,
         refinements=document.refinements,
         seconds=document.seconds,

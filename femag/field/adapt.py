@@ -135,6 +135,7 @@ def adapted_solution(
     current: float,
     tolerance: float,
     progress: Callable[[FieldSolution], None] | None = None,
+    mesh: SectionMesh | None = None,
 ) -> tuple[FieldSolution, int]:
     """Return the first solution whose relative half width is within `tolerance`, and its number.
 
@@ -148,6 +149,8 @@ def adapted_solution(
         Wanted half width of what the current adds to the co-energy, over its value.
     progress : callable, optional
         Called with every solution.
+    mesh : SectionMesh, optional
+        Mesh to start from; a coarse one when left out.
 
     Raises
     ------
@@ -155,7 +158,7 @@ def adapted_solution(
         If the tolerance is out of reach; it holds the best solution.
     """
     accuracy = max(EXACT, NEWTON_SHARE * tolerance)
-    for number, solution in enumerate(refinements(problem, current, accuracy)):
+    for number, solution in enumerate(refinements(problem, current, accuracy, mesh)):
         if progress is not None:
             progress(solution)
         if current_share(solution).relative_half_width <= tolerance:

@@ -6,6 +6,7 @@ from femag.geometry.catalogue import (
     Limit,
     catalogue,
     catalogue_core,
+    catalogue_files,
     matching_cores,
 )
 from femag.geometry.coils import DETAILS, Coil, CoilSection, Detail, coil_regions, laid_coils
@@ -106,6 +107,7 @@ __all__ = [
     "Winding",
     "catalogue",
     "catalogue_core",
+    "catalogue_files",
     "coil_regions",
     "core_cuts",
     "core_factor",

@@ -184,13 +184,18 @@ class _Entry:
     file: str
 
 
-def _entries(extra: Iterable[str | Path]) -> dict[str, _Entry]:
-    """Return the entry of each size, by its plain name; later files replace earlier ones."""
+def catalogue_files() -> list[Path]:
+    """Return the files of the catalogue, those of the user's own folder last."""
     folders = [_own_folder()]
     if os.environ.get(FOLDER_VARIABLE):
         folders.append(Path(os.environ[FOLDER_VARIABLE]))
-    files = [file for folder in folders for file in sorted(folder.glob("*.toml"))]
-    found = [entry for file in (*files, *map(Path, extra)) for entry in _entries_of_file(file)]
+    return [file for folder in folders for file in sorted(folder.glob("*.toml"))]
+
+
+def _entries(extra: Iterable[str | Path]) -> dict[str, _Entry]:
+    """Return the entry of each size, by its plain name; later files replace earlier ones."""
+    files = (*catalogue_files(), *map(Path, extra))
+    found = [entry for file in files for entry in _entries_of_file(file)]
     return {_plain(entry.size): entry for entry in found}
 
 

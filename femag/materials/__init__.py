@@ -9,7 +9,9 @@ from femag.materials.curves import (
 )
 from femag.materials.diagnosis import curve_through
 from femag.materials.library import library_material, material, material_library
+from femag.materials.loss_table import loss_document, loss_of_table
 from femag.materials.material_file import is_material_file, read_material
+from femag.materials.steinmetz import Steinmetz, steinmetz_through
 from femag.materials.tabulated import TabulatedCurve
 from femag.materials.temperature import Material
 
@@ -20,11 +22,15 @@ __all__ = [
     "MagnetisationCurve",
     "Material",
     "ScaledCurve",
+    "Steinmetz",
     "TabulatedCurve",
     "curve_through",
     "is_material_file",
     "library_material",
+    "loss_document",
+    "loss_of_table",
     "material",
     "material_library",
     "read_material",
+    "steinmetz_through",
 ]

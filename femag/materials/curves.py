@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from scipy.special import beta, betainc, betaincc
 
 from femag.errors import InputError, number
+from femag.materials.steinmetz import Steinmetz
 from femag.units import MU_0
 
 Array = NDArray[np.float64]
@@ -38,6 +39,10 @@ class MagnetisationCurve(Protocol):
     @property
     def label(self) -> str:
         """One line for tables and figures."""
+
+    @property
+    def loss(self) -> Steinmetz | None:
+        """Parameters of the core loss; None if they are not known."""
 
     def flux_density(self, field_strength: Array) -> Array:
         """B in T for H in A/m."""
@@ -75,9 +80,12 @@ class LinearCurve:
     ----------
     permeability : float
         Relative permeability mu_r, 1 or more.
+    loss : Steinmetz, optional
+        Parameters of the core loss.
     """
 
     permeability: float
+    loss: Steinmetz | None = None
 
     def __post_init__(self) -> None:
         _require_permeability(self.permeability)
@@ -156,6 +164,11 @@ class ScaledCurve:
         """One line for tables and figures."""
         return f"{self.of.label}, at {self.factor:.4g} H"
 
+    @property
+    def loss(self) -> Steinmetz | None:
+        """Parameters of the core loss, those of the material."""
+        return self.of.loss
+
     def flux_density(self, field_strength: Array) -> Array:
         """B in T for H in A/m."""
         return self.of.flux_density(self.factor * field_strength)
@@ -194,6 +207,8 @@ class FroehlichCurve:
         Saturation polarisation J_s, T.
     exponent : float
         Knee exponent n, 1 (softest, Froehlich and Kennelly) or more.
+    loss : Steinmetz, optional
+        Parameters of the core loss.
 
     References
     ----------
@@ -206,6 +221,7 @@ class FroehlichCurve:
     permeability: float
     saturation: float
     exponent: float = 1.0
+    loss: Steinmetz | None = None
 
     def __post_init__(self) -> None:
         _require_permeability(self.permeability, above=True)

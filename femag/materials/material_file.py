@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-import difflib
 import tomllib
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -14,7 +14,10 @@ from numpy.typing import NDArray
 from femag.errors import InputError
 from femag.materials.csv_points import csv_points
 from femag.materials.diagnosis import curve_through
+from femag.materials.known_keys import require_known
+from femag.materials.loss_table import loss_of_table
 from femag.materials.powder import powder_points
+from femag.materials.steinmetz import Steinmetz
 from femag.materials.tabulated import TabulatedCurve
 from femag.materials.temperature import Material
 from femag.units import celsius, si_value
@@ -63,18 +66,20 @@ def material_of_document(document: Mapping[str, Any]) -> Material:
     InputError
         If a key or value cannot be used.
     """
-    _require_known(document, ("name", "source", "units", "curve", "powder"))
+    require_known(document, ("name", "source", "units", "curve", "powder", "loss"))
     name, source = (_text(document, key) for key in ("name", "source"))
+    loss = loss_of_table(document["loss"]) if "loss" in document else None
     if "powder" in document:
         if "curve" in document:
             raise InputError("stands beside a powder", key="curve", accepted="one of the two")
         h, b = _powder(document["powder"])
-        return Material(name, source, ((None, curve_through(h, b, name=name, source=source)),))
+        curve = curve_through(h, b, name=name, source=source)
+        return Material(name, source, ((None, replace(curve, loss=loss)),))
     units = _units(document.get("units", {}))
     entries = document.get("curve")
     if not isinstance(entries, list) or not entries:
         raise InputError("missing", key="curve", accepted="tables headed [[curve]]")
-    curves = [_curve(entry, i, name, source, units) for i, entry in enumerate(entries)]
+    curves = [_curve(entry, i, name, source, units, loss) for i, entry in enumerate(entries)]
     temperatures = [temperature for temperature, _ in curves if temperature is not None]
     if len(curves) > 1 and len(set(temperatures)) < len(curves):
         raise InputError(
@@ -85,17 +90,27 @@ def material_of_document(document: Mapping[str, Any]) -> Material:
 
 
 def _curve(
-    entry: object, index: int, name: str, source: str, units: Mapping[str, float | None]
+    entry: object,
+    index: int,
+    name: str,
+    source: str,
+    units: Mapping[str, float | None],
+    loss: Steinmetz | None,
 ) -> tuple[float | None, TabulatedCurve]:
+    """Return temperature and curve of an entry; its own loss goes before the material's."""
     key = "curve" if index == 0 else f"curve.{index}"
     if not isinstance(entry, Mapping):
         raise InputError("not a table", key=key, value=entry, accepted="tables headed [[curve]]")
     try:
-        _require_known(entry, ("temperature", "points"))
+        require_known(entry, ("temperature", "points", "loss"))
         temperature = celsius(entry["temperature"]) if "temperature" in entry else None
         h, b = _points(entry.get("points"), units)
         titled = name if temperature is None else f"{name} at {temperature:g} C"
-        return temperature, curve_through(h, b, name=titled, source=source)
+        if "loss" in entry:
+            own = loss_of_table(entry["loss"])
+            loss = own if own.temperature is not None else replace(own, temperature=temperature)
+        curve = curve_through(h, b, name=titled, source=source)
+        return temperature, replace(curve, loss=loss)
     except InputError as error:
         raise error.changed(key=f"{key}.{error.key or 'temperature'}") from error
 
@@ -144,7 +159,7 @@ def _units(table: object) -> dict[str, float | None]:
     """Return what one of each declared unit is in SI."""
     if not isinstance(table, Mapping):
         raise InputError("not a table", key="units", value=table, accepted="a table, [units]")
-    _require_known(table, tuple(UNITS), "units.")
+    require_known(table, tuple(UNITS), "units.")
     factors: dict[str, float | None] = dict.fromkeys(UNITS)
     for quantity, unit in table.items():
         si, accepted = UNITS[quantity]
@@ -161,7 +176,7 @@ def _powder(table: object) -> tuple[Array, Array]:
     if not isinstance(table, Mapping):
         raise InputError("not a table", key="powder", value=table, accepted="a table, [powder]")
     names = ("permeability", "half_field", "exponent")
-    _require_known(table, names, "powder.")
+    require_known(table, names, "powder.")
     for key in names:
         if key not in table:
             raise InputError("missing", key=f"powder.{key}", accepted=", ".join(names))
@@ -191,15 +206,6 @@ def _document(text: str) -> Mapping[str, Any]:
     except (ValueError, RecursionError) as error:
         problem = " ".join(str(error).split())
         raise InputError(f"not valid TOML ({problem})") from error
-
-
-def _require_known(table: Mapping[str, Any], known: Iterable[str], prefix: str = "") -> None:
-    names = tuple(known)
-    for key in table:
-        if key not in names:
-            near = difflib.get_close_matches(key, names, n=1, cutoff=0.5)
-            accepted = f"nearest known key: {near[0]!r}" if near else ", ".join(names)
-            raise InputError("unknown key", key=f"{prefix}{key}", accepted=accepted)
 
 
 def _text(document: Mapping[str, Any], key: str) -> str:

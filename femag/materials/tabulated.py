@@ -13,6 +13,7 @@ from femag.errors import InputError, number
 from femag.materials.curves import HIGHEST_PERMEABILITY
 from femag.materials.lookup import Lookup, lookup
 from femag.materials.shape_preserving import increasing_spline
+from femag.materials.steinmetz import Steinmetz
 from femag.units import MU_0
 
 Array = NDArray[np.float64]
@@ -47,6 +48,8 @@ class TabulatedCurve:
         Where the points come from, for print.
     notes : tuple of str
         What was done to the data on the way, for print.
+    loss : Steinmetz, optional
+        Parameters of the core loss.
 
     Raises
     ------
@@ -62,6 +65,7 @@ class TabulatedCurve:
     name: str = ""
     source: str = ""
     notes: tuple[str, ...] = ()
+    loss: Steinmetz | None = None
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "points", _checked_points(self.points))

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from femag.errors import InputError
+from femag.materials.steinmetz import mean_steinmetz
 from femag.materials.tabulated import TabulatedCurve
 
 Array = NDArray[np.float64]
@@ -86,6 +87,9 @@ class Material:
             name=f"{self.name} at {temperature:g} C",
             source=self.source,
             notes=(*dict.fromkeys((*curve.notes, *other.notes)), said),
+            loss=mean_steinmetz(curve.loss, other.loss, share)
+            if curve.loss and other.loss
+            else None,
         )
 
 

@@ -1,6 +1,8 @@
 """Figures: each function takes an Axes, draws on it and returns it."""
 
+from femag.plot.copper_figures import copper_map, keep_out_chart, layer_bars
 from femag.plot.core_drawing import core_drawing
+from femag.plot.core_loss_map import core_loss_map
 from femag.plot.curve_figures import (
     core_flux_figure,
     inductance_figure,
@@ -15,15 +17,23 @@ from femag.plot.loop_figure import loop_figure, waveform_figure
 from femag.plot.result_files import result_files
 from femag.plot.review_figures import convergence, material_curve
 from femag.plot.section_drawing import section_drawing
+from femag.plot.study_figures import al_chart, fringing_chart, hand_error_chart
 
 __all__ = [
+    "al_chart",
     "convergence",
+    "copper_map",
     "core_drawing",
     "core_flux_figure",
+    "core_loss_map",
     "figure_bytes",
     "flux_map",
+    "fringing_chart",
     "gap_map",
+    "hand_error_chart",
     "inductance_figure",
+    "keep_out_chart",
+    "layer_bars",
     "layer_field",
     "linkage_figure",
     "loop_figure",

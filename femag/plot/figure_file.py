@@ -103,6 +103,7 @@ def write_panels(
     draws: Sequence[Draw],
     path: str | Path,
     panel: tuple[float, float] = SMALL_PANEL,
+    rows: int = 1,
 ) -> None:
     """Draw on Axes side by side of a new figure and write it; the file is complete or not there.
 
@@ -114,20 +115,26 @@ def write_panels(
         File with the ending of a format, such as ``.png`` or ``.svg``.
     panel : tuple of float
         Width and height of each, inch.
+    rows : int
+        Number of rows, all full but the last.
 
     Raises
     ------
     InputError
         If the file cannot be written, or its ending names no format.
     """
-    figure = Figure(figsize=(panel[0] * len(draws), panel[1]), layout="constrained")
+    columns = -(-len(draws) // rows)
+    figure = Figure(figsize=(panel[0] * columns, panel[1] * rows), layout="constrained")
     known = FigureCanvasAgg(figure).get_supported_filetypes()
     if Path(path).suffix.removeprefix(".").lower() not in known:
         raise InputError(
             "no format of a figure", file=str(path), accepted="an ending such as .png or .svg"
         )
-    for draw, ax in zip(draws, figure.subplots(1, len(draws), squeeze=False)[0], strict=True):
+    axes = figure.subplots(rows, columns, squeeze=False).ravel()
+    for draw, ax in zip(draws, axes, strict=False):
         draw(ax)
+    for ax in axes[len(draws) :]:
+        ax.remove()
     with whole_file(path) as temporary, warnings.catch_warnings():
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         figure.savefig(temporary, dpi=RESOLUTION)

@@ -106,7 +106,7 @@ def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
     )
     levels = np.linspace(fields.flux.min(), fields.flux.max(), lines + 2)[1:-1]
     ax.tricontour(mesh, fields.flux, levels=levels, colors="black", linewidths=0.5)
-    _draw_outlines(ax, fields)
+    draw_outlines(ax, fields)
     _name_windings(ax, _regions(result), window)
     r0, r1, z0, z1 = (1e3 * edge for edge in window)
     ax.set(xlim=(r0, r1), ylim=(z0, z1), xlabel="r, mm", ylabel="z, mm", aspect="equal")
@@ -123,7 +123,8 @@ def light_to_dark() -> Colormap:
     return ListedColormap(mpl.colormaps["GnBu"](np.linspace(0.0, 0.82, 256)))
 
 
-def _draw_outlines(ax: Axes, fields: FieldMap) -> None:
+def draw_outlines(ax: Axes, fields: FieldMap) -> None:
+    """Draw the edges of the core, and dashed those of the windings."""
     for role, width, style in (("core", 1.8, "solid"), ("winding", 1.2, (0, (4, 2)))):
         edges = 1e3 * fields.outlines.get(role, np.empty((0, 2, 2)))
         ax.add_collection(

@@ -92,7 +92,12 @@ def located(solution: FieldSolution, points: Array) -> tuple[Index, Array]:
 
 def nodal_u(solution: FieldSolution) -> Array:
     """Return u = A/r in T at every node of the P2 basis."""
+    return nodal_values(solution, solution.flux.x)
+
+
+def nodal_values(solution: FieldSolution, unknowns: Array) -> Array:
+    """Return what the flux side's unknowns (size,) are at every node of the P2 basis."""
     side, dofs = solution.sides.flux, solution.sides.discretisation.element_dofs
     nodal = np.zeros(solution.sides.discretisation.basis.N)
-    nodal[dofs] = np.append(solution.flux.x, 0.0)[side.numbering.unknown]
+    nodal[dofs] = np.append(unknowns, 0.0)[side.numbering.unknown]
     return nodal

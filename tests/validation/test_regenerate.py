@@ -7,6 +7,7 @@ import numpy as np
 import pytest
 
 import validation.air_coils.regenerate as air_coils
+import validation.core_loss.regenerate as core_loss
 import validation.coupled_coils.regenerate as coupled_coils
 import validation.nonlinear_pot.regenerate as nonlinear_pot
 import validation.round_post_fringing.regenerate as fringing
@@ -21,6 +22,12 @@ LINES = {
     "sphere": sphere.lines,
     "uniform_field": uniform_field.lines,
 }
+
+
+@pytest.mark.slow
+def test_the_core_loss_is_what_its_script_sums() -> None:
+    for kept, again in zip(table_of("core_loss"), core_loss.lines(), strict=True):
+        assert kept == again
 
 
 @pytest.mark.parametrize("folder", LINES)

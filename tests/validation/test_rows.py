@@ -10,6 +10,7 @@ import pytest
 import validation
 from femag.field.bounds import Bounds
 from validation.__main__ import FOLDERS, folder_rows, main
+from validation.core_loss import run as core_loss
 from validation.nonlinear_pot import run as nonlinear_pot
 from validation.round_post_fringing import run as round_post_fringing
 from validation.rows import Digits, Row, bounded_row, plain_row, printed, table_of
@@ -26,11 +27,13 @@ BOUNDED = (
     "pot_core_26_16",
 )
 LINE_BY_LINE: dict[str, Callable[[dict[str, str]], Iterable[Row]]] = {
+    "core_loss": core_loss.rows_of,
     "nonlinear_pot": nonlinear_pot.rows_of,
     "round_post_fringing": round_post_fringing.rows_of,
     "sphere": sphere.rows_of,
 }
 """Their problems are solved one at a time, to keep each test short."""
+LONG = {("core_loss", number) for number in (0, 2, 3)}
 WHOLE = tuple(folder for folder in FOLDERS if folder not in LINE_BY_LINE)
 
 
@@ -55,7 +58,11 @@ def test_every_row_passes(folder: str) -> None:
 
 @pytest.mark.parametrize(
     ("folder", "number"),
-    [(folder, number) for folder in LINE_BY_LINE for number in range(len(table_of(folder)))],
+    [
+        pytest.param(folder, number, marks=[pytest.mark.slow] if (folder, number) in LONG else [])
+        for folder in LINE_BY_LINE
+        for number in range(len(table_of(folder)))
+    ],
 )
 def test_every_row_of_a_line_passes(folder: str, number: int) -> None:
     check(tuple(LINE_BY_LINE[folder](table_of(folder)[number])), folder)

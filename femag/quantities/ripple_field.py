@@ -1,0 +1,123 @@
+"""The field of a small change of the current: that of the ripple, per ampere.
+
+Static: it follows the ripple without delay, as if no eddy current acted back on it, so that every
+harmonic has the same field.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Collection
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from femag.field.bounds import FieldSolution
+from femag.field.newton import Minimum, minimum
+from femag.field.regional import elements_in
+from femag.field.side import Side
+from femag.field.tangent import flux_tangent
+from femag.mesh import SectionMesh
+from femag.quantities.section_means import nodal_values
+
+Array = NDArray[np.float64]
+
+AT_ONCE = 50_000
+"""Points that are located together, for memory."""
+
+
+@dataclass(frozen=True)
+class RippleField:
+    """Flux density per ampere of a small change, from the flux side.
+
+    Parameters
+    ----------
+    solution : FieldSolution
+        Of the design; its mesh is used.
+    bias : float
+        Current about which the change is small, A.
+    rate : array, (size,)
+        Change of the flux side's unknowns, 1/A.
+    """
+
+    solution: FieldSolution
+    bias: float
+    rate: Array
+
+    @property
+    def mesh(self) -> SectionMesh:
+        """The mesh."""
+        return self.solution.sides.mesh
+
+    def at_points(self, points: Array) -> Array:
+        """Return (B_r, B_z) at points (2, n) of the whole section in m, (2, n), T/A."""
+        mirrored = self.mesh.section.copies == 2
+        sign = np.where(mirrored & (points[1] < 0.0), -1.0, 1.0)
+        inside = np.stack([points[0], sign * points[1]])
+        starts = range(0, points.shape[1], AT_ONCE)
+        found = np.hstack([self._inside(inside[:, i : i + AT_ONCE]) for i in starts])
+        return np.stack([sign * found[0], found[1]])
+
+    def _inside(self, points: Array) -> Array:
+        """Return (B_r, B_z) at points of the meshed part, from the element that holds each."""
+        basis, mapping = self.solution.sides.discretisation.basis, self.mesh.triangles.mapping()
+        element = np.asarray(self.mesh.triangles.element_finder(mapping)(*points))
+        local = mapping.invF(points[:, :, None], tind=element)
+        nodal = nodal_values(self.solution, self.rate)[basis.element_dofs[:, element]]
+        u, du = np.zeros(points.shape[1]), np.zeros_like(points)
+        for i, coefficient in enumerate(nodal):
+            shape = basis.elem.gbasis(mapping, local, i, tind=element)[0]
+            u += coefficient * np.asarray(shape)[:, 0]
+            du += coefficient * shape.grad[:, :, 0]
+        return np.stack([-points[0] * du[1], 2.0 * u + points[0] * du[0]])
+
+    def squared_in(self, regions: Collection[str]) -> float:
+        """Return the integral of |B|^2 over the volume of regions, T2 m3/A2, as exact as the field.
+
+        Parameters
+        ----------
+        regions : collection of str
+            Names; those that the mesh does not hold are left out.
+        """
+        elements = elements_in(self.solution, regions)
+        b = self.solution.sides.flux.change(self.rate)[elements]
+        weight = self.solution.sides.discretisation.weight[elements]
+        return float(np.sum(weight * np.sum(b**2, axis=1)))
+
+
+def ripple_field(solution: FieldSolution, bias: float) -> RippleField:
+    """Return the field per ampere of a small change of the current about a bias.
+
+    From the tangent problem at the bias; of a saturating core that is solved again on the mesh of
+    the solution, from its field.
+
+    Parameters
+    ----------
+    solution : FieldSolution
+        Of the design at any current.
+    bias : float
+        A.
+
+    Raises
+    ------
+    NumericalError
+        If the field at the bias cannot be solved.
+    """
+    return RippleField(solution, bias, flux_tangent(_flux_at(solution, bias)).rate)
+
+
+def _flux_at(solution: FieldSolution, current: float) -> Minimum:
+    """Return the flux side's minimiser at a current; of a linear core any has the same tangent."""
+    side = solution.flux.side
+    if current == solution.current or not solution.sides.laws.saturating:
+        return solution.flux
+    if current == 0.0 and side.fixed is None:
+        return _nothing(side)
+    return minimum(side, current, solution.flux.field)
+
+
+def _nothing(side: Side) -> Minimum:
+    """Return the field without current and magnets."""
+    x = np.zeros(side.size)
+    field = side.field(x, 0.0)
+    return Minimum(side, 0.0, x, field, *side.coefficients(field), ())

@@ -1,0 +1,1 @@
+"""Core loss of the one-dimensional pot, B followed through a ripple in saturation."""
