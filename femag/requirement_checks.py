@@ -147,7 +147,12 @@ def _temperature(result: Result) -> Known:
 
 
 def _loss(result: Result) -> Known:
-    return Known(None, None, None, "losses are not computed")
+    budget = result.loss_budget
+    if budget is None:
+        return Known(None, None, None, "the drive has no ripple")
+    if budget.missing:
+        return Known(None, None, None, f"not known: {', '.join(budget.missing)}")
+    return Known(budget.total, budget.total, budget.total, "estimate, core and copper")
 
 
 def _force(result: Result) -> Known:

@@ -63,7 +63,7 @@ def write_figure(draw: Draw, path: str | Path) -> None:
 
 
 def figure_bytes(draw: Draw, kind: Literal["svg", "png"], panel: tuple[float, float]) -> bytes:
-    """Draw on the one Axes of a new figure and return it as the bytes of a file.
+    """Draw on the one Axes of a new figure and return it as the bytes of a file, cut to its content.
 
     Equal figures give equal bytes. Text in SVG stays text.
 
@@ -82,7 +82,10 @@ def figure_bytes(draw: Draw, kind: Literal["svg", "png"], panel: tuple[float, fl
         figure = Figure(figsize=panel, layout="constrained")
         draw(figure.add_subplot())
         metadata = {"Date": None, "Creator": None} if kind == "svg" else {"Software": None}
-        figure.savefig(written, format=kind, dpi=PAGE_RESOLUTION, metadata=metadata)
+        figure.savefig(
+            written, format=kind, dpi=PAGE_RESOLUTION, metadata=metadata, bbox_inches="tight",
+            pad_inches=0.05,
+        )  # fmt: skip
     return written.getvalue()
 
 

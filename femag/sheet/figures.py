@@ -10,28 +10,36 @@ from typing import Literal
 from femag.geometry import PotCore
 from femag.plot import (
     convergence,
+    copper_map,
     core_drawing,
+    core_loss_map,
     figure_bytes,
     flux_map,
     gap_map,
     inductance_figure,
+    layer_bars,
     layer_field,
     material_curve,
     post_face_field,
     section_drawing,
     untitled,
 )
-from femag.plot.figure_file import Draw
+from femag.plot.figure_file import PAGE_RESOLUTION, Draw
 from femag.plot.flux_map import Window, gap_window, section_window
+from femag.result import Result
 from femag.review import Review
 
 Kind = Literal["svg", "png"]
 HALF = (4.4, 3.3)
 """Width and height of a figure that shares a line of the page with another, inch."""
+MAP = (4.4, 4.4)
+"""The same of a map, inch."""
 BESIDE_MAP = 1.35
 UNDER_MAP = 0.5
 HIGHEST = 5.8
 """Room for the scale beside a map and for the axis under it, and the highest map, inch."""
+PIXELS = 100
+"""Of the page to an inch of a figure."""
 TYPES = {"svg": "image/svg+xml", "png": "image/png"}
 
 
@@ -47,6 +55,8 @@ class Figure:
         What it shows.
     source : str
         The picture as an address that holds it.
+    width : int
+        Width at which it is shown where there is room, px.
     is_wide : bool
         Whether it takes the whole width.
     """
@@ -54,6 +64,7 @@ class Figure:
     name: str
     caption: str
     source: str
+    width: int
     is_wide: bool = False
 
 
@@ -91,6 +102,7 @@ def review_figures(review: Review) -> dict[str, Figure]:
                 partial(convergence, review.meshes, tolerance=review.design.tolerance),
                 "svg", HALF, "Both bounds on a row of ever finer meshes: how far off the last "
                 "middle they are."),
+        *_losses(review.result),
     ]  # fmt: skip
     return {figure.name: figure for figure in figures}
 
@@ -123,6 +135,27 @@ def _drawings(review: Review) -> list[Figure]:
     return drawings
 
 
+def _losses(result: Result) -> list[Figure]:
+    """Return where the losses arise, as far as they are known."""
+    figures = []
+    if any(loss.layers for loss in result.copper_loss):
+        figures.append(
+            _figure("layer-loss", untitled(partial(layer_bars, result), grid=True), "svg", HALF,
+                    "Loss of the copper by layers, from inside.")
+        )  # fmt: skip
+    if any(loss.crossing_of_turns for loss in result.copper_loss):
+        figures.append(
+            _figure("copper-loss", untitled(partial(copper_map, result)), "svg", MAP,
+                    "Loss that the ripple's field causes in each turn, by length.")
+        )  # fmt: skip
+    if result.core_loss is not None:
+        figures.append(
+            _figure("core-loss", untitled(partial(core_loss_map, result)), "png", MAP,
+                    "Density of the core loss under the ripple, on a logarithmic scale.")
+        )  # fmt: skip
+    return figures
+
+
 def _map_panel(window: Window) -> tuple[float, float]:
     """Return width and height in inch of a map that shows a window beside its scale."""
     r0, r1, z0, z1 = window
@@ -138,5 +171,14 @@ def _figure(
     *,
     is_wide: bool = False,
 ) -> Figure:
-    picture = b64encode(figure_bytes(draw, kind, panel)).decode("ascii")
-    return Figure(name, caption, f"data:{TYPES[kind]};base64,{picture}", is_wide)
+    content = figure_bytes(draw, kind, panel)
+    picture = b64encode(content).decode("ascii")
+    width = round(PIXELS * _width(content, kind))
+    return Figure(name, caption, f"data:{TYPES[kind]};base64,{picture}", width, is_wide)
+
+
+def _width(content: bytes, kind: Kind) -> float:
+    """Return the width of a picture in inch."""
+    if kind == "png":
+        return int.from_bytes(content[16:20]) / PAGE_RESOLUTION
+    return float(content.split(b'width="', 1)[1].split(b"pt", 1)[0]) / 72.0

@@ -14,7 +14,7 @@ from markupsafe import Markup
 from femag.answer import cautions, described, hand_caveat, what_is_bounded, where_it_saturates
 from femag.design_file import design_toml
 from femag.review import Review
-from femag.sheet import tables
+from femag.sheet import losses, tables
 from femag.sheet.field_data import as_script, field_data
 from femag.sheet.figures import review_figures
 from femag.sheet.texts import shown_together
@@ -48,6 +48,7 @@ def review_sheet(review: Review, file: str = "") -> str:
         verdict=verdict(review),
         counts=Counter(check.verdict for check in review.checks),
         tables=tables,
+        losses=losses,
         texts=_texts(review),
         full_bar=FULL_BAR,
     )

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from femag.answer import described_gap, layers_text
 from femag.current_curve import CurvePoint, InductanceCurve
 from femag.curve_answer import relative_half_width
-from femag.geometry import Block
+from femag.geometry import Block, Conductor, Foil, LitzWire, RoundWire
 from femag.quantities import WoundCopper, copper_clearance
 from femag.requirement_answer import interval_text, limit_text, margin_text, reason, value_text
 from femag.result import Result
@@ -63,13 +63,24 @@ def part_table(review: Review) -> Table:
     rows += [("gap", described_gap(gap)) for gap in design.gaps] or [("gap", "none")]
     for winding in design.windings:
         carried = "" if winding in design.driven_windings else ", without current"
-        rows.append((f"winding {winding.name}", f"{winding.turns} turns{carried}"))
+        laid = "" if winding.conductor is None else f" of {_conductor_text(winding.conductor)}"
+        rows.append((f"winding {winding.name}", f"{winding.turns} turns{laid}{carried}"))
         if winding.block is not None:
             rows.append(("  copper", _block_text(winding.block)))
     rows += [("material", design.material.label), ("peak current", f"{design.current:g} A")]
     if design.detail == "turn":
         rows.append(("field", "turn by turn"))
     return Table("The design as it was solved", ("part", ""), tuple(rows), frozenset({0, 1}))
+
+
+def _conductor_text(conductor: Conductor) -> str:
+    match conductor:
+        case RoundWire(diameter):
+            return f"round wire, {1e3 * diameter:g} mm bare"
+        case LitzWire(strands, strand):
+            return f"litz, {strands} x {1e3 * strand:g} mm"
+        case Foil(thickness):
+            return f"foil, {1e3 * thickness:g} mm"
 
 
 def _block_text(block: Block) -> str:
