@@ -63,7 +63,7 @@ def write_figure(draw: Draw, path: str | Path) -> None:
 
 
 def figure_bytes(draw: Draw, kind: Literal["svg", "png"], panel: tuple[float, float]) -> bytes:
-    """Draw on the one Axes of a new figure and return it as the bytes of a file, cut to its content.
+    """Draw on the one Axes of a new figure and return the bytes of a file, cut to its content.
 
     Equal figures give equal bytes. Text in SVG stays text.
 
