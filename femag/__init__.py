@@ -31,9 +31,11 @@ if TYPE_CHECKING:
         read_capture,
     )
     from femag.copper_distance import KeepOut, keep_out
+    from femag.coupled_windings import WindingMatrix, winding_matrix
     from femag.current_curve import InductanceCurve, inductance_curve
     from femag.design import Design
     from femag.design_file import design_toml, read_design, read_ripple
+    from femag.design_slopes import sensitivities
     from femag.errors import GapfieldError, InputError, NumericalError
     from femag.export.circuit_model import write_circuit
     from femag.export.curve_file import read_curve, write_curve
@@ -75,6 +77,7 @@ if TYPE_CHECKING:
         read_measured,
         residuals,
     )
+    from femag.part_tolerances import PartTolerances
     from femag.quantities import CoreLoss, LossBudget
     from femag.requirement_checks import RequirementCheck, checked_requirements
     from femag.requirements import Requirements
@@ -84,7 +87,8 @@ if TYPE_CHECKING:
     from femag.sheet import review_sheet
     from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
-    from femag.winding_matrix import WindingMatrix, winding_matrix
+    from femag.target_turns import turns_for
+    from femag.tolerance_budget import sampled_spread
 
 _HOME = {
     "ALUMINIUM": "femag.geometry",
@@ -149,9 +153,13 @@ _HOME = {
     "read_design": "femag.design_file",
     "read_ripple": "femag.design_file",
     "read_result": "femag.export.result_file",
+    "PartTolerances": "femag.part_tolerances",
     "gap_for": "femag.target_gap",
     "KeepOut": "femag.copper_distance",
     "keep_out": "femag.copper_distance",
+    "sampled_spread": "femag.tolerance_budget",
+    "sensitivities": "femag.design_slopes",
+    "turns_for": "femag.target_turns",
     "solve": "femag.result",
     "Sample": "femag.study",
     "Study": "femag.study",
@@ -161,8 +169,8 @@ _HOME = {
     "write_result": "femag.export.result_file",
     "write_field": "femag.export.mesh_files",
     "write_mesh": "femag.export.mesh_files",
-    "WindingMatrix": "femag.winding_matrix",
-    "winding_matrix": "femag.winding_matrix",
+    "WindingMatrix": "femag.coupled_windings",
+    "winding_matrix": "femag.coupled_windings",
 }
 
 __all__ = [
@@ -190,6 +198,7 @@ __all__ = [
     "Magnet",
     "MeasuredPoints",
     "NumericalError",
+    "PartTolerances",
     "PotCore",
     "RequirementCheck",
     "Requirements",
@@ -234,8 +243,11 @@ __all__ = [
     "read_table",
     "residuals",
     "review_sheet",
+    "sampled_spread",
+    "sensitivities",
     "solve",
     "steinmetz_through",
+    "turns_for",
     "winding_matrix",
     "write_circuit",
     "write_curve",

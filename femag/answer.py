@@ -2,20 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
+from femag.answer_table import columns as columns
 from femag.copper_answer import LOSS_COLUMNS, loss_notes, loss_rows
 from femag.design import Design
 from femag.geometry import Gap
 from femag.loss_answer import described_ripple, loss_lines
-from femag.quantities import WoundCopper
+from femag.quantities import Pull, WoundCopper
 from femag.requirement_answer import requirement_lines
 from femag.requirement_checks import checked_requirements
 from femag.result import Result
+from femag.tolerance_answer import budget_lines
 from femag.units import with_common_unit, with_unit
 
 WIDTH = 80
@@ -37,13 +37,15 @@ def print_answer(result: Result, console: Console) -> None:
     if design.requirements:
         lines += [*requirement_lines(checked_requirements(result)), ""]
     lines += [_inductances(result), "", _flux_densities(result)]
-    lines += [Text(where_it_saturates(result)), ""]
+    lines += [Text(where_it_saturates(result)), Text(_pulls(result)), ""]
     if len(design.windings) > 1:
         lines += [Text(OTHER_WINDINGS), ""]
     if result.copper:
         lines += [_copper(result), ""]
     if result.copper_loss:
         lines += [_losses(result), *map(Text, loss_notes(result)), ""]
+    if result.tolerance_budget is not None:
+        lines += [*budget_lines(result.tolerance_budget), ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]
     lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
@@ -164,6 +166,31 @@ def where_it_saturates(result: Result) -> str:
     )
 
 
+def _pulls(result: Result) -> str:
+    """Say what the halves and the faces of the gaps are pulled together with."""
+    force = result.force
+    apart = max(_apart_ways(pull) for pull in (force.halves, *force.gaps))
+    strongest: dict[str, Pull] = {}
+    for pull in force.gaps:
+        leg = f"{pull.name.partition(' gap')[0]} gap"
+        strongest[leg] = max(strongest.get(leg, pull), pull, key=lambda one: one.force)
+    faces = "".join(
+        f" Faces of the {leg}: {with_unit(pull.force, 'N', 3)}, "
+        f"{with_unit(pull.pressure, 'Pa', 3)}."
+        for leg, pull in strongest.items()
+    )
+    return (
+        f"Pull of the halves at {result.current:g} A: {with_unit(force.halves.force, 'N', 3)} on "
+        f"the {force.halves.name}.{faces} Estimates, {100 * apart:.1g} % apart."
+    )
+
+
+def _apart_ways(pull: Pull) -> float:
+    """Return how far the estimates of a pull are apart, over their mean."""
+    estimates = (*pull.stress_of_sides, *pull.work_of_sides)
+    return (max(estimates) - min(estimates)) / abs(pull.force) if pull.force else 0.0
+
+
 def _copper(result: Result) -> Table:
     names = ("winding", "turns", "layers", "fill", "mean turn", "wire", "resistance")
     table = columns(*names, words=["winding", "resistance"])
@@ -227,14 +254,6 @@ def hand_caveat(result: Result) -> list[Text]:
             "the shape of the gap only."
         ),
     ]
-
-
-def columns(*names: str, words: Sequence[str], gap: int = 2) -> Table:
-    """Return an empty table without lines: columns of `words` to the left, numbers to the right."""
-    table = Table(box=None, padding=(0, gap, 0, 0), pad_edge=False, header_style="underline")
-    for name in names:
-        table.add_column(name, justify="left" if name in words else "right", overflow="fold")
-    return table
 
 
 def _provenance(result: Result) -> str:

@@ -334,6 +334,8 @@ def _run(argv: Sequence[str] | None) -> int:
         return _said(str(error), error.exit_code)
     except typer.TyperException as error:
         return _said(error.format_message(), 2)
+    except SystemExit:  # so say click and rich that the reader of a pipe has gone
+        return 0
     except (KeyboardInterrupt, typer.Abort):
         answer = STOPPED
     if answer == STOPPED:  # also typer's own answer to Ctrl-C

@@ -29,6 +29,7 @@ from femag.geometry import (
     upper_half,
 )
 from femag.materials import MagnetisationCurve
+from femag.part_tolerances import PartTolerances
 from femag.requirements import Requirements
 from femag.ripple import Ripple
 
@@ -72,6 +73,8 @@ class Design:
         Limits that the design has to keep; none unless given.
     ripple : Ripple, optional
         What of the current alternates; its highest current is `current`.
+    part_tolerances : PartTolerances, optional
+        Of the parts, for the tolerance budget; they move no result.
     """
 
     core: Core
@@ -85,6 +88,7 @@ class Design:
     detail: Detail = "block"
     requirements: Requirements = field(default_factory=Requirements)
     ripple: Ripple | None = None
+    part_tolerances: PartTolerances | None = None
 
     def __post_init__(self) -> None:
         for name, kind in (("windings", Winding), ("gaps", Gap), ("driven", str)):
@@ -142,15 +146,21 @@ def whole_section(design: Design) -> Section:
     InputError
         If the parts do not fit.
     """
-    core, gaps = design.core, design.gaps
-    half_window = half_window_height(core, gaps)
-    regions = core_regions(core, gaps)
-    coils = tuple(
-        part for coil in wound_coils(design) for part in coil_regions(coil, design.detail)
-    )
+    coils = winding_parts(design)
     _check_part_names(coils)
+    return section_around(design.core, design.gaps, coils)
+
+
+def section_around(core: Core, gaps: Sequence[Gap], parts: Sequence[Region]) -> Section:
+    """Return the full section of a core with the parts of its windings, in open space."""
+    half_window = half_window_height(core, gaps)
     extent = max(core.turned.ring_outer_radius, half_window + core.turned.largest_thickness)
-    return open_section((*regions, *coils), FAR_RADIUS * extent)
+    return open_section((*core_regions(core, gaps), *parts), FAR_RADIUS * extent)
+
+
+def winding_parts(design: Design) -> tuple[Region, ...]:
+    """Return the regions that carry the turns of all windings."""
+    return tuple(part for coil in wound_coils(design) for part in coil_regions(coil, design.detail))
 
 
 def wound_coils(design: Design) -> tuple[Coil, ...]:
@@ -171,7 +181,11 @@ def _window(core: Core, gaps: Sequence[Gap]) -> Block:
 
 def meshed_section(design: Design) -> Section:
     """Return the part that is meshed: the upper half when the design is symmetric."""
-    section = whole_section(design)
+    return meshed_part(whole_section(design))
+
+
+def meshed_part(section: Section) -> Section:
+    """Return the upper half of a symmetric section, and any other as it is."""
     return upper_half(section) if is_mirror_symmetric(section) else section
 
 
@@ -180,11 +194,16 @@ def turns_per_area(design: Design) -> dict[str, float]:
 
     A region that the mirror plane cuts keeps its own.
     """
+    return turns_per_area_of(design, winding_parts(design))
+
+
+def turns_per_area_of(design: Design, parts: Sequence[Region]) -> dict[str, float]:
+    """Return the turns per area in 1/m2 of those parts that belong to driven windings."""
     driven = {winding.name for winding in design.driven_windings}
     return {
-        region.name: region.turns / polygon_area(region.polygon)
-        for region in whole_section(design).regions
-        if region.winding in driven
+        part.name: part.turns / polygon_area(part.polygon)
+        for part in parts
+        if part.winding in driven
     }
 
 
@@ -195,6 +214,7 @@ def design_hash(design: Design) -> str:
     detail: Detail = design.detail if wound else "block"
     content = asdict(replace(design, title="", driven=driven, detail=detail))
     content.pop("requirements")
+    del content["part_tolerances"]
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__
     material = content["material"]

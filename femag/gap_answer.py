@@ -7,15 +7,35 @@ from rich.text import Text
 
 from femag.answer import cautions, columns, described
 from femag.target_gap import TargetGap
+from femag.target_turns import TargetTurns
+from femag.tolerance_answer import budget_lines, spread_line
+from femag.tolerance_budget import SampledSpread
 from femag.units import with_unit
 
 GRINDING = 0.01e-3
 """Change of the gap in m whose effect is printed."""
 
 
-def print_gap(found: TargetGap, console: Console) -> None:
-    """Print gap, bounds, what grinding does to them, and what every hand formula asks for."""
-    design, value = found.design, found.inductance.value
+def print_gap(
+    found: TargetGap,
+    console: Console,
+    by_turns: TargetTurns | None = None,
+    spread: SampledSpread | None = None,
+) -> None:
+    """Print gap, bounds, what tolerances do to them, and what every hand formula asks for.
+
+    Parameters
+    ----------
+    found : TargetGap
+        The gap.
+    console : Console
+        Where to print.
+    by_turns : TargetTurns, optional
+        How its turns were found.
+    spread : SampledSpread, optional
+        Samples of its tolerances.
+    """
+    design, value, search = found.design, found.inductance.value, by_turns or found
     if design.title:
         console.print(Text(design.title, style="bold"))
     console.print(described(design))
@@ -27,10 +47,18 @@ def print_gap(found: TargetGap, console: Console) -> None:
         ("gap", f"{1e3 * found.gap:.4g} mm", f"for {with_unit(found.target, 'H', 5)}"),
         ("inductance", with_unit(value, "H", 5), f"between {_between(found)}"),
         ("0.01 mm more", f"{share:+.2%}", "of the inductance, from the energies' derivative"),
+        ("flux density", f"{found.flux_density:.4f} T", f"greatest mean: {_where(found)}"),
     )
     for row in rows:
         table.add_row(*row)
     console.print(table, highlight=False)
+    if by_turns is not None:
+        console.print(_why_these_turns(by_turns))
+    console.print()
+    for line in budget_lines(found.tolerance_budget):
+        console.print(line, highlight=False)
+    if spread is not None:
+        console.print(spread_line(spread), highlight=False)
     console.print()
     formulas = columns("hand formula", "gap", "off by", words=["hand formula"])
     for entry in found.hand:
@@ -43,13 +71,34 @@ def print_gap(found: TargetGap, console: Console) -> None:
     console.print()
     console.print(
         Text(
-            f"{found.solutions} field solutions, {found.seconds:.2f} s. Inductance is 2 W'/I^2. "
+            f"{search.solutions} field solutions, {search.seconds:.2f} s. Inductance is 2 W'/I^2. "
             f"{design.core.model_note}"
         )
     )
     console.print()
     stored = 0.5 * value * design.current**2
     console.print(Text(cautions(stored, design.current)))
+
+
+def _where(found: TargetGap) -> str:
+    return max(found.section_means, key=lambda mean: mean.flux_density).name
+
+
+def _why_these_turns(by_turns: TargetTurns) -> Text:
+    """Say what other numbers of turns would have given."""
+    others = [trial for trial in by_turns.trials if trial.turns < by_turns.turns]
+    if not others:
+        return Text(f"{by_turns.turns} turn keeps {by_turns.limit:g} T.")
+    next_fewer = max(others, key=lambda trial: trial.turns)
+    given = (
+        "do not reach the inductance"
+        if next_fewer.flux_density is None
+        else f"would have {next_fewer.flux_density:.4f} T"
+    )
+    return Text(
+        f"{by_turns.turns} turns are the fewest within {by_turns.limit:g} T: {next_fewer.turns} "
+        f"{given}."
+    )
 
 
 def _between(found: TargetGap) -> str:

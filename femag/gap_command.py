@@ -9,11 +9,27 @@ from typing import Annotated
 import typer
 
 from femag.command_output import check_spares, check_targets, quantity
+from femag.errors import InputError
 
 DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design file.")]
 InductanceOption = Annotated[str, typer.Option(help="Wanted, such as '250 uH'.")]
 AtOption = Annotated[
     str | None, typer.Option("--at", help="At this current, such as '3 A'; else the design's.")
+]
+FluxDensityOption = Annotated[
+    str | None,
+    typer.Option(help="Find the fewest turns at which no section mean exceeds this, as '0.3 T'."),
+]
+TurnsOption = Annotated[int | None, typer.Option(help="Turns instead of the design's.")]
+SampleOption = Annotated[
+    int | None,
+    typer.Option(
+        "--sample",
+        metavar="N",
+        min=2,
+        max=100_000,
+        help="Solve N samples of the tolerances as well.",
+    ),
 ]
 JsonOption = Annotated[
     str | None,
@@ -29,10 +45,13 @@ def gap_command(
     design: DesignArgument,
     inductance: InductanceOption,
     at: AtOption = None,
+    flux_density: FluxDensityOption = None,
+    turns: TurnsOption = None,
+    sample: SampleOption = None,
     json: JsonOption = None,
     write: WriteOption = None,
 ) -> None:
-    """Find the gap that gives an inductance at a current.
+    """Find the gap that gives an inductance at a current, and the turns for a flux density.
 
     In the field, between bounds, beside what every hand formula asks for.
     """
@@ -44,22 +63,38 @@ def gap_command(
     from femag.export.whole_file import whole_file
     from femag.gap_answer import print_gap
     from femag.target_gap import gap_for
+    from femag.target_turns import turns_for, with_turns
+    from femag.tolerance_budget import sampled_spread
 
+    if turns is not None and flux_density is not None:
+        raise InputError(
+            "stands beside --turns", key="--flux-density", value=flux_density,
+            accepted="one of the two",
+        )  # fmt: skip
     check_targets(json, None)
     for option, file in (("--json", json), ("--write", write)):
         check_spares(design, "the design", option, file)
     wanted = quantity("--inductance", inductance, "H")
     current = None if at is None else quantity("--at", at, "A")
-    found = gap_for(read_design(design), wanted, current)
+    base = read_design(design)
+    if turns is not None:
+        base = with_turns(base, turns)
+    by_turns = None
+    if flux_density is not None:
+        limit = quantity("--flux-density", flux_density, "T")
+        by_turns = turns_for(base, wanted, limit, current)
+    found = by_turns.found if by_turns else gap_for(base, wanted, current)
+    spread = None if sample is None else sampled_spread(found.design, sample)
+    text = gap_json(found, by_turns, spread)
     with ExitStack() as stack:
         if json is not None and json != "-":
-            stack.enter_context(whole_file(json)).write_text(gap_json(found), encoding="utf-8")
+            stack.enter_context(whole_file(json)).write_text(text, encoding="utf-8")
         if write is not None:
             target = stack.enter_context(whole_file(write))
             target.write_text(design_toml(found.design), encoding="utf-8")
     if json == "-":
-        typer.echo(gap_json(found), nl=False)
+        typer.echo(text, nl=False)
         return
-    print_gap(found, Console(width=WIDTH))
+    print_gap(found, Console(width=WIDTH), by_turns, spread)
     if write is not None:
         typer.echo(f"\nWritten to {write}")

@@ -5,6 +5,7 @@ from __future__ import annotations
 from rich.table import Table
 from rich.text import Text
 
+from femag.answer_table import columns
 from femag.requirement_checks import RequirementCheck
 from femag.requirements import Sense
 from femag.units import with_common_unit, with_unit
@@ -14,22 +15,21 @@ SIGNS: dict[Sense, str] = {"least": "at least", "most": "at most"}
 
 def requirement_lines(checks: tuple[RequirementCheck, ...]) -> list[Table | Text]:
     """Return the table of requirements, at most 80 columns wide, and why some are not shown."""
-    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, header_style="underline")
-    for name in ("requirement", "value", "limit", "margin"):
-        table.add_column(name, justify="left" if name == "requirement" else "right")
-    table.add_column("")
+    table = columns("requirement", "value", "limit", "margin", "", words=["requirement", ""])
     for check in checks:
         table.add_row(
             check.words, value_text(check), limit_text(check), margin_text(check), check.verdict
         )
-    reasons = "; ".join(
-        f"{check.words}: {reason(check)}" for check in checks if check.verdict == "not shown"
-    )
-    return [table, *([Text(f"Not shown: {reasons}.")] if reasons else [])]
+    reasons = "; ".join(f"{check.words}: {reason(check)}" for check in checks if reason(check))
+    return [table, *([Text(f"{reasons[0].upper()}{reasons[1:]}.")] if reasons else [])]
 
 
 def reason(check: RequirementCheck) -> str:
-    """Return why a requirement is not shown to be kept or missed."""
+    """Return why a requirement is not shown, or that tolerances alone miss it; else nothing."""
+    if check.is_missed_by_tolerance:
+        return "missed with all parts at their worse ends, kept by nominal ones"
+    if check.verdict != "not shown":
+        return ""
     if check.known.value is None:
         return check.known.basis
     return f"the limit lies between the {check.known.basis}; lower solve.tolerance"
@@ -66,6 +66,13 @@ def interval_text(check: RequirementCheck) -> str:
         return ""
     texts = with_common_unit((known.value, known.lower, known.upper), check.unit, 5)
     return f"{texts[1].split()[0]} to {texts[2].split()[0]}"
+
+
+def spread_text(check: RequirementCheck) -> str:
+    """Return what part tolerances may add or take off; a dash where that is not known."""
+    if check.known.spread is None or not check.known.value:
+        return "-"
+    return f"\N{PLUS-MINUS SIGN}{100 * check.known.spread / check.known.value:.1f} %"
 
 
 def _quantity(value: float, unit: str, *, exact: bool = False) -> str:

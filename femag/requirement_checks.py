@@ -25,12 +25,16 @@ class Known:
         Where the model has it, SI: bounds, or two estimates, as `basis` says.
     basis : str
         What the two rest on, for print; why there is no value.
+    spread : float or None
+        What the design's part tolerances may add to either end or take off it, SI; None where that
+        is not known.
     """
 
     value: float | None
     lower: float | None
     upper: float | None
     basis: str
+    spread: float | None = None
 
 
 @dataclass(frozen=True)
@@ -64,26 +68,41 @@ class RequirementCheck:
     def margin(self) -> float | None:
         """Room between the worse end and the limit over the limit; below 0 where it is missed.
 
-        Of temperatures the difference in kelvin.
+        Parts are at the worse ends of their tolerances. Of temperatures the difference in kelvin.
         """
-        worst = self.known.lower if self.sense == "least" else self.known.upper
-        if worst is None or self.limit is None:
+        room = self._room(worse=True)
+        if room is None or self.limit is None:
             return None
-        room = worst - self.limit if self.sense == "least" else self.limit - worst
+        room -= self.known.spread or 0.0
         return room if self.unit == "C" else room / self.limit
 
     @property
     def verdict(self) -> Verdict:
         """Kept, missed, or not shown: the limit lies between both ends, or nothing is known."""
-        if self.known.value is None or self.margin is None:
-            return "not shown" if self.known.value is None else "kept"
-        best = self.known.upper if self.sense == "least" else self.known.lower
-        if self.margin >= 0.0:
+        if self.known.value is None:
+            return "not shown"
+        if self.margin is None or self.margin >= 0.0:
             return "kept"
-        assert best is not None
-        assert self.limit is not None
-        missed = best < self.limit if self.sense == "least" else best > self.limit
-        return "missed" if missed else "not shown"
+        return "not shown" if self._is_between else "missed"
+
+    @property
+    def is_missed_by_tolerance(self) -> bool:
+        """Whether it is missed with parts at their worse ends only."""
+        room = self._room(worse=True)
+        return self.verdict == "missed" and room is not None and room >= 0.0
+
+    @property
+    def _is_between(self) -> bool:
+        worse, better = self._room(worse=True), self._room(worse=False)
+        return worse is not None and better is not None and worse < 0.0 <= better
+
+    def _room(self, *, worse: bool) -> float | None:
+        """Return what is left of nominal parts at one end to the limit; below 0 beyond it."""
+        at_lower = (self.sense == "least") == worse
+        end = self.known.lower if at_lower else self.known.upper
+        if end is None or self.limit is None:
+            return None
+        return end - self.limit if self.sense == "least" else self.limit - end
 
 
 def checked_requirements(result: Result) -> tuple[RequirementCheck, ...]:
@@ -105,8 +124,9 @@ def _check(limit: Limit, known: Known) -> RequirementCheck:
 
 
 def _inductance(result: Result) -> Known:
-    bounds = result.inductance
-    return Known(bounds.value, bounds.lower, bounds.upper, "bounds")
+    bounds, budget = result.inductance, result.tolerance_budget
+    spread = None if budget is None else budget.worst_case
+    return Known(bounds.value, bounds.lower, bounds.upper, "bounds", spread)
 
 
 def _incremental(result: Result) -> Known:
@@ -156,7 +176,9 @@ def _loss(result: Result) -> Known:
 
 
 def _force(result: Result) -> Known:
-    return Known(None, None, None, "the force is not computed")
+    pull = result.force.halves
+    ways = (*pull.stress_of_sides, *pull.work_of_sides)
+    return Known(pull.force, min(ways), max(ways), f"four estimates, on the {pull.name}")
 
 
 def _fit(result: Result) -> Known:

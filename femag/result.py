@@ -16,6 +16,7 @@ from femag.hand import HandEstimate, hand_estimates, plain_inductance
 from femag.mesh import SectionMesh
 from femag.quantities import (
     CoreLoss,
+    Force,
     LossBudget,
     SectionMean,
     VolumeShare,
@@ -23,12 +24,14 @@ from femag.quantities import (
     WoundCopper,
     copper_loss,
     core_loss,
+    force_of,
     gap_factor,
     incremental_inductance_of_sides,
     section_means,
     volume_shares,
     wound_copper,
 )
+from femag.tolerance_budget import ToleranceBudget, tolerance_budget
 
 LIBRARIES = ("gapfield", "numpy", "scipy", "scikit-fem", "gmsh")
 
@@ -80,6 +83,8 @@ class Result:
         Flux density, T, that half, 90 % and 99 % of the core's volume stay below.
     copper : tuple of WoundCopper
         Layers, wire and resistance of every winding that has a conductor.
+    force : Force
+        Pull of the halves and of the faces of every gap, N; estimates.
     unknowns, refinements : int
         Unknowns of both sides on the last mesh; number of refinements.
     seconds : float
@@ -96,6 +101,8 @@ class Result:
         Loss of every winding, W; none without a ripple.
     core_loss : CoreLoss or None
         Loss of the core under the ripple; None without a ripple or without loss parameters.
+    tolerance_budget : ToleranceBudget or None
+        What the design's tolerances do to the inductance; None where it gives none.
     solution : FieldSolution or None
         The fields; None when the result was read from a file.
     """
@@ -111,6 +118,7 @@ class Result:
     section_means: tuple[SectionMean, ...]
     volume_shares: tuple[VolumeShare, ...]
     copper: tuple[WoundCopper, ...]
+    force: Force
     unknowns: int
     refinements: int
     seconds: float
@@ -120,6 +128,7 @@ class Result:
     magnet_coenergy: Bounds | None = None
     copper_loss: tuple[WindingLoss, ...] = ()
     core_loss: CoreLoss | None = None
+    tolerance_budget: ToleranceBudget | None = None
     solution: FieldSolution | None = field(default=None, repr=False, compare=False)
 
     @property
@@ -168,12 +177,11 @@ class Result:
         if self.design.ripple is None:
             return None
         copper = self.copper_loss
+        by_ripple = [part for loss in copper for part in (loss.ripple, loss.crossing)]
         return LossBudget(
             core=self.core_loss.total if self.core_loss else None,
             copper_dc=_sum_if_known([loss.dc for loss in copper]),
-            copper_ripple=_sum_if_known(
-                [p for loss in copper for p in (loss.ripple, loss.crossing)]
-            ),
+            copper_ripple=_sum_if_known(by_ripple),
         )
 
     @property
@@ -240,6 +248,7 @@ def solve(
         volume_shares=volume_shares(solution),
         copper=wound_copper(design),
         copper_loss=copper_loss(design, solution),
+        force=force_of(design, solution),
         unknowns=solution.unknowns,
         refinements=refinements,
         seconds=time.perf_counter() - started,
@@ -248,6 +257,7 @@ def solve(
         magnet_flux_linkage_of_sides=idle.flux_linkage_of_sides if idle else None,
         magnet_coenergy=idle.coenergy if idle else None,
         core_loss=_core_loss(design, solution),
+        tolerance_budget=tolerance_budget(design, solution) if design.part_tolerances else None,
         solution=solution,
     )
 

@@ -14,6 +14,7 @@ from femag.measured_inductance import MeasuredPoints, residuals
 from femag.mesh import coarse_mesh
 from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Result, solve
+from femag.tolerance_budget import ToleranceBudget, tolerance_budget
 
 STEPS = 6
 BEYOND = 9
@@ -60,6 +61,9 @@ class Review:
         With the fields at every current.
     checks : tuple of RequirementCheck
         The design's requirements.
+    tolerances : ToleranceBudget or None
+        What part tolerances do to the inductance: the design's, or customary ones; None with a
+        magnet in a gap.
     measured : MeasuredPoints or None
         What the bench says of the inductance.
     residuals : tuple of float
@@ -71,6 +75,7 @@ class Review:
     finest: FieldSolution
     curve: InductanceCurve
     checks: tuple[RequirementCheck, ...]
+    tolerances: ToleranceBudget | None
     measured: MeasuredPoints | None = None
     residuals: tuple[float, ...] = ()
 
@@ -135,9 +140,18 @@ def design_review(
         finest=finest,
         curve=curve,
         checks=checked_requirements(result),
+        tolerances=_tolerances(result),
         measured=measured,
         residuals=() if measured is None else tuple(residuals(measured, curve).tolist()),
     )
+
+
+def _tolerances(result: Result) -> ToleranceBudget | None:
+    """Return the budget of a result that was just solved, with customary tolerances if need be."""
+    if any(gap.magnet is not None for gap in result.design.gaps):
+        return None
+    assert result.solution is not None
+    return result.tolerance_budget or tolerance_budget(result.design, result.solution)
 
 
 def mesh_row(design: Design) -> tuple[tuple[MeshStep, ...], FieldSolution]:

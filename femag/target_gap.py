@@ -5,23 +5,30 @@ from __future__ import annotations
 import time
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
+from typing import Any
 
 import numpy as np
+from scipy.interpolate import pchip_interpolate
 
 from femag.design import Design, design_hash
 from femag.errors import InputError, NumericalError, number
 from femag.field.adapt import adapted_solution, inductance_bounds
-from femag.field.bounds import Bounds
+from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
-from femag.geometry import Gap
+from femag.geometry import Gap, with_gap_length
 from femag.hand import FORMULAS, hand_estimates
 from femag.mesh import THINNEST
+from femag.quantities import SectionMean, section_means
 from femag.quantities.sensitivity import coenergy_derivative
 from femag.result import library_versions
+from femag.tolerance_budget import ToleranceBudget, tolerance_budget
 
 MOST_SOLUTIONS = 12
 SHARE = 0.5
 """Share of the tolerance that the middle of the bounds may be off; the bounds have the rest."""
+TABLE = 60
+"""Gaps at which every hand formula is tabulated."""
 STEP = 1e-4
 """Change of the gap for its derivative, over the gap."""
 
@@ -60,8 +67,12 @@ class TargetGap:
         Its derivative by the gap, H/m, from the derivative of the energies.
     solutions : int
         Field solutions that the search took.
-    hand : tuple of HandGap
-        What every hand formula asks for.
+    known_hand : tuple of HandGap or None
+        What every hand formula asks for, where the search has asked them.
+    section_means : tuple of SectionMean
+        Mean flux density through cuts of the core at the target's current, T.
+    solution : FieldSolution
+        The fields.
     seconds : float
         Wall time.
     versions : dict of str to str
@@ -76,10 +87,52 @@ class TargetGap:
     inductance: Bounds
     slope: float
     solutions: int
-    hand: tuple[HandGap, ...]
+    known_hand: tuple[HandGap, ...] | None = field(repr=False, compare=False)
+    section_means: tuple[SectionMean, ...]
+    solution: FieldSolution = field(repr=False, compare=False)
     seconds: float
     versions: dict[str, str] = field(repr=False)
     design_hash: str
+
+    @property
+    def flux_density(self) -> float:
+        """The greatest section mean, T."""
+        return max(mean.flux_density for mean in self.section_means)
+
+    @cached_property
+    def hand(self) -> tuple[HandGap, ...]:
+        """What every hand formula asks for."""
+        return self.known_hand or _hand_gaps(self.design, self.target)
+
+    @cached_property
+    def tolerance_budget(self) -> ToleranceBudget:
+        """What the design's tolerances, or customary ones, do to the inductance."""
+        return tolerance_budget(self.design, self.solution)
+
+
+class OutOfReach(InputError):
+    """No gap gives the inductance.
+
+    Parameters
+    ----------
+    problem : str
+        What is wrong.
+    too_few_turns : bool
+        Whether the core gives less even without gap; else it gives more with the longest.
+    inductance : float
+        What the core gives at most without gap, or at least with the longest, H.
+    solutions : int
+        Field solutions that it took to find out.
+    **parts
+        As of `InputError`.
+    """
+
+    def __init__(
+        self, problem: str, too_few_turns: bool, inductance: float, solutions: int, **parts: Any
+    ) -> None:
+        super().__init__(problem, **parts)
+        self.too_few_turns, self.inductance = too_few_turns, inductance
+        self.solutions = solutions
 
 
 def gap_for(
@@ -87,6 +140,7 @@ def gap_for(
     inductance: float,
     current: float | None = None,
     tolerance: float | None = None,
+    start: float | None = None,
 ) -> TargetGap:
     """Return the gap at which the energy inductance 2 W'/I^2 has a value.
 
@@ -105,10 +159,12 @@ def gap_for(
         A; the design's own when left out.
     tolerance : float, optional
         Largest distance of the bounds from the target over the target; the design's when left out.
+    start : float, optional
+        Gap to try first, m; the middle of what the hand formulas ask for when left out.
 
     Raises
     ------
-    InputError
+    OutOfReach
         If the target cannot be reached: it says what the core gives without and with most gap.
     NumericalError
         If a field cannot be solved.
@@ -125,17 +181,19 @@ def gap_for(
     )
     if any(gap.magnet is not None for gap in design.gaps):
         raise InputError("a magnet in the gap", key="gap.magnet", accepted="a gap without a magnet")
-    hand = _hand_gaps(design, inductance)
-    search = _Search(design, inductance, hand)
-    found, bounds, slope = search.run()
+    hand = _hand_gaps(design, inductance) if start is None else None
+    search = _Search(design, inductance, hand or (), start)
+    found, solution, slope = search.run()
     return TargetGap(
         design=found,
         target=inductance,
         gap=found.gaps[0].length,
-        inductance=bounds,
+        inductance=inductance_bounds(solution),
         slope=slope,
         solutions=search.solutions,
-        hand=hand,
+        known_hand=hand,
+        section_means=section_means(found, solution),
+        solution=solution,
         seconds=time.perf_counter() - started,
         versions=library_versions(),
         design_hash=design_hash(found),
@@ -144,26 +202,30 @@ def gap_for(
 
 def with_gap(design: Design, length: float) -> Design:
     """Return a design whose first gap has another total length in m."""
-    return replace(design, gaps=(replace(design.gaps[0], length=length), *design.gaps[1:]))
+    gaps = with_gap_length(design.gaps, length, design.core.window_height)
+    return replace(design, gaps=gaps)
 
 
 class _Search:
     """Newton's method on 1/L between a gap that is too short and one that is too long."""
 
-    def __init__(self, design: Design, target: float, hand: Sequence[HandGap]) -> None:
-        self.design, self.target, self.hand = design, target, hand
+    def __init__(
+        self, design: Design, target: float, hand: Sequence[HandGap], start: float | None
+    ) -> None:
+        self.design, self.target, self.hand, self.start = design, target, hand, start
         self.solutions = 0
         self.short, self.long = _shortest_gap(design), _longest_gap(design)
 
-    def run(self) -> tuple[Design, Bounds, float]:
-        """Return design, bounds and slope of the inductance (H/m) at the gap that is found."""
+    def run(self) -> tuple[Design, FieldSolution, float]:
+        """Return design, fields and slope of the inductance (H/m) at the gap that is found."""
         gap = self._first_gap()
         low, high = self.short, self.long
         while self.solutions < MOST_SOLUTIONS:
             design = with_gap(self.design, gap)
-            bounds, slope = self._solved(design)
+            solution, slope = self._solved(design)
+            bounds = inductance_bounds(solution)
             if self._is_met(bounds):
-                return design, bounds, slope
+                return design, solution, slope
             if bounds.value > self.target:
                 low = gap
             else:
@@ -186,32 +248,39 @@ class _Search:
             return high if high == self.long else float(np.sqrt(low * high))
         return gap
 
-    def _solved(self, design: Design) -> tuple[Bounds, float]:
-        """Return bounds of the inductance and its derivative by the gap, H/m."""
+    def _solved(self, design: Design) -> tuple[FieldSolution, float]:
+        """Return the fields and the derivative of the inductance by the gap, H/m."""
         tolerance = (1.0 - SHARE) * design.tolerance
         solution, _ = adapted_solution(field_problem(design), design.current, tolerance)
         self.solutions += 1
         step = STEP * design.gaps[0].length
         sides = coenergy_derivative(solution, design, _longer, step)
-        return inductance_bounds(solution), float(np.mean(sides)) * 2.0 / design.current**2
+        return solution, float(np.mean(sides)) * 2.0 / design.current**2
 
     def _first_gap(self) -> float:
-        """Return the middle of what the hand formulas ask for, at least the shortest gap."""
+        """Return the gap to try first: as asked, or the middle of what the formulas ask for."""
+        if self.start is not None:
+            return min(max(self.start, self.short), self.long)
         asked = [entry.gap for entry in self.hand if entry.gap]
         return min(max(float(np.median(asked)) if asked else 0.0, self.short), self.long)
 
-    def _out_of_reach(self, bounds: Bounds) -> InputError:
+    def _out_of_reach(self, bounds: Bounds) -> OutOfReach:
         """Return the error that says what can be had, from the bounds at the last gap."""
+        most = bounds
         if bounds.value > self.target:
             problem = "less than this core gives with the longest gap"
             accepted = f"a gap shorter than {self.long * 1e3:g} mm; fewer turns"
         else:
             bare = replace(self.design, gaps=())
             ungapped, _ = adapted_solution(field_problem(bare), bare.current, 1e-2)
+            self.solutions += 1
             most = inductance_bounds(ungapped)
             problem = "more than this core gives"
             accepted = f"less than {most} at {bare.current:g} A, without gap"
-        return InputError(problem, key="inductance", value=self.target, accepted=accepted)
+        return OutOfReach(
+            problem, bounds.value < self.target, most.value, self.solutions,
+            key="inductance", value=self.target, accepted=accepted,
+        )  # fmt: skip
 
 
 def _longer(design: Design, change: float) -> Design:
@@ -234,13 +303,14 @@ def _longest_gap(design: Design) -> float:
 def _hand_gaps(design: Design, target: float) -> tuple[HandGap, ...]:
     """Return the gap that each formula asks for, to a thousandth."""
     short, long = _shortest_gap(design), _longest_gap(design)
-    lengths = np.geomspace(short, long, 60)
+    lengths = np.geomspace(short, long, TABLE)
     tables = np.array([_hand_inductances(with_gap(design, float(length))) for length in lengths])
     gaps = []
     for formula, column in zip(FORMULAS, tables.T, strict=True):
         falling = np.minimum.accumulate(column)  # some formulas turn up again at long gaps
         reached = falling[0] > target > falling[-1]
-        gap = float(np.exp(np.interp(-np.log(target), -np.log(falling), np.log(lengths))))
+        reluctance, place = np.unique(-np.log(falling), return_index=True)
+        gap = float(np.exp(pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))))
         gaps.append(HandGap(formula.name, gap if reached else None))
     return tuple(gaps)
 

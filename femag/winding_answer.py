@@ -11,9 +11,9 @@ from rich.table import Table
 from rich.text import Text
 
 from femag.answer import columns, described
+from femag.coupled_windings import WindingMatrix, WindingPair
 from femag.field.bounds import Bounds
 from femag.units import with_unit
-from femag.winding_matrix import WindingMatrix, WindingPair
 
 COLUMNS = 4
 """Columns of the matrix that fit side by side."""

@@ -39,9 +39,9 @@ def windings_command(
 
     At small signal, between bounds; leakage from fields of its own.
     """
+    from femag.coupled_windings import winding_matrix
     from femag.design_file import read_design
     from femag.export.winding_file import winding_json
-    from femag.winding_matrix import winding_matrix
 
     check_targets(json, None)
     check_spares(design, "the design", "--json", json)

@@ -14,6 +14,7 @@ EXECUTED = (
     "docs/guide.md",
     "docs/examples/compare-by-hand.md",
     "docs/examples/review-plots.md",
+    "docs/examples/script-a-study.md",
 )
 DOCUMENTS = ("README.md", "DEVELOPERS.md", *sorted(
     str(path.relative_to(ROOT))

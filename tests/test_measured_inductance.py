@@ -10,7 +10,7 @@ import pytest
 import femag as fm
 from femag.current_curve import inductance_curve
 from femag.errors import InputError
-from femag.materials import FroehlichCurve, LinearCurve, ScaledCurve
+from femag.materials import FroehlichCurve, LinearCurve, ScaledCurve, with_permeability
 from femag.measured_inductance import (
     MeasuredPoints,
     fitted_design,
@@ -21,7 +21,7 @@ from femag.measured_inductance import (
 from femag.measured_inductance.fit import MOST_SOLUTIONS
 from femag.measured_inductance.least_squares import CostlyResiduals, least_squares, linearised
 from femag.measured_inductance.points import Kind
-from femag.measured_inductance.unknowns import altered, scaled_material, unknown
+from femag.measured_inductance.unknowns import altered, unknown
 
 Array = np.ndarray
 CURRENTS = (0.2, 0.6, 0.9, 1.3)
@@ -309,7 +309,7 @@ class TestUnknowns:
     def test_a_factor_scales_the_initial_permeability_and_keeps_the_saturation(
         self, curve: fm.TabulatedCurve
     ) -> None:
-        scaled = scaled_material(curve, 1.5)
+        scaled = with_permeability(curve, 1.5)
         assert scaled.initial_permeability == pytest.approx(1.5 * curve.initial_permeability)
         if not curve.is_linear:
             far = np.array([2e3])
@@ -317,7 +317,7 @@ class TestUnknowns:
                 curve.flux_density(far), rel=2e-3
             )
             assert scaled.flux_density(far) == pytest.approx(curve.flux_density(far), rel=0.02)
-        assert scaled_material(ScaledCurve(curve, 2.0), 1.5) == ScaledCurve(curve, 3.0)
+        assert with_permeability(ScaledCurve(curve, 2.0), 1.5) == ScaledCurve(curve, 3.0)
 
 
 class TestLeastSquares:

@@ -13,6 +13,7 @@ from femag.design_file import design_from_toml
 from femag.quantities import copper_clearance
 from femag.requirement_checks import all_kept, checked_requirements
 from femag.requirements import KINDS, Requirements
+from femag.tolerance_budget import Contribution, ToleranceBudget
 
 DEMO = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
 ALL = """
@@ -110,6 +111,45 @@ def test_what_has_no_value_is_not_shown_with_its_reason(result: fm.Result) -> No
         "no winding has a conductor",
         "winding main has no conductor",
     ]
+
+
+def test_a_force_is_judged_by_the_largest_of_its_estimates(result: fm.Result) -> None:
+    pull = result.force.halves
+    largest = max(*pull.stress_of_sides, *pull.work_of_sides)
+    assert checked(result, force=2.0 * largest) == [("kept", pytest.approx(0.5))]
+    assert checked(result, force=0.5 * pull.force)[0][0] == "missed"
+
+
+def test_part_tolerances_can_miss_what_nominal_parts_keep(result: fm.Result) -> None:
+    budget = ToleranceBudget(result.inductance.value, (Contribution("gap", 1e-5, -8e-6),))
+    off = replace(result, tolerance_budget=budget)
+    limit = result.inductance.lower - 5e-6
+    design = replace(result.design, requirements=Requirements(inductance_least=limit))
+    (check,) = checked_requirements(replace(off, design=design))
+    assert (check.verdict, check.is_missed_by_tolerance) == ("missed", True)
+    assert check.margin == pytest.approx(-3e-6 / limit)
+    assert checked(off, inductance_least=limit - 5e-6)[0][0] == "kept"
+    assert checked(off, inductance_most=result.inductance.upper + 9e-6)[0][0] == "kept"
+    assert checked(off, inductance_most=result.inductance.upper + 7e-6)[0][0] == "missed"
+    (check,) = checked_requirements(
+        replace(off, design=replace(design, requirements=Requirements(inductance_least=1.0)))
+    )
+    assert (check.verdict, check.is_missed_by_tolerance) == ("missed", False)
+
+
+def test_losses_need_a_ripple_and_have_all_their_parts(pot_26_16: fm.Design) -> None:
+    winding = fm.Winding(50, conductor=fm.RoundWire(0.3e-3, 0.03e-3), temperature=80.0)
+    design = replace(
+        pot_26_16, windings=(winding,), material=fm.material("mnzn-power-100C"),
+        ripple=fm.Ripple(0.2, 100e3),
+    )  # fmt: skip
+    solved = fm.solve(design, tolerance=2e-2)
+    assert solved.loss_budget is not None
+    total = solved.loss_budget.total
+    assert checked(solved, loss=2.0 * total) == [("kept", pytest.approx(0.5))]
+    assert checked(solved, loss=0.9 * total)[0][0] == "missed"
+    without = replace(solved, core_loss=None)
+    assert checked(without, loss=2.0 * total) == [("not shown", None)]
 
 
 def test_wound_conductors_fit_at_their_temperature(pot_26_16: fm.Design) -> None:

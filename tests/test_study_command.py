@@ -133,7 +133,7 @@ def test_a_study_without_a_case_that_could_be_solved_fails(
     code, _, err = run(capsys, study, "--store", study.with_name("r.sqlite"))
     assert code == 2
     assert "none of the 1 cases is a design; the first: " in err
-    assert not list(study.parent.glob("r.sqlite-*"))
+    assert not list(study.parent.glob("r.sqlite*"))
 
 
 @pytest.mark.parametrize(

@@ -16,6 +16,7 @@ FOLDERS = (
     "nonlinear_pot",
     "core_loss",
     "round_post_fringing",
+    "gap_force",
     "finite_post",
     "pot_core_26_16",
     "round_leg_3d",

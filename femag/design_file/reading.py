@@ -39,6 +39,7 @@ from femag.geometry import (
     catalogue_core,
     core_of_family,
 )
+from femag.part_tolerances import PartTolerances
 from femag.requirements import Requirements
 
 
@@ -144,7 +145,12 @@ def _design(table: DesignTable, folder: Path) -> Design:
         detail=table.solve.detail,
         requirements=Requirements(**table.require.model_dump()),
         ripple=drive_ripple(table.drive, folder),
+        part_tolerances=_part_tolerances(table),
     )
+
+
+def _part_tolerances(table: DesignTable) -> PartTolerances | None:
+    return None if table.tolerance is None else PartTolerances(**table.tolerance.model_dump())
 
 
 def _core(table: CoreTable, folder: Path) -> Core:

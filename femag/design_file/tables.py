@@ -289,6 +289,19 @@ class DriveTable(_Table):
     winding: list[str] = Field(default=[], description="a list of winding names, driven in series")
 
 
+class ToleranceTable(_Table):
+    """Half ranges of the parts: plus or minus so much."""
+
+    gap: Length = 0.0
+    post_diameter: Length = 0.0
+    window_diameter: Length = 0.0
+    window_height: Length = 0.0
+    permeability: float = Field(default=0.0, description="a share, such as 0.25 for 25 %")
+    saturation: float = Field(default=0.0, description="a share, such as 0.05 for 5 %")
+    coil_radial: Length = 0.0
+    coil_axial: Length = 0.0
+
+
 class SolveTable(_Table):
     """How exactly."""
 
@@ -321,3 +334,6 @@ class DesignTable(_Table):
     drive: DriveTable = Field(default=DriveTable(), description="a table, [drive]")
     solve: SolveTable = Field(default=SolveTable(), description="a table, [solve]")
     require: RequireTable = Field(default=RequireTable(), description="a table, [require]")
+    tolerance: ToleranceTable | None = Field(
+        default=None, description="a table of half ranges, [tolerance]"
+    )

@@ -18,6 +18,7 @@ from femag.materials import (
     TabulatedCurve,
     loss_document,
 )
+from femag.part_tolerances import SHARES, PartTolerances
 from femag.requirements import Requirements
 from femag.ripple import Ripple
 from femag.units import exact_text
@@ -43,6 +44,8 @@ def design_document(design: Design) -> Document:
         document["require"] = _requirements_document(design.requirements)
     if design.ripple is not None:
         document["drive"] |= _ripple_document(design.ripple)
+    if design.part_tolerances is not None:
+        document["tolerance"] = _tolerance_document(design.part_tolerances)
     return document
 
 
@@ -118,6 +121,14 @@ def _gap_document(gap: Gap) -> Document:
             "recoil_permeability": float(gap.magnet.recoil_permeability),
         }
     return document
+
+
+def _tolerance_document(tolerances: PartTolerances) -> Document:
+    return {
+        name: float(half) if name in SHARES else exact_text(half, "m", "m")
+        for name, half in asdict(tolerances).items()
+        if half
+    }
 
 
 def _winding_document(winding: Winding) -> Document:

@@ -20,10 +20,11 @@ from femag.export.loss_entries import (
     core_loss_of,
     loss_budget_entry,
 )
+from femag.export.tolerance_entry import ToleranceBudgetEntry, budget_entry, budget_of_entry
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
-from femag.quantities import SectionMean, VolumeShare, WoundCopper
+from femag.quantities import Force, Pull, SectionMean, VolumeShare, WoundCopper
 from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Comparison, Result
 
@@ -90,8 +91,27 @@ class RequirementEntry(Entry):
     lower: float | None
     upper: float | None
     basis: str
+    spread: float | None
     margin: float | None
     verdict: Literal["kept", "missed", "not shown"]
+
+
+class PullEntry(Entry):
+    """An attraction along the axis: N, and Pa on an area in m2; of sides: flux, potential."""
+
+    name: str
+    force: float
+    pressure: float
+    area: float
+    stress_of_sides: tuple[float, float]
+    work_of_sides: tuple[float, float]
+
+
+class ForceEntry(Entry):
+    """Pull of the halves, on what bears it, and of the faces of every gap."""
+
+    halves: PullEntry
+    gaps: list[PullEntry]
 
 
 class ResultDocument(Entry):
@@ -123,6 +143,8 @@ class ResultDocument(Entry):
     copper_loss: list[CopperLossEntry] = Field(default_factory=list)
     core_loss: CoreLossEntry | None = None
     losses: LossBudgetEntry | None = None
+    force: ForceEntry
+    tolerance_budget: ToleranceBudgetEntry | None = None
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -201,6 +223,11 @@ def _document(result: Result) -> ResultDocument:
         copper_loss=[copper_loss_entry(loss) for loss in result.copper_loss],
         core_loss=core_loss_entry(result.core_loss) if result.core_loss else None,
         losses=loss_budget_entry(result.loss_budget) if result.loss_budget else None,
+        force=ForceEntry(
+            halves=_pull_entry(result.force.halves),
+            gaps=[_pull_entry(pull) for pull in result.force.gaps],
+        ),
+        tolerance_budget=budget_entry(result.tolerance_budget) if result.tolerance_budget else None,
         hand=[HandEntry(**vars(c.estimate), error=c.error) for c in result.hand],
         model_note=result.design.core.model_note,
         unknowns=result.unknowns,
@@ -223,6 +250,14 @@ def _requirement_entry(check: RequirementCheck) -> RequirementEntry:
 
 def _bounds_entry(bounds: Bounds) -> BoundsEntry:
     return BoundsEntry(lower=bounds.lower, value=bounds.value, upper=bounds.upper)
+
+
+def _pull_entry(pull: Pull) -> PullEntry:
+    return PullEntry(**vars(pull), force=pull.force, pressure=pull.pressure)
+
+
+def _pull(entry: PullEntry) -> Pull:
+    return Pull(**entry.model_dump(exclude={"force", "pressure"}))
 
 
 def _bounds_or_none(entry: BoundsEntry | None) -> Bounds | None:
@@ -249,9 +284,15 @@ def _result(document: ResultDocument, file: str) -> Result:
         copper=tuple(WoundCopper(**copper.model_dump()) for copper in document.copper),
         copper_loss=tuple(copper_loss_of(entry) for entry in document.copper_loss),
         core_loss=core_loss_of(document.core_loss) if document.core_loss else None,
+        force=Force(
+            _pull(document.force.halves), tuple(_pull(pull) for pull in document.force.gaps)
+        ),
         unknowns=document.unknowns,
         refinements=document.refinements,
         seconds=document.seconds,
         versions=document.versions,
         design_hash=document.design_hash,
+        tolerance_budget=(
+            budget_of_entry(document.tolerance_budget) if document.tolerance_budget else None
+        ),
     )

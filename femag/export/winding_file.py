@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from typing import Any, Literal
 
+from femag.coupled_windings import WindingMatrix, WindingPair
 from femag.design_file import design_document
 from femag.export.document import Entry
 from femag.export.result_file import BoundsEntry
 from femag.field.bounds import Bounds
-from femag.winding_matrix import WindingMatrix, WindingPair
 
 Matrix = list[list[BoundsEntry | None]]
 """Row by row, in the order of the windings; null on the diagonal."""

@@ -6,6 +6,7 @@ from functools import cache
 
 from femag.design import FAR_RADIUS
 from femag.field.adapt import adapted_solution
+from femag.field.bounds import FieldSolution
 from femag.field.problem import FieldProblem
 from femag.geometry import (
     Core,
@@ -35,23 +36,37 @@ def core_curve(core: Core, material: MagnetisationCurve) -> MagnetisationCurve:
     return ScaledCurve(material, factor)
 
 
-@cache
 def solved_core_factor(turned: TurnedCore, window_height: float) -> float:
     """Return the sum of length over area in 1/m of an ungapped core of revolution in the field.
 
     It is mu/L of one turn that fills the window (height in m), at a permeability so high that
     the flux stays in the core.
     """
+    return factor_of_coenergy(ungapped_solution(turned, window_height).coenergy.value)
+
+
+def factor_of_coenergy(coenergy: float) -> float:
+    """Return the core factor in 1/m that a co-energy in J of an ungapped problem means."""
+    return MU_0 * GUIDING / (2.0 * coenergy)
+
+
+@cache
+def ungapped_solution(turned: TurnedCore, window_height: float) -> FieldSolution:
+    """Return the fields of an ungapped core of revolution at 1 A; its window height in m."""
+    problem = ungapped_problem(turned, window_height)
+    return adapted_solution(problem, 1.0, ACCURACY)[0]
+
+
+def ungapped_problem(turned: TurnedCore, window_height: float) -> FieldProblem:
+    """Return the problem of an ungapped core of revolution with one turn in all of the window."""
     regions = turned_regions(turned, window_height / 2)
     window = next(region for region in regions if region.name == "window")
     coil = Region("winding", "winding", window.polygon, parent="window")
     extent = max(turned.ring_outer_radius, window_height / 2 + turned.largest_thickness)
     section = upper_half(open_section((*regions, coil), FAR_RADIUS * extent))
     iron = LinearCurve(GUIDING)
-    problem = FieldProblem(
+    return FieldProblem(
         section,
         {region.name: iron for region in section.regions if region.role == "core"},
         {"winding": 1.0 / polygon_area(window.polygon)},
     )
-    solution, _ = adapted_solution(problem, 1.0, ACCURACY)
-    return MU_0 * GUIDING / (2.0 * solution.coenergy.value)

@@ -28,6 +28,7 @@ from femag.geometry.effective import (
     effective_parameters,
 )
 from femag.geometry.families import FAMILIES, core_of_family
+from femag.geometry.gap_change import changed_gaps, with_gap_length
 from femag.geometry.gap_faces import Step
 from femag.geometry.gaps import Gap, gap_length
 from femag.geometry.layers import (
@@ -108,6 +109,7 @@ __all__ = [
     "catalogue",
     "catalogue_core",
     "catalogue_files",
+    "changed_gaps",
     "coil_regions",
     "core_cuts",
     "core_factor",
@@ -137,4 +139,5 @@ __all__ = [
     "turned_regions",
     "upper_half",
     "winding_room",
+    "with_gap_length",
 ]

@@ -5,7 +5,10 @@ from femag.materials.curves import (
     FroehlichCurve,
     LinearCurve,
     MagnetisationCurve,
+    ResaturatedCurve,
     ScaledCurve,
+    with_permeability,
+    with_saturation,
 )
 from femag.materials.diagnosis import curve_through
 from femag.materials.library import library_material, material, material_library
@@ -21,6 +24,7 @@ __all__ = [
     "LinearCurve",
     "MagnetisationCurve",
     "Material",
+    "ResaturatedCurve",
     "ScaledCurve",
     "Steinmetz",
     "TabulatedCurve",
@@ -33,4 +37,6 @@ __all__ = [
     "material_library",
     "read_material",
     "steinmetz_through",
+    "with_permeability",
+    "with_saturation",
 ]

@@ -7,7 +7,7 @@ magnitudes (arrays of any shape, SI). The two energy densities are Legendre conj
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Protocol
 
 import numpy as np
@@ -191,6 +191,67 @@ class ScaledCurve:
 
 
 @dataclass(frozen=True)
+class ResaturatedCurve:
+    """B(H) = s B_of(H/s): the same initial permeability, the polarisation saturating at s times it.
+
+    Parameters
+    ----------
+    of : MagnetisationCurve
+        The material.
+    share : float
+        s, above 0.
+    """
+
+    of: MagnetisationCurve
+    share: float
+
+    def __post_init__(self) -> None:
+        accepted = "a number above 0"
+        if not 0.0 < number(self.share, "share", accepted) < np.inf:
+            raise InputError("out of range", key="share", value=self.share, accepted=accepted)
+
+    @property
+    def is_linear(self) -> bool:
+        """Whether B is proportional to H."""
+        return self.of.is_linear
+
+    @property
+    def initial_permeability(self) -> float:
+        """Relative permeability at H = 0."""
+        return self.of.initial_permeability
+
+    @property
+    def label(self) -> str:
+        """One line for tables and figures."""
+        return f"{self.of.label}, saturating at {self.share:.4g} of that"
+
+    @property
+    def loss(self) -> Steinmetz | None:
+        """Parameters of the core loss, those of the material."""
+        return self.of.loss
+
+    def flux_density(self, field_strength: Array) -> Array:
+        """B in T for H in A/m."""
+        return self.share * self.of.flux_density(field_strength / self.share)
+
+    def field_strength(self, flux_density: Array) -> Array:
+        """H in A/m for B in T."""
+        return self.share * self.of.field_strength(flux_density / self.share)
+
+    def differential_permeability(self, field_strength: Array) -> Array:
+        """dB/dH in H/m at H in A/m."""
+        return self.of.differential_permeability(field_strength / self.share)
+
+    def coenergy_density(self, field_strength: Array) -> Array:
+        """Integral of B dH from 0 to H, J/m3."""
+        return self.share**2 * self.of.coenergy_density(field_strength / self.share)
+
+    def energy_density(self, flux_density: Array) -> Array:
+        """Integral of H dB from 0 to B, J/m3."""
+        return self.share**2 * self.of.energy_density(flux_density / self.share)
+
+
+@dataclass(frozen=True)
 class FroehlichCurve:
     r"""Saturating curve of Froehlich-Kennelly type with an exponent for the knee.
 
@@ -303,6 +364,38 @@ class FroehlichCurve:
         """Integral of H dB from 0 to B, J/m3."""
         h = self.field_strength(flux_density)
         return flux_density * h - self.coenergy_density(h)
+
+
+def with_permeability(curve: MagnetisationCurve, factor: float) -> MagnetisationCurve:
+    """Return a curve with its initial permeability times a factor; its saturation stays.
+
+    Linear and Froehlich curves by their permeability, any other as B(H) = curve(factor H).
+
+    Raises
+    ------
+    InputError
+        If the permeability leaves its range.
+    """
+    match curve:
+        case LinearCurve() | FroehlichCurve():
+            return replace(curve, permeability=curve.permeability * factor)
+        case ScaledCurve(of, before):
+            return ScaledCurve(of, before * factor)
+        case _:
+            return ScaledCurve(curve, factor)
+
+
+def with_saturation(curve: MagnetisationCurve, factor: float) -> MagnetisationCurve:
+    """Return a curve with its saturation times a factor; its initial permeability stays."""
+    match curve:
+        case LinearCurve():
+            return curve
+        case FroehlichCurve():
+            return replace(curve, saturation=curve.saturation * factor)
+        case ResaturatedCurve(of, before):
+            return ResaturatedCurve(of, before * factor)
+        case _:
+            return ResaturatedCurve(curve, factor)
 
 
 def _magnetisation(t: Array, n: float) -> Array:

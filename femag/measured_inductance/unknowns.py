@@ -10,7 +10,7 @@ import numpy as np
 from femag.design import Design
 from femag.errors import InputError
 from femag.geometry import Gap
-from femag.materials import FroehlichCurve, LinearCurve, MagnetisationCurve, ScaledCurve
+from femag.materials import with_permeability
 
 LARGEST_FACTOR = {"gap": 20.0, "permeability": 10.0}
 """Largest factor on each unknown; the smallest is its inverse."""
@@ -53,30 +53,11 @@ def altered(design: Design, name: str, factor: float) -> Design:
         If the result is no design: the gap does not fit, or the permeability is out of range.
     """
     if name == "permeability":
-        return replace(design, material=scaled_material(design.material, factor))
+        return replace(design, material=with_permeability(design.material, factor))
     gaps = list(design.gaps)
     place = fitted_gap_index(design)
     gaps[place] = replace(gaps[place], length=gaps[place].length * factor)
     return replace(design, gaps=tuple(gaps))
-
-
-def scaled_material(curve: MagnetisationCurve, factor: float) -> MagnetisationCurve:
-    """Return a curve with its initial permeability times a factor; its saturation stays.
-
-    Linear and Froehlich curves by their permeability, any other as B(H) = curve(factor H).
-
-    Raises
-    ------
-    InputError
-        If the permeability leaves its range.
-    """
-    match curve:
-        case LinearCurve() | FroehlichCurve():
-            return replace(curve, permeability=curve.permeability * factor)
-        case ScaledCurve(of, before):
-            return ScaledCurve(of, before * factor)
-        case _:
-            return ScaledCurve(curve, factor)
 
 
 def fitted_gap_index(design: Design) -> int:

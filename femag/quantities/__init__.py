@@ -7,6 +7,7 @@ from femag.quantities.core_loss import CoreLoss, LossShare, PartLoss, core_loss
 from femag.quantities.core_volume import VolumeShare, core_share_above, volume_shares
 from femag.quantities.field_map import FieldMap, field_map, typical_peak
 from femag.quantities.field_points import PointFields, point_fields
+from femag.quantities.force import Force, Pull, force_of
 from femag.quantities.fringing import gap_factor, plain_gap_reluctance
 from femag.quantities.inductance import incremental_inductance_of_sides
 from femag.quantities.loss_budget import LossBudget
@@ -22,11 +23,13 @@ __all__ = [
     "CopperClearance",
     "CoreLoss",
     "FieldMap",
+    "Force",
     "LayerLoss",
     "LossBudget",
     "LossShare",
     "PartLoss",
     "PointFields",
+    "Pull",
     "RippleField",
     "SectionMean",
     "VolumeShare",
@@ -38,6 +41,7 @@ __all__ = [
     "core_share_above",
     "field_map",
     "flux_through_discs",
+    "force_of",
     "gap_factor",
     "gap_openings",
     "incremental_inductance_of_sides",

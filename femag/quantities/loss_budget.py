@@ -14,9 +14,9 @@ class LossBudget:
     core : float or None
         Of the core under the ripple.
     copper_dc : float or None
-        Mean current squared times the resistance of all driven windings.
+        Of the mean current in all windings.
     copper_ripple : float or None
-        Of the ripple in the copper, its field across the strands included.
+        Of the ripple in all windings: its own current and its field across the strands.
     """
 
     core: float | None

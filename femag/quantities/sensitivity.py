@@ -74,13 +74,13 @@ def coenergy_slope(
     apart : float
         Distance of the two parameters.
     """
-    low, high = (np.array(_energies(solution, problem)) for problem in (less, more))
+    low, high = (np.array(energies_near(solution, problem)) for problem in (less, more))
     flux, potential = (high - low) / apart
     return float(flux), float(potential)
 
 
-def _energies(solution: FieldSolution, problem: FieldProblem) -> tuple[float, float]:
-    """Return both sides' energies in J for the unknowns of a solution in a changed problem."""
+def energies_near(solution: FieldSolution, problem: FieldProblem) -> tuple[float, float]:
+    """Return both sides' co-energies in J for the unknowns of a solution in a changed problem."""
     old = solution.sides
     mesh = deformed_mesh(old.mesh, problem.section)
     sides = both_sides(problem, mesh, old.discretisation.order, numbered_as=old)

@@ -18,6 +18,7 @@ from femag.sheet import losses, tables
 from femag.sheet.field_data import as_script, field_data
 from femag.sheet.figures import review_figures
 from femag.sheet.texts import shown_together
+from femag.tolerance_answer import CUSTOMARY_NOTE
 
 FULL_BAR = 0.25
 """Error of a hand formula that fills its bar."""
@@ -85,6 +86,7 @@ def _texts(review: Review) -> dict[str, str]:
         "caveat": " ".join(line.plain for line in hand_caveat(result)),
         "clearance": tables.clearance_text(result),
         "cautions": cautions(result.stored_energy, result.current),
+        "customary": CUSTOMARY_NOTE,
         "design": design_toml(review.design),
     }
 

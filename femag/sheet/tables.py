@@ -8,11 +8,20 @@ from femag.answer import described_gap, layers_text
 from femag.current_curve import CurvePoint, InductanceCurve
 from femag.curve_answer import relative_half_width
 from femag.geometry import Block, Conductor, Foil, LitzWire, RoundWire
-from femag.quantities import WoundCopper, copper_clearance
-from femag.requirement_answer import interval_text, limit_text, margin_text, reason, value_text
+from femag.quantities import Pull, WoundCopper, copper_clearance
+from femag.requirement_answer import (
+    interval_text,
+    limit_text,
+    margin_text,
+    reason,
+    spread_text,
+    value_text,
+)
 from femag.result import Result
 from femag.review import MeshStep, Review
 from femag.sheet.texts import shown, shown_together, with_micro
+from femag.tolerance_answer import half_range_text
+from femag.tolerance_budget import ToleranceBudget
 
 Row = tuple[str, ...]
 
@@ -40,16 +49,17 @@ class Table:
 
 
 def requirement_rows(review: Review) -> tuple[Row, ...]:
-    """Return value, interval, limit, margin, verdict and basis of every requirement."""
+    """Return value, interval, limit, spread, margin, verdict and basis of every requirement."""
     return tuple(
         (
             check.words,
             with_micro(value_text(check)).replace(" C", " \N{DEGREE SIGN}C"),
             interval_text(check) or "-",
             with_micro(limit_text(check)).replace(" C", " \N{DEGREE SIGN}C"),
+            spread_text(check),
             margin_text(check),
             check.verdict,
-            reason(check) if check.verdict == "not shown" else check.known.basis,
+            reason(check) or check.known.basis,
         )
         for check in review.checks
     )
@@ -247,6 +257,33 @@ def mesh_table(meshes: tuple[MeshStep, ...]) -> Table:
     names = ("unknowns", "lower bound", "middle", "upper bound", "half width")
     caption = f"The bounds on a row of ever finer meshes, {texts[0].split()[1]}"
     return Table(caption, names, rows, frozenset())
+
+
+def tolerance_table(budget: ToleranceBudget) -> Table:
+    """Return what every part tolerance does to the inductance, and all of them together."""
+    whole = budget.inductance
+    rows = [
+        (entry.name, half_range_text(entry.name, entry.half_range), f"{entry.change / whole:+.2%}")
+        for entry in budget.contributions
+    ]
+    rows.append(("worst case", "", f"\N{PLUS-MINUS SIGN}{budget.worst_case / whole:.2%}"))
+    rows.append(("root sum square", "", f"\N{PLUS-MINUS SIGN}{budget.root_sum_square / whole:.2%}"))
+    names = ("tolerance", "half range", "inductance")
+    return Table("What part tolerances do to the inductance, to first order", names, tuple(rows))
+
+
+def force_table(result: Result) -> Table:
+    """Return the pull of the halves and of the faces of every gap."""
+    force = result.force
+    rows = [_pull_row(f"halves, on the {force.halves.name}", force.halves)]
+    rows += [_pull_row(f"faces, {pull.name}", pull) for pull in force.gaps]
+    names = ("pull along the axis", "force", "by stress", "by virtual work", "pressure")
+    return Table(f"Forces at {result.current:g} A", names, tuple(rows))
+
+
+def _pull_row(name: str, pull: Pull) -> Row:
+    texts = shown_together((pull.force, pull.force, pull.by_stress, pull.by_work), "N")
+    return (name, *texts[1:], shown(pull.pressure, "Pa", 3))
 
 
 def provenance_table(review: Review) -> Table:

@@ -157,7 +157,7 @@ def kept(result: Result, names: Iterable[str]) -> dict[str, Value]:
 
 
 def unit_of_column(column: str) -> str:
-    """Return the SI unit of a kept column, "" for none."""
+    """Return the SI unit of a kept column, "" for none or one that is not known."""
     name, part, *_ = (*column.split(".", 2), "")
-    parts = QUANTITIES[name]
-    return parts[part if part in parts else ""].unit
+    found = QUANTITIES.get(name, {}).get(part)
+    return found.unit if found else ""

@@ -147,7 +147,7 @@ def run_cases(
     with _interrupts() as stop:
         _tell(run, stop)
         try:
-            while _take_off(run, stop) or run.flights:
+            while _is_at_work(run, stop):
                 landed, _ = wait(run.flights, ATTENTION, FIRST_COMPLETED)
                 for future in landed:
                     _land(run, future)
@@ -159,9 +159,25 @@ def run_cases(
     return not stop.asked
 
 
-def _take_off(run: _Run, stop: _Stop) -> bool:
-    """Give open cases to idle workers; return whether any was given."""
-    before = len(run.flights)
+def _is_at_work(run: _Run, stop: _Stop) -> bool:
+    """Give open cases to idle workers; return whether there is something to wait for.
+
+    That may be another run on the same store, whose cases are taken over if it dies.
+    """
+    _take_off(run, stop)
+    if run.flights or stop.asked:
+        return bool(run.flights)
+    run.store.release_the_dead()
+    counts = run.store.counts()
+    if counts["open"]:
+        return _is_at_work(run, stop)
+    if counts["taken"]:
+        time.sleep(ATTENTION)
+    return counts["taken"] > 0
+
+
+def _take_off(run: _Run, stop: _Stop) -> None:
+    """Give open cases to idle workers."""
     while run.idle and not stop.asked:
         number = run.store.take()
         if number is None:
@@ -177,7 +193,6 @@ def _take_off(run: _Run, stop: _Stop) -> bool:
             continue
         future = worker.submit(solved_case, document, file, task.keep)
         run.flights[future] = _Flight(number, worker)
-    return len(run.flights) > before
 
 
 def _sent(document: dict[str, Any], task: Task) -> tuple[dict[str, Any], str | None]:

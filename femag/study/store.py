@@ -217,13 +217,16 @@ class Store:
     def take(self) -> int | None:
         """Return the number of the next open case, now taken by this run; None if there is none."""
         with self._transaction() as connection:
-            found = connection.execute(
-                "UPDATE cases SET state = 'taken', run = ?, attempts = attempts + 1 WHERE number = "
-                "(SELECT number FROM cases WHERE state = 'open' ORDER BY number LIMIT 1) "
-                "RETURNING number",
-                (self.run,),
-            ).fetchall()
-        return found[0][0] if found else None
+            found: tuple[int] | None = connection.execute(
+                "SELECT number FROM cases WHERE state = 'open' ORDER BY number LIMIT 1"
+            ).fetchone()
+            if found is not None:
+                connection.execute(
+                    "UPDATE cases SET state = 'taken', run = ?, attempts = attempts + 1 "
+                    "WHERE number = ?",
+                    (self.run, *found),
+                )
+        return None if found is None else found[0]
 
     def finish(self, number: int, answer: Answer) -> None:
         """Write the answer of a case that this run has taken.

@@ -139,10 +139,11 @@ class Study:
         InputError
             If the plan or the file cannot be used, or it holds another study.
         """
+        if not Path(path).exists():
+            self.plan.check()
         store = Store(path, writing=True)
         try:
             if store.is_new:
-                self.plan.check()
                 versions = _versions()
                 store.begin(self._about(versions), (
                     (self.plan.key(case, versions), settings_text(case.settings))

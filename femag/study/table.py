@@ -217,7 +217,7 @@ def _kept_columns(rows: Sequence[Row]) -> list[str]:
 
     def place(column: str) -> tuple[int, int]:
         name, part, *_ = (*column.split(".", 2), "")
-        return order[name], parts[name].get(part, 0)
+        return order.get(name, len(order)), parts.get(name, {}).get(part, 0)
 
     return sorted(found, key=place)
 

@@ -57,7 +57,8 @@ class WorkerProcess:
         assert self._executor is not None
         try:
             future = self._executor.submit(work, *arguments)
-        except BrokenProcessPool:  # it died with nothing to do
+        except BrokenProcessPool as problem:  # it died with nothing to do
+            why_it_died(self, problem)
             self.end()
             return self.submit(work, *arguments)
         self._since = time.monotonic()

@@ -3,7 +3,7 @@ import numpy as np
 import pytest
 
 import femag as fm
-from femag.materials import ScaledCurve, TabulatedCurve
+from femag.materials import ResaturatedCurve, ScaledCurve, TabulatedCurve
 from femag.units import MU_0
 
 CURVES = [
@@ -17,6 +17,8 @@ CURVES = [
     ),
     *(ScaledCurve(fm.FroehlichCurve(2000.0, 0.45, 2.0), factor) for factor in (0.4, 1.0, 2.5)),
     ScaledCurve(fm.LinearCurve(300.0), 1.2),
+    ResaturatedCurve(fm.FroehlichCurve(2000.0, 0.45, 2.0), 0.7),
+    ResaturatedCurve(fm.material("mnzn-power-60C"), 1.3),
     *(curve for material in fm.material_library() for _, curve in material.curves),
     fm.material("mnzn-power-60C"),
     ScaledCurve(fm.material("silicon-steel"), 1.7),

@@ -168,10 +168,15 @@ def test_without_ripple_or_parameters_there_is_no_loss(linear: fm.Design) -> Non
 def test_the_budget_adds_what_is_known(solved: fm.Result) -> None:
     budget = solved.loss_budget
     assert budget is not None
-    resistance = solved.copper[0].resistance
+    resistance, (copper,) = solved.copper[0].resistance, solved.copper_loss
     assert budget.copper_dc == pytest.approx((2.0 - 0.4) ** 2 * resistance)
-    assert budget.total == pytest.approx(loss_of(solved).total + 1.6**2 * resistance)
-    assert "copper, ripple" in budget.missing
+    assert copper.total is not None
+    assert budget.total == pytest.approx(loss_of(solved).total + copper.total)
+    assert budget.missing == ()
+    blocks = replace(solved.design, windings=(fm.Winding(50),), material=fm.LinearCurve(2000.0))
+    unknown = fm.solve(blocks, tolerance=1e-2).loss_budget
+    assert unknown is not None
+    assert (unknown.total, len(unknown.missing)) == (0.0, 3)
 
 
 def test_a_design_file_and_a_result_file_carry_the_loss(

@@ -10,10 +10,7 @@ import femag as fm
 from femag.field.adapt import adapted_solution
 from femag.field.bounds import FieldSolution
 from femag.field.design_problem import field_problem
-from femag.field.problem import FieldProblem
-from femag.quantities.sensitivity import coenergy_derivative, coenergy_slope, deformed_mesh
-from femag.units import MU_0
-from validation.round_post_fringing import run as round_post_fringing
+from femag.quantities.sensitivity import coenergy_derivative, deformed_mesh
 
 
 def solved(design: fm.Design, tolerance: float) -> FieldSolution:
@@ -123,30 +120,3 @@ def test_a_region_that_comes_is_refused(pot_26_16: fm.Design) -> None:
     solution = solved(pot_26_16, 5e-3)
     with pytest.raises(fm.InputError, match="adds or takes away"):
         coenergy_derivative(solution, pot_26_16, lambda d, _: replace(d, gaps=()), 1e-6)
-
-
-FORCES = {
-    (0.4, 0.02): 1.01280414, (0.4, 0.05): 1.03226131, (0.4, 0.1): 1.06526792,
-    (0.4, 0.2): 1.13285645, (0.4, 0.5): 1.33658676, (0.55, 0.02): 1.01280427,
-    (0.55, 0.05): 1.03226323, (0.55, 0.1): 1.06528325, (0.55, 0.2): 1.13297662,
-    (0.55, 0.5): 1.33816511,
-}  # fmt: skip
-"""Force between two round posts of ideal iron over (mu0/2) pi a^2 (NI/g)^2, by a/b and g/a, h = a:
-computed for this project by mode matching between two bounds 2e-9 apart."""
-
-
-@pytest.mark.parametrize(("shape", "force"), FORCES.items())
-def test_virtual_work_gives_the_force_between_two_posts(
-    shape: tuple[float, float], force: float
-) -> None:
-    a = round_post_fringing.POST
-    b, gap = a / shape[0], shape[1] * a
-
-    def posts(length: float) -> FieldProblem:
-        return round_post_fringing.two_posts(b, length, a, (a, b, a))
-
-    solution, _ = adapted_solution(posts(gap), 1.0, 2e-4)
-    step = 1e-5 * gap
-    found = coenergy_slope(solution, posts(gap - step), posts(gap + step), 2 * step)
-    unit = MU_0 / 2 * np.pi * a**2 / gap**2
-    assert -np.mean(found) / unit == pytest.approx(force, rel=1e-3)

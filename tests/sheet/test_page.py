@@ -26,8 +26,8 @@ DEMO = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
 COARSE = DEMO.replace("tolerance = 1e-3", "tolerance = 1e-2")
 SECTIONS = [
     "Verdict", "Part", "Field", "Field along lines", "Inductance against current",
-    "Hand formulas", "Copper near the gap", "Losses", "Material", "How the numbers were found",
-    "Assumptions and cautions", "Design file",
+    "Hand formulas", "Copper near the gap", "Losses", "Force", "Part tolerances", "Material",
+    "How the numbers were found", "Assumptions and cautions", "Design file",
 ]  # fmt: skip
 
 
@@ -156,6 +156,39 @@ def test_measured_points_stand_beside_the_curve() -> None:
     page = Page(review_sheet(design_review(design_from_toml(COARSE), [2.0, 6.0], points)))
     assert "Measured apparent inductance, bench <1>.csv" in page.text
     assert "solved over measured" in page.text
+
+
+@pytest.mark.slow
+def test_losses_forces_and_tolerances_have_their_tables(pot_26_16: fm.Design) -> None:
+    wire = fm.RoundWire(0.4e-3, 0.03e-3)
+    former = fm.Former(wall=0.6e-3, flange=0.6e-3)
+    design = replace(
+        pot_26_16,
+        windings=fm.Winding(40, conductor=wire, former=former, temperature=100.0),
+        material=fm.material("mnzn-power-100C"),
+        ripple=fm.Ripple(0.5, 100e3),
+        part_tolerances=fm.PartTolerances(gap=0.01e-3),
+        tolerance=1e-2,
+    )
+    reviewed = design_review(design, [0.5, 1.5])
+    result = reviewed.result
+    assert result.tolerance_budget == reviewed.tolerances
+    page = Page(review_sheet(reviewed))
+    for caption in ("Loss in the copper", "Loss in the core", "Losses added up", "Forces at 1 A"):
+        assert caption in page.text
+    assert result.loss_budget is not None
+    for value in (result.loss_budget.total, result.force.halves.by_work):
+        assert any(text in page.text for text in (f"{1e3 * value:.1f} m", f"{value:.3f} "))
+    assert "worst case" in page.text
+    assert len([name for name in page.identities if name.endswith("-loss")]) == 3
+
+
+@pytest.mark.slow
+def test_a_magnet_leaves_the_part_tolerances_out(pot_26_16: fm.Design) -> None:
+    gap = fm.Gap(0.5e-3, magnet=fm.Magnet(0.3))
+    reviewed = design_review(replace(pot_26_16, gaps=gap, tolerance=2e-2), [0.5, 1.5])
+    assert reviewed.tolerances is None
+    assert "magnet in the gap" in Page(review_sheet(reviewed)).text
 
 
 MATERIALS: list[MagnetisationCurve] = [

@@ -1,5 +1,6 @@
 import os
 import signal
+import sqlite3
 import time
 from collections.abc import Sequence
 from concurrent.futures import Executor, Future, ThreadPoolExecutor
@@ -120,6 +121,36 @@ def test_the_first_interrupt_finishes_what_is_in_flight(coarse: fm.Design, tmp_p
     with Store(tmp_path / "runs.sqlite") as store:
         assert store.counts() == {"open": 0, "taken": 0, "done": 6, "failed": 0}
     assert whole.columns == study.run(executor=AtOnce()).columns
+
+
+def test_two_runs_on_one_store_share_the_work_and_both_return_all_of_it(
+    coarse: fm.Design, tmp_path: Path
+) -> None:
+    study = fm.Study(coarse, {"gap.length": [(5 + n) * 1e-4 for n in range(6)]})
+    path = tmp_path / "runs.sqlite"
+    study.opened(path).close()
+    with ThreadPoolExecutor(2) as both:
+        runs = [both.submit(study.run, path, executor=AtOnce()) for _ in range(2)]
+        one, other = (run.result().columns for run in runs)
+    assert one == other == study.run(executor=AtOnce()).columns
+    with sqlite3.connect(path) as connection:
+        attempts = connection.execute("SELECT DISTINCT attempts FROM cases").fetchall()
+    connection.close()
+    assert attempts == [(1,)]
+
+
+def test_a_run_takes_over_from_one_that_dies(coarse: fm.Design, tmp_path: Path) -> None:
+    study = fm.Study(coarse, {"gap.length": [0.5e-3, 0.6e-3]})
+    other = study.opened(tmp_path / "runs.sqlite")
+    other.start_run()
+    other.take()
+
+    def die(state: Progress) -> None:
+        if state.here == 1 and state.seconds > 0.5:
+            other.close()
+
+    table = study.run(tmp_path / "runs.sqlite", executor=AtOnce(), progress=die)
+    assert table.columns["state"] == ["done", "done"]
 
 
 @pytest.mark.slow

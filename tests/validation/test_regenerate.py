@@ -9,6 +9,7 @@ import pytest
 import validation.air_coils.regenerate as air_coils
 import validation.core_loss.regenerate as core_loss
 import validation.coupled_coils.regenerate as coupled_coils
+import validation.gap_force.regenerate as gap_force
 import validation.nonlinear_pot.regenerate as nonlinear_pot
 import validation.round_post_fringing.regenerate as fringing
 import validation.sphere.regenerate as sphere
@@ -54,6 +55,14 @@ def test_mode_matching_gives_the_stored_fringing_factors(a_over_b: float, g_over
     factor, root = fringing.fringing_factors(1.0 / a_over_b, g_over_a, 1.0)
     assert factor == pytest.approx(float(line["factor"]), abs=2e-9)
     assert root == pytest.approx(float(line["root_factor"]), abs=1.5e-8)
+
+
+def test_pulls_are_differences_of_mode_matching_and_of_the_bessel_integral() -> None:
+    line = next(line for line in table_of("gap_force") if line["g_over_a"] == "0.5")
+    pull = gap_force.post_pull(1.0 / float(line["a_over_b"]), float(line["g_over_a"]))
+    assert pull == pytest.approx(float(line["value"]), abs=1.5e-8)
+    (coils,) = [line for line in table_of("gap_force") if line["quantity"] == "coils"]
+    assert gap_force.coil_pull() == pytest.approx(float(coils["value"]), rel=2e-12)
 
 
 def test_mode_matching_converges_from_above() -> None:

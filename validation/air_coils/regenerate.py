@@ -62,13 +62,13 @@ PAIR = (Coil(10e-3, 20e-3, 10e-3), Coil(10e-3, 15e-3, 10e-3, 20e-3))
 
 def mutual_inductance(one: Coil, other: Coil) -> float:
     """Return the inductance between two coils of one turn in H; the self-inductance if equal."""
-    k, weight = _wave_numbers(max(one.outer, other.outer))
-    kernel = _radial_mean(k, one) * _radial_mean(k, other) * _axial_mean(k, one, other)
+    k, weight = wave_numbers(max(one.outer, other.outer))
+    kernel = radial_mean(k, one) * radial_mean(k, other) * axial_mean(k, one, other)
     tail = _mean_tail(one) if one == other else 0.0
     return float(MU_0 * math.pi * (np.sum(weight * kernel) + tail))
 
 
-def _wave_numbers(radius: float) -> tuple[Array, Array]:
+def wave_numbers(radius: float) -> tuple[Array, Array]:
     """Return nodes and weights of the composite Gauss rule."""
     points, weights = np.polynomial.legendre.leggauss(12)
     step = LARGEST / radius / INTERVALS
@@ -76,7 +76,9 @@ def _wave_numbers(radius: float) -> tuple[Array, Array]:
     return nodes.ravel(), np.tile(weights * step / 2.0, INTERVALS)
 
 
-def _radial_mean(k: Array, coil: Coil) -> Array:
+def radial_mean(k: Array, coil: Coil) -> Array:
+    """Return the mean of r J_1(kr) over a coil's radii, m."""
+
     def integral(r: float) -> Array:
         x = k * r
         crossed = j1(x) * struve(0, x) - j0(x) * struve(1, x)
@@ -95,7 +97,7 @@ def _mean_tail(coil: Coil) -> float:
     return factor / (3.0 * largest**3)
 
 
-def _axial_mean(k: Array, one: Coil, other: Coil) -> Array:
+def axial_mean(k: Array, one: Coil, other: Coil) -> Array:
     """Return the mean of exp(-k |z - z'|) over both heights."""
     distance = abs(one.middle - other.middle)
     if distance == 0.0 and one.height == other.height:

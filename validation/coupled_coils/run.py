@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from femag.coupled_windings import winding_matrix
 from femag.design import Design
 from femag.geometry import Block, PotCore, Winding
 from femag.materials import LinearCurve
-from femag.winding_matrix import winding_matrix
 from validation.coupled_coils.regenerate import RADII
 from validation.rows import Row, bounded_row, plain_row, printed, table_of
 from validation.table import print_rows

@@ -9,13 +9,13 @@ import pytest
 
 import femag as fm
 from femag import cli
+from femag.coupled_windings import WindingMatrix, winding_matrix
 from femag.design import turns_per_area
 from femag.field.adapt import adapted_solution, inductance_bounds
 from femag.field.bounds import Bounds, both_sides
 from femag.field.design_problem import field_problem
 from femag.field.response import refined_response, response
 from femag.mesh import coarse_mesh
-from femag.winding_matrix import WindingMatrix, winding_matrix
 
 INNER = fm.Winding(50, fm.Block(6.4e-3, 8e-3, -4.8e-3, 4.8e-3), "inner")
 OUTER = fm.Winding(10, fm.Block(8.4e-3, 10e-3, -4.8e-3, 4.8e-3), "outer")

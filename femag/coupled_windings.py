@@ -91,8 +91,8 @@ class WindingMatrix:
     pairs : tuple of WindingPair
         Every two windings.
     reciprocity : tuple of float
-        Largest |M12 - M21| / sqrt(L1 L2) of the flux linkages of the flux side and of the potential
-        side: rounding.
+        Largest distance of M12 from M21 over sqrt(L1 L2), of the flux linkages of the flux side and
+        of the potential side: rounding.
     unknowns, refinements : int
         Unknowns of both sides on the last mesh; number of refinements.
     seconds : float

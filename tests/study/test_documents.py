@@ -1,6 +1,8 @@
-"""The worked study of the documents: its files, its scale invariance, its table of errors."""
+"""What the documents say of studies: their examples, and the worked one with its errors."""
 
 import re
+import subprocess
+import sys
 from dataclasses import replace
 from pathlib import Path
 
@@ -29,6 +31,46 @@ def test_only_ratios_matter_for_a_linear_core() -> None:
     one, other = fm.solve(design), fm.solve(larger)
     assert other.fringing_factor == pytest.approx(one.fringing_factor, rel=1e-9)
     assert other.inductance.value == pytest.approx(2 * one.inductance.value, rel=1e-9)
+
+
+def blocks(kind: str) -> list[str]:
+    text = (ROOT / "docs/studies.md").read_text(encoding="utf-8")
+    return re.findall(rf"```{kind}\n(.*?)```", text, re.DOTALL)
+
+
+@pytest.fixture
+def folder(tmp_path: Path) -> Path:
+    base = STUDY.with_name("post.toml").read_text(encoding="utf-8")
+    (tmp_path / "design.toml").write_text(base + "\n[solve]\ntolerance = 0.1\n")
+    return tmp_path
+
+
+@pytest.mark.parametrize(("place", "cases"), [(0, 3 * 20 * 2), (1, 256)])
+def test_study_files_in_the_document_are_studies(folder: Path, place: int, cases: int) -> None:
+    (folder / "study.toml").write_text(blocks("toml")[place])
+    assert len(fm.read_study(folder / "study.toml")) == cases
+
+
+@pytest.mark.slow
+def test_python_in_the_document_runs(folder: Path) -> None:
+    pytest.importorskip("pandas")
+    pytest.importorskip("xarray")
+    (folder / "script.py").write_text(blocks("python")[0])
+    command = [sys.executable, "script.py"]
+    done = subprocess.run(command, cwd=folder, capture_output=True, text=True, check=True)
+    assert "inductance.value" in done.stdout
+    assert "gap.length" in done.stdout
+
+
+@pytest.mark.slow
+def test_a_script_without_a_guard_is_told_so(folder: Path) -> None:
+    (folder / "script.py").write_text(
+        'import femag as fm\nfm.Study("design.toml", {"gap.length": [1e-3, 2e-3]}).run(workers=1)\n'
+    )
+    command = [sys.executable, "script.py"]
+    done = subprocess.run(command, cwd=folder, capture_output=True, text=True, check=False)
+    assert done.returncode != 0
+    assert "worker processes do not start; a script that runs a study needs" in done.stderr
 
 
 def documented() -> list[dict[str, list[tuple[float, float]]]]:

@@ -1,0 +1,1 @@
+"""Pull between round posts and between coils, and what a gap's length does to the inductance."""
