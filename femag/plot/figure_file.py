@@ -79,7 +79,7 @@ def figure_bytes(draw: Draw, kind: Literal["svg", "png"], panel: tuple[float, fl
     written = BytesIO()
     with rc_context(PAGE_STYLE), warnings.catch_warnings():
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
-        figure = Figure(figsize=panel, layout="constrained")
+        figure = Figure(figsize=panel)  # cut to its content: a layout would take as long again
         draw(figure.add_subplot())
         metadata = {"Date": None, "Creator": None} if kind == "svg" else {"Software": None}
         figure.savefig(

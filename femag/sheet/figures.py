@@ -140,7 +140,7 @@ def _losses(result: Result) -> list[Figure]:
     figures = []
     if any(loss.layers for loss in result.copper_loss):
         figures.append(
-            _figure("layer-loss", untitled(partial(layer_bars, result), grid=True), "svg", HALF,
+            _figure("layer-loss", untitled(partial(layer_bars, result), grid=True), "svg", MAP,
                     "Loss of the copper by layers, from inside.")
         )  # fmt: skip
     if any(loss.crossing_of_turns for loss in result.copper_loss):
