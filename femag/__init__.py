@@ -79,8 +79,12 @@ if TYPE_CHECKING:
     )
     from femag.part_tolerances import PartTolerances
     from femag.quantities import CoreLoss, LossBudget
+    from femag.requirement_checks import RequirementCheck, checked_requirements
+    from femag.requirements import Requirements
     from femag.result import Result, solve
+    from femag.review import Review, design_review
     from femag.ripple import Ripple
+    from femag.sheet import review_sheet
     from femag.study import Sample, Study, StudyTable, read_study, read_table
     from femag.target_gap import gap_for
     from femag.target_turns import turns_for
@@ -130,7 +134,13 @@ _HOME = {
     "LinearCurve": "femag.materials",
     "NumericalError": "femag.errors",
     "PotCore": "femag.geometry",
+    "RequirementCheck": "femag.requirement_checks",
+    "Requirements": "femag.requirements",
     "Result": "femag.result",
+    "Review": "femag.review",
+    "checked_requirements": "femag.requirement_checks",
+    "design_review": "femag.review",
+    "review_sheet": "femag.sheet",
     "Ripple": "femag.ripple",
     "Steinmetz": "femag.materials",
     "steinmetz_through": "femag.materials",
@@ -190,7 +200,10 @@ __all__ = [
     "NumericalError",
     "PartTolerances",
     "PotCore",
+    "RequirementCheck",
+    "Requirements",
     "Result",
+    "Review",
     "Ripple",
     "RoundWire",
     "Sample",
@@ -204,6 +217,8 @@ __all__ = [
     "WindingMatrix",
     "catalogue",
     "catalogue_core",
+    "checked_requirements",
+    "design_review",
     "design_toml",
     "fitted_design",
     "gap_for",
@@ -227,6 +242,7 @@ __all__ = [
     "read_study",
     "read_table",
     "residuals",
+    "review_sheet",
     "sampled_spread",
     "sensitivities",
     "solve",

@@ -12,6 +12,8 @@ from femag.design import Design
 from femag.geometry import Gap
 from femag.loss_answer import described_ripple, loss_lines
 from femag.quantities import Pull, WoundCopper
+from femag.requirement_answer import requirement_lines
+from femag.requirement_checks import checked_requirements
 from femag.result import Result
 from femag.tolerance_answer import budget_lines
 from femag.units import with_common_unit, with_unit
@@ -31,8 +33,11 @@ def print_answer(result: Result, console: Console) -> None:
     lines: list[Text | Table | str] = []
     if design.title:
         lines.append(Text(design.title, style="bold"))
-    lines += [described(design), "", _inductances(result), "", _flux_densities(result)]
-    lines += [Text(_where_it_saturates(result)), Text(_pulls(result)), ""]
+    lines += [described(design), ""]
+    if design.requirements:
+        lines += [*requirement_lines(checked_requirements(result)), ""]
+    lines += [_inductances(result), "", _flux_densities(result)]
+    lines += [Text(where_it_saturates(result)), Text(_pulls(result)), ""]
     if len(design.windings) > 1:
         lines += [Text(OTHER_WINDINGS), ""]
     if result.copper:
@@ -41,7 +46,7 @@ def print_answer(result: Result, console: Console) -> None:
         lines += [_losses(result), *map(Text, loss_notes(result)), ""]
     if result.tolerance_budget is not None:
         lines += [*budget_lines(result.tolerance_budget), ""]
-    lines += [_hand_formulas(result), Text(HAND_NOTE), *_hand_caveat(result), ""]
+    lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]
     lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]
     for line in lines:
@@ -54,7 +59,7 @@ def described(design: Design, currents: str | None = None) -> Text:
     parts = [
         *([core.name] if core.name else []),
         core.description,
-        *([_described_gap(gap) for gap in design.gaps] or ["no gap"]),
+        *([described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
     drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
     if design.ripple is not None and currents is None:
@@ -62,7 +67,8 @@ def described(design: Design, currents: str | None = None) -> Text:
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
-def _described_gap(gap: Gap) -> str:
+def described_gap(gap: Gap) -> str:
+    """Return a gap in words."""
     words = [f"{1e3 * gap.length:g} mm gap in the post"]
     if gap.leg == "all":
         words = [f"{1e3 * gap.length:g} mm spacer in all legs"]
@@ -150,7 +156,8 @@ def _flux_densities(result: Result) -> Table:
     return table
 
 
-def _where_it_saturates(result: Result) -> str:
+def where_it_saturates(result: Result) -> str:
+    """Return the fullest section, and what flux density shares of the core stay below."""
     fullest = max(result.section_means, key=lambda mean: mean.flux_density)
     levels = ", ".join(f"{share.flux_density:.3f}" for share in result.volume_shares)
     return (
@@ -191,7 +198,7 @@ def _copper(result: Result) -> Table:
         table.add_row(
             copper.name,
             f"{copper.turns}",
-            _layers(copper),
+            layers_text(copper),
             f"{copper.fill:.2f}",
             f"{1e3 * copper.mean_turn_length:.1f} mm",
             f"{copper.wire_length:.3g} m",
@@ -207,8 +214,8 @@ def _losses(result: Result) -> Table:
     return table
 
 
-def _layers(copper: WoundCopper) -> str:
-    """Say how many layers there are, of each section from the lowest where they differ."""
+def layers_text(copper: WoundCopper) -> str:
+    """Return how many layers there are, of each section from the lowest where they differ."""
     counts = copper.layers_in_sections
     if len(counts) == 1:
         return f"{copper.layers}"
@@ -230,8 +237,8 @@ def _hand_formulas(result: Result) -> Table:
     return table
 
 
-def _hand_caveat(result: Result) -> list[Text]:
-    """Say where the errors are not the fringing formulas' own, and why none is inside its range."""
+def hand_caveat(result: Result) -> list[Text]:
+    """Return where errors are not the fringing formulas' own, and why none is inside its range."""
     lines = []
     if any(gap.is_shaped for gap in result.design.gaps):
         lines.append(Text("No formula knows shaped faces: all count as outside of their ranges."))
@@ -250,19 +257,22 @@ def _hand_caveat(result: Result) -> list[Text]:
 
 
 def _provenance(result: Result) -> str:
-    if result.design.material.is_linear:
-        rest = "The bounds are rigorous for this straight-sided model."
-    elif result.magnet_coenergy is None:
-        rest = "The bounds hold up to the quadrature of the energy densities."
-    else:
-        rest = (
-            "The co-energies with and without current are bounded up to the quadrature of the "
-            "energy densities; the inductance also rests on the magnet's flux linkage, which "
-            "counts with the distance of two estimates and has no bound."
-        )
     return (
         f"{result.unknowns} unknowns, {result.refinements} refinements, {result.seconds:.2f} s. "
-        f"{rest} {result.design.core.model_note}"
+        f"{what_is_bounded(result)} {result.design.core.model_note}"
+    )
+
+
+def what_is_bounded(result: Result) -> str:
+    """Return what the bounds of a result's inductance are good for."""
+    if result.design.material.is_linear:
+        return "The bounds are rigorous for this straight-sided model."
+    if result.magnet_coenergy is None:
+        return "The bounds hold up to the quadrature of the energy densities."
+    return (
+        "The co-energies with and without current are bounded up to the quadrature of the "
+        "energy densities; the inductance also rests on the magnet's flux linkage, which "
+        "counts with the distance of two estimates and has no bound."
     )
 
 

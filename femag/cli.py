@@ -20,6 +20,7 @@ from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
 from femag.keep_out_command import keep_out_command
 from femag.machine_command import check_command, report_command
+from femag.sheet_command import MISSED, sheet_command
 from femag.study_command import study_command
 from femag.winding_command import windings_command
 
@@ -57,6 +58,10 @@ MeshOption = Annotated[
     Path | None,
     typer.Option("--mesh", metavar="FILE.msh", help="Write the mesh with named regions as MSH."),
 ]
+FiguresOption = Annotated[
+    Path | None,
+    typer.Option("--figures", metavar="DIR", help="Write every figure of the result by itself."),
+]
 
 
 @app.callback(invoke_without_command=True)
@@ -82,10 +87,12 @@ def solve_command(
     out: OutOption = None,
     field: FieldOption = None,
     mesh: MeshOption = None,
-) -> None:
+    figures: FiguresOption = None,
+) -> int:
     """Solve a design file.
 
-    Prints the inductance between bounds, beside the hand calculation.
+    Prints the inductance between bounds, beside the hand calculation. Leaves with 1 when the design
+    misses a requirement.
     """
     from femag.design_file import read_design
 
@@ -95,7 +102,9 @@ def solve_command(
         )
     check_file("--field", field, ".vtu")
     check_file("--mesh", mesh, ".msh")
-    _answer(_with_current(read_design(design), current), json, out, meshed=(field, mesh))
+    check_targets(None, figures, "--figures")
+    asked = _with_current(read_design(design), current)
+    return _answer(asked, json, out, meshed=(field, mesh), figures=figures)
 
 
 @app.command("demo")
@@ -160,6 +169,7 @@ def cores_command(
 app.command("bench")(bench_command)
 app.command("curve")(curve_command)
 app.command("gap")(gap_command)
+app.command("sheet")(sheet_command)
 app.command("windings")(windings_command)
 app.command("check")(check_command)
 app.command("report")(report_command)
@@ -194,8 +204,10 @@ def _answer(
     out: Path | None,
     texts: Mapping[Path, str] | None = None,
     meshed: tuple[Path | None, Path | None] = (None, None),
-) -> None:
-    """Solve, then write files, with `texts` and the field and the mesh among them, then print."""
+    figures: Path | None = None,
+) -> int:
+    """Solve, write files, with `texts` among them, print; return the exit code."""
+    from femag.requirement_checks import all_kept, checked_requirements
     from femag.result import solve
 
     check_targets(json, out)
@@ -203,12 +215,14 @@ def _answer(
         result = solve(design, progress=progress)
     with ExitStack() as stack:
         _write_on_mesh(result, *meshed, stack)
+        _write_figures(result, figures, stack)
         _write(result, json, out, texts or {}, stack)
+    code = 0 if all_kept(checked_requirements(result)) else MISSED
     if json == "-":
         from femag.export.result_file import result_json
 
         typer.echo(result_json(result), nl=False)
-        return
+        return code
     from rich.console import Console
 
     from femag.answer import WIDTH, print_answer
@@ -217,6 +231,7 @@ def _answer(
     if out is not None:
         files = (*FOLDER_FILES, *([COPPER_FILE] if _has_turn_losses(result) else []))
         typer.echo(f"\nWritten to {out}: {', '.join(files)}")
+    return code
 
 
 def _write_on_mesh(result: Result, field: Path | None, mesh: Path | None, stack: ExitStack) -> None:
@@ -229,6 +244,21 @@ def _write_on_mesh(result: Result, field: Path | None, mesh: Path | None, stack:
     for file, write in ((field, write_field), (mesh, write_mesh)):
         if file is not None:
             write(result, stack.enter_context(whole_file(file)))
+
+
+def _write_figures(result: Result, folder: Path | None, stack: ExitStack) -> None:
+    """Write every figure into a folder, if one is given; renamed when the stack is left."""
+    if folder is None:
+        return
+    from femag.export.whole_file import whole_file
+    from femag.plot import result_files
+    from femag.review import mesh_row
+
+    meshes, _ = mesh_row(result.design)
+    made = result_files(result, meshes)
+    make_folder(folder, "--figures")
+    for name, content in made.items():
+        stack.enter_context(whole_file(folder / name)).write_bytes(content)
 
 
 def _write(

@@ -15,7 +15,7 @@ PATIENCE = 1.0
 """Seconds of silence before progress shows on a terminal."""
 
 
-def check_targets(json: str | None, out: Path | None) -> None:
+def check_targets(json: str | None, out: Path | None, option: str = "--out") -> None:
     """Refuse before the work what cannot be written after it.
 
     Parameters
@@ -24,6 +24,8 @@ def check_targets(json: str | None, out: Path | None) -> None:
         Of ``--json``: a file, or - for standard output.
     out : Path or None
         Of ``--out``: a folder, there or not.
+    option : str
+        Option that names the folder instead.
 
     Raises
     ------
@@ -38,7 +40,7 @@ def check_targets(json: str | None, out: Path | None) -> None:
                 accepted="a file in a folder that exists, or -",
             )  # fmt: skip
     if out is not None and out.exists() and not out.is_dir():
-        raise InputError("is no folder", key="--out", value=str(out), accepted="a folder")
+        raise InputError("is no folder", key=option, value=str(out), accepted="a folder")
 
 
 def check_file(option: str, file: Path | None, ending: str) -> None:

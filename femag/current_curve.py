@@ -129,6 +129,8 @@ class InductanceCurve:
         Versions of this package, Python and the libraries behind the numbers.
     design_hash : str
         Digest of everything in the design that can move a result.
+    solutions : tuple of FieldSolution
+        Fields at every current but 0, by rising magnitude, if they were to be kept.
     """
 
     design: Design
@@ -140,6 +142,7 @@ class InductanceCurve:
     seconds: float
     versions: dict[str, str] = field(repr=False)
     design_hash: str
+    solutions: tuple[FieldSolution, ...] = field(default=(), repr=False, compare=False)
 
     @property
     def currents(self) -> Array:
@@ -153,6 +156,7 @@ def inductance_curve(
     tolerance: float | None = None,
     drops: Sequence[float] = DROPS,
     progress: Callable[[int, int], None] | None = None,
+    keep_fields: bool = False,
 ) -> InductanceCurve:
     """Return flux linkage, inductances and bounded co-energy at each current, on one mesh.
 
@@ -169,6 +173,8 @@ def inductance_curve(
         Shares by which the incremental inductance has dropped at the currents of saturation.
     progress : callable, optional
         Called with the number of points that are done and of all.
+    keep_fields : bool
+        Whether the fields are to be kept with the curve.
 
     Raises
     ------
@@ -186,7 +192,7 @@ def inductance_curve(
     rising = sorted((current for current in asked if current != 0.0), key=abs)
     mesh = CommonMesh(field_problem(design), design.tolerance)
     mesh.probe((rising[0], rising[-1]))
-    sides, points, states = _points(mesh, rising, progress)
+    sides, points, states, solutions = _points(mesh, rising, progress, keep_fields)
     initial, saturation = _saturation(sides, states, _checked_drops(drops))
     by_current = {point.current: point for point in points}
     if 0.0 in asked:
@@ -201,16 +207,21 @@ def inductance_curve(
         seconds=time.perf_counter() - started,
         versions=library_versions(),
         design_hash=design_hash(design),
+        solutions=tuple(solutions),
     )
 
 
 def _points(
-    mesh: CommonMesh, currents: Sequence[float], progress: Callable[[int, int], None] | None
-) -> tuple[Sides, list[CurvePoint], list[State]]:
-    """Return the sides that serve every current, and point and state of each."""
+    mesh: CommonMesh,
+    currents: Sequence[float],
+    progress: Callable[[int, int], None] | None,
+    keep_fields: bool,
+) -> tuple[Sides, list[CurvePoint], list[State], list[FieldSolution]]:
+    """Return the sides that serve every current; point, state and, if kept, fields of each."""
     while True:
         points: list[CurvePoint] = []
         states: list[State] = []
+        solutions: list[FieldSolution] = []
         sides = for_many_solutions(mesh.sides)
         fine = _fine_sides(sides)
         for solution, state in solutions_in_a_row(sides, currents):
@@ -220,10 +231,12 @@ def _points(
                 break
             points.append(_point(solution, state, coenergy))
             states.append(state)
+            if keep_fields:
+                solutions.append(solution)
             if progress is not None:
                 progress(len(points), len(currents))
         else:
-            return sides, points, states
+            return sides, points, states, solutions
 
 
 def _fine_sides(sides: Sides) -> Sides | None:

@@ -47,12 +47,12 @@ def _points(curve: InductanceCurve) -> Table:
             with_unit(point.apparent_inductance, "H"),
             with_unit(point.incremental_inductance, "H"),
             with_unit(point.coenergy.value, "J"),
-            f"{100 * _relative_half_width(point):.2g} %" if point.current else "-",
+            f"{100 * relative_half_width(point):.2g} %" if point.current else "-",
         )
     return table
 
 
-def _relative_half_width(point: CurvePoint) -> float:
+def relative_half_width(point: CurvePoint) -> float:
     """Return half the distance of the co-energy's bounds over what the current adds to it."""
     if point.magnet_flux_linkage == 0.0:
         return point.coenergy.relative_half_width

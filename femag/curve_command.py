@@ -103,7 +103,7 @@ def curve_command(
     solved = _with_tolerance(read_design(design), tolerance)
     if circuit is not None:
         _check_model(solved, design)
-    points = _measured_points(measured, kind, fit)
+    points = measured_points(measured, kind, fit)
     with shown_progress(_how_far) as progress:
         curve = inductance_curve(solved, asked, progress=progress)
         beside = None if points is None else _beside(solved, points, fit)
@@ -188,7 +188,7 @@ def _with_tolerance(design: Design, tolerance: float | None) -> Design:
         raise error.changed(key="--tolerance") from error
 
 
-def _measured_points(file: Path | None, kind: str | None, fit: bool) -> MeasuredPoints | None:
+def measured_points(file: Path | None, kind: str | None, fit: bool) -> MeasuredPoints | None:
     """Return the measured points that were asked for, None if none were."""
     if file is None:
         for option, given in (("--fit", fit), ("--kind", kind is not None)):

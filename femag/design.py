@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Sequence
-from dataclasses import asdict, dataclass, replace
+from dataclasses import asdict, dataclass, field, replace
 from typing import Any
 
 from femag.errors import InputError, number
@@ -30,6 +30,7 @@ from femag.geometry import (
 )
 from femag.materials import MagnetisationCurve
 from femag.part_tolerances import PartTolerances
+from femag.requirements import Requirements
 from femag.ripple import Ripple
 
 FAR_RADIUS = 60.0
@@ -68,6 +69,8 @@ class Design:
     detail : {"block", "turn"}
         How the field sees windings that have a conductor: as blocks of uniform current, or turn by
         turn.
+    requirements : Requirements
+        Limits that the design has to keep; none unless given.
     ripple : Ripple, optional
         What of the current alternates; its highest current is `current`.
     part_tolerances : PartTolerances, optional
@@ -83,6 +86,7 @@ class Design:
     driven: tuple[str, ...] = ()
     title: str = ""
     detail: Detail = "block"
+    requirements: Requirements = field(default_factory=Requirements)
     ripple: Ripple | None = None
     part_tolerances: PartTolerances | None = None
 
@@ -94,6 +98,11 @@ class Design:
         _check_names(self.windings, self.driven)
         _check_detail(self.detail, self.windings)
         _check_core(self.core, self.material)
+        if not isinstance(self.requirements, Requirements):
+            raise InputError(
+                "not requirements", key="require", value=self.requirements,
+                accepted="Requirements(inductance_least=380e-6)",
+            )  # fmt: skip
         if not isinstance(self.title, str) or not self.title.isprintable():
             raise InputError(
                 "not printable", key="title", value=self.title,
@@ -204,6 +213,7 @@ def design_hash(design: Design) -> str:
     wound = any(winding.conductor is not None for winding in design.windings)
     detail: Detail = design.detail if wound else "block"
     content = asdict(replace(design, title="", driven=driven, detail=detail))
+    content.pop("requirements")
     del content["part_tolerances"]
     content["core"] |= {"name": "", "kind": type(design.core).__name__}
     content["material"]["kind"] = type(design.material).__name__

@@ -42,7 +42,7 @@ def loss_lines(result: Result) -> list[Text | Table | str]:
         lines.append(Text(NO_PARAMETERS))
     else:
         straight = not isinstance(result.design.core, PotCore)
-        lines += [_core_loss(result.core_loss), Text(_core_notes(result.core_loss, straight))]
+        lines += [_core_loss(result.core_loss), Text(core_loss_notes(result.core_loss, straight))]
     return [*lines, "", *_budget(result), ""]
 
 
@@ -57,7 +57,8 @@ def _core_loss(loss: CoreLoss) -> Table:
     return table
 
 
-def _core_notes(loss: CoreLoss, straight_legs: bool) -> str:
+def core_loss_notes(loss: CoreLoss, straight_legs: bool) -> str:
+    """Return what a core loss rests on, what it leaves out, and where it is out of range."""
     swings = ", ".join(f"{share.flux_density:.3f}" for share in loss.volume_shares)
     loops = f", {loss.minor_loops} minor loops apart" if loss.minor_loops else ""
     notes = [

@@ -19,7 +19,7 @@ def budget_lines(budget: ToleranceBudget) -> list[Table | Text]:
     """Return every contribution, the worst case and the root of the sum of squares, for print."""
     table = columns("tolerance", "+-", "inductance", words=["tolerance"])
     for entry in budget.contributions:
-        half = _half_range(entry.name, entry.half_range)
+        half = half_range_text(entry.name, entry.half_range)
         table.add_row(entry.name, half, f"{entry.change / budget.inductance:+.2%}")
     table.add_row("worst case", "", f"+-{budget.worst_case / budget.inductance:.2%}")
     table.add_row("root sum square", "", f"+-{budget.root_sum_square / budget.inductance:.2%}")
@@ -38,7 +38,8 @@ def spread_line(spread: SampledSpread) -> Text:
     )
 
 
-def _half_range(name: str, value: float) -> str:
+def half_range_text(name: str, value: float) -> str:
+    """Return a half range in mm, or of a share in per cent."""
     if name in ("permeability", "saturation"):
         return f"{100 * value:g} %"
     return f"{1e3 * value:g} mm"

@@ -80,6 +80,8 @@ ACCEPTED = {
     "1/m": "a core factor with its unit, such as '0.497 1/mm'",
     "H": "an inductance with its unit, such as '250 uH'",
     "Hz": "a frequency with its unit, such as '120 kHz'",
+    "W": "a power with its unit, such as '2.5 W'",
+    "N": "a force with its unit, such as '40 N'",
     "W/m3": "a loss density with its unit, such as '400 kW/m3'",
     "s": "a time with its unit, such as '10 us'",
 }
@@ -148,7 +150,8 @@ def _unit_ratio(name: str, unit: str) -> float:
 
 def _names() -> list[str]:
     return ["mm", "cm", "um", "m", "mil", "inch", "in", "A", "mA", "kA", "T", "mT", "G", "gauss",
-            "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz"]  # fmt: skip
+            "A/m", "kA/m", "Oe", "H", "mH", "uH", "nH", "Hz", "kHz", "MHz",
+            "W", "mW", "kW", "N", "mN", "kN"]  # fmt: skip
 
 
 def celsius(text: object) -> float:

@@ -40,6 +40,7 @@ from femag.geometry import (
     core_of_family,
 )
 from femag.part_tolerances import PartTolerances
+from femag.requirements import Requirements
 
 
 def read_design(path: str | Path) -> Design:
@@ -142,6 +143,7 @@ def _design(table: DesignTable, folder: Path) -> Design:
         driven=tuple(table.drive.winding),
         title=table.title,
         detail=table.solve.detail,
+        requirements=Requirements(**table.require.model_dump()),
         ripple=drive_ripple(table.drive, folder),
         part_tolerances=_part_tolerances(table),
     )

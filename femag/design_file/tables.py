@@ -55,6 +55,9 @@ Frequency = Annotated[
 Temperature = Annotated[float, BeforeValidator(read_temperature), Field(description=TEMPERATURE)]
 CoreFactor = Annotated[float, BeforeValidator(partial(read_quantity, "1/m"))]
 FluxDensity = Annotated[float, BeforeValidator(partial(read_quantity, "T"))]
+Inductance = Annotated[float, BeforeValidator(partial(read_quantity, "H"))]
+Power = Annotated[float, BeforeValidator(partial(read_quantity, "W"))]
+Force = Annotated[float, BeforeValidator(partial(read_quantity, "N"))]
 
 
 class _Table(BaseModel):
@@ -306,6 +309,21 @@ class SolveTable(_Table):
     detail: Detail = Field(default="block", description=" or ".join(map(repr, DETAILS)))
 
 
+class RequireTable(_Table):
+    """What the design has to keep."""
+
+    inductance_least: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    inductance_most: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    incremental_inductance: Inductance | None = Field(default=None, description=ACCEPTED["H"])
+    flux_density: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    core_flux_density: FluxDensity | None = Field(default=None, description=ACCEPTED["T"])
+    loss: Power | None = Field(default=None, description=ACCEPTED["W"])
+    force: Force | None = Field(default=None, description=ACCEPTED["N"])
+    copper_clearance: Length | None = Field(default=None, description=ACCEPTED["m"])
+    temperature: Temperature | None = Field(default=None, description=TEMPERATURE)
+    fit: bool = Field(default=False, description="true or false")
+
+
 class DesignTable(_Table):
     """The whole file."""
 
@@ -315,6 +333,7 @@ class DesignTable(_Table):
     winding: list[WindingTable] = Field(description="tables headed [[winding]]")
     drive: DriveTable = Field(default=DriveTable(), description="a table, [drive]")
     solve: SolveTable = Field(default=SolveTable(), description="a table, [solve]")
+    require: RequireTable = Field(default=RequireTable(), description="a table, [require]")
     tolerance: ToleranceTable | None = Field(
         default=None, description="a table of half ranges, [tolerance]"
     )

@@ -19,6 +19,7 @@ from femag.materials import (
     loss_document,
 )
 from femag.part_tolerances import SHARES, PartTolerances
+from femag.requirements import Requirements
 from femag.ripple import Ripple
 from femag.units import exact_text
 
@@ -39,6 +40,8 @@ def design_document(design: Design) -> Document:
         document["solve"]["detail"] = design.detail
     if design.driven:
         document["drive"]["winding"] = list(design.driven)
+    if design.requirements:
+        document["require"] = _requirements_document(design.requirements)
     if design.ripple is not None:
         document["drive"] |= _ripple_document(design.ripple)
     if design.part_tolerances is not None:
@@ -161,6 +164,16 @@ def _conductor_document(conductor: Conductor) -> Document:
         case Foil(thickness, width):
             foil = {"foil": exact_text(thickness, "m", "m")} | insulation
             return foil if width is None else foil | {"width": exact_text(width, "m", "m")}
+
+
+def _requirements_document(requirements: Requirements) -> Document:
+    document: Document = {
+        limit.key: f"{float(limit.value)!r} C"
+        if limit.unit == "C"
+        else exact_text(limit.value, limit.unit)
+        for limit in requirements.limits()
+    }
+    return document | {"fit": True} if requirements.fit else document
 
 
 def _lengths_document(lengths: Mapping[str, float]) -> Document:

@@ -25,6 +25,7 @@ from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
 from femag.quantities import Force, Pull, SectionMean, VolumeShare, WoundCopper
+from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Comparison, Result
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
@@ -79,6 +80,22 @@ class CopperEntry(Entry):
     layers_in_sections: tuple[int, ...]
 
 
+class RequirementEntry(Entry):
+    """A requirement of the design beside what is known, SI or degrees Celsius; margin a share."""
+
+    key: str
+    unit: str
+    sense: Literal["least", "most"]
+    limit: float | None
+    value: float | None
+    lower: float | None
+    upper: float | None
+    basis: str
+    spread: float | None
+    margin: float | None
+    verdict: Literal["kept", "missed", "not shown"]
+
+
 class PullEntry(Entry):
     """An attraction along the axis: N, and Pa on an area in m2; of sides: flux, potential."""
 
@@ -122,6 +139,7 @@ class ResultDocument(Entry):
     section_means: list[SectionMeanEntry]
     volume_shares: list[VolumeShareEntry] = Field(default_factory=list)
     copper: list[CopperEntry]
+    requirements: list[RequirementEntry] = Field(default_factory=list)
     copper_loss: list[CopperLossEntry] = Field(default_factory=list)
     core_loss: CoreLossEntry | None = None
     losses: LossBudgetEntry | None = None
@@ -201,6 +219,7 @@ def _document(result: Result) -> ResultDocument:
         section_means=[SectionMeanEntry(**vars(mean)) for mean in result.section_means],
         volume_shares=[VolumeShareEntry(**vars(share)) for share in result.volume_shares],
         copper=[CopperEntry(**vars(copper)) for copper in result.copper],
+        requirements=[_requirement_entry(check) for check in checked_requirements(result)],
         copper_loss=[copper_loss_entry(loss) for loss in result.copper_loss],
         core_loss=core_loss_entry(result.core_loss) if result.core_loss else None,
         losses=loss_budget_entry(result.loss_budget) if result.loss_budget else None,
@@ -214,6 +233,18 @@ def _document(result: Result) -> ResultDocument:
         unknowns=result.unknowns,
         refinements=result.refinements,
         seconds=result.seconds,
+    )
+
+
+def _requirement_entry(check: RequirementCheck) -> RequirementEntry:
+    return RequirementEntry(
+        key=check.key,
+        unit=check.unit,
+        sense=check.sense,
+        limit=check.limit,
+        margin=check.margin,
+        verdict=check.verdict,
+        **vars(check.known),
     )
 
 

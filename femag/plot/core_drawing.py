@@ -84,10 +84,10 @@ def _section_dimensions(core: Core, ax: Axes, step: float) -> int:
     shown = [(width, True) for width in widths[:3] if width > 0.0] + [(outside, round_outside)]
     for level, (width, is_diameter) in enumerate(shown, 1):
         half, place = 500 * width, -half_height - level * step
-        _dimension(ax, (-half, place), (half, place), is_diameter=is_diameter)
+        dimension(ax, (-half, place), (half, place), is_diameter=is_diameter)
     for level, height in enumerate((sizes["window_height"], sizes["height"]), 1):
         place = half_width + level * step
-        _dimension(ax, (place, -500 * height), (place, 500 * height))
+        dimension(ax, (place, -500 * height), (place, 500 * height))
     return len(shown)
 
 
@@ -113,18 +113,18 @@ def _plan_dimensions(core: RoundLegCore, ax: Axes, down: float, step: float) -> 
     levels = 0
     if core.leg_opening is not None:
         half, levels = 500 * core.leg_opening, 1
-        _dimension(ax, (-half, down + y_low - step), (half, down + y_low - step), down)
+        dimension(ax, (-half, down + y_low - step), (half, down + y_low - step), down)
     right = x_high + step
     if core.waist is not None:
         half = 500 * core.waist
-        _dimension(ax, (right, down - half), (right, down + half))
+        dimension(ax, (right, down - half), (right, down + half))
     if core.family == "rm" and core.width is not None:
         _square_side(ax, 1e3 * core.width, down)
     elif core.front is not None and core.width is not None:
-        _dimension(ax, (right, down + y_low), (right, down + y_low + 1e3 * core.width))
-        _dimension(ax, (x_low - step, down + y_low), (x_low - step, down))
+        dimension(ax, (right, down + y_low), (right, down + y_low + 1e3 * core.width))
+        dimension(ax, (x_low - step, down + y_low), (x_low - step, down))
     elif core.width is not None:
-        _dimension(ax, (right, down - 500 * core.width), (right, down + 500 * core.width))
+        dimension(ax, (right, down - 500 * core.width), (right, down + 500 * core.width))
     return levels
 
 
@@ -139,7 +139,7 @@ def _square_side(ax: Axes, side: float, down: float) -> None:
             fontsize=9)  # fmt: skip
 
 
-def _dimension(
+def dimension(
     ax: Axes,
     start: tuple[float, float],
     end: tuple[float, float],

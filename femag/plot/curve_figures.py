@@ -32,7 +32,7 @@ LINEAR_TOP = 0.5
 FIELD_STRENGTHS = (1e-2, 1e8)
 """Range of H in A/m in which the knee is looked for."""
 MATERIAL_SAMPLES = 300
-UNITS = ((1.0, ""), (1e-3, "m"), (1e-6, "u"), (1e-9, "n"))
+UNITS = ((1.0, ""), (1e-3, "m"), (1e-6, "\N{MICRO SIGN}"), (1e-9, "n"))
 
 
 class MeasuredInductance(Protocol):
@@ -196,7 +196,7 @@ def material_figure(of: InductanceCurve | Design, ax: Axes) -> Axes:
     """
     design = of.design if isinstance(of, InductanceCurve) else of
     material = design.material
-    h = np.linspace(0.0, 1.0, MATERIAL_SAMPLES) ** 2 * _highest_field_strength(material)
+    h = np.linspace(0.0, 1.0, MATERIAL_SAMPLES) ** 2 * highest_field_strength(material)
     ax.plot(h, material.flux_density(h), color="black", linewidth=1.6)
     ax.set(xlabel="field strength H, A/m", ylabel="flux density B, T", xlim=(0.0, h[-1]))
     ax.set_ylim(bottom=0.0)
@@ -206,7 +206,7 @@ def material_figure(of: InductanceCurve | Design, ax: Axes) -> Axes:
     return ax
 
 
-def _highest_field_strength(material: MagnetisationCurve) -> float:
+def highest_field_strength(material: MagnetisationCurve) -> float:
     """Return H in A/m at which the picture of a material ends: well beyond its knee."""
     if material.is_linear:
         return float(material.field_strength(np.array([LINEAR_TOP]))[0])

@@ -12,7 +12,7 @@ from matplotlib.ticker import MaxNLocator
 from matplotlib.tri import Triangulation
 from numpy.typing import NDArray
 
-from femag.design import whole_section
+from femag.design import Design, whole_section
 from femag.geometry import Region
 from femag.geometry.gaps import GapPiece, post_pieces
 from femag.geometry.section import Point
@@ -45,11 +45,7 @@ def flux_map(result: Result, ax: Axes, lines: int = 18) -> Axes:
     ValueError
         If the result was read from a file and holds no fields.
     """
-    core = result.design.core
-    top = max(z for region in _regions(result) for _, z in region.polygon)
-    margin = 0.12 * core.turned.ring_outer_radius
-    window = (0.0, core.turned.ring_outer_radius + margin, -top - margin, top + margin)
-    return _drawn_map(result, ax, window, lines)
+    return _drawn_map(result, ax, section_window(result.design), lines)
 
 
 def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
@@ -71,17 +67,27 @@ def gap_map(result: Result, ax: Axes, lines: int = 40) -> Axes:
     ValueError
         If the result was read from a file and holds no fields.
     """
-    core, post = result.design.core, result.design.core.turned.post_radius
-    gap = (GapPiece(0.0, 0.0), *post_pieces(result.design.gaps, core.window_height))[-1]
-    copper = min(
-        r for region in _regions(result) if region.role == "winding" for r, _ in region.polygon
-    )
+    return _drawn_map(result, ax, gap_window(result.design), lines)
+
+
+def section_window(design: Design) -> Window:
+    """Return what the map of the whole section shows: least and largest r and z, m."""
+    outside = design.core.turned.ring_outer_radius
+    top = max(z for region in whole_section(design).regions for _, z in region.polygon)
+    margin = 0.12 * outside
+    return 0.0, outside + margin, -top - margin, top + margin
+
+
+def gap_window(design: Design) -> Window:
+    """Return what the map of the gap shows: least and largest r and z, m."""
+    core, post = design.core, design.core.turned.post_radius
+    gap = (GapPiece(0.0, 0.0), *post_pieces(design.gaps, core.window_height))[-1]
+    regions = whole_section(design).regions
+    copper = min(r for region in regions if region.role == "winding" for r, _ in region.polygon)
     room = core.window_radius - post
     beside = 2.0 * (copper - post)
     reach = min(max(2.5 * gap.length, beside, 0.15 * post), room)
-    left, right = max(post - reach, 0.0), post + reach
-    window = (left, right, gap.middle - reach, gap.middle + reach)
-    return _drawn_map(result, ax, window, lines)
+    return max(post - reach, 0.0), post + reach, gap.middle - reach, gap.middle + reach
 
 
 def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
@@ -93,7 +99,7 @@ def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
         mesh,
         fields.flux_density,
         shading="gouraud",
-        cmap=_light_to_dark(),
+        cmap=light_to_dark(),
         vmin=0.0,
         vmax=typical_peak(fields, SCALE_SHARE),
         rasterized=True,
@@ -112,7 +118,7 @@ def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
     return ax
 
 
-def _light_to_dark() -> Colormap:
+def light_to_dark() -> Colormap:
     """Return a map whose luminance falls with the value, light enough for black lines."""
     return ListedColormap(mpl.colormaps["GnBu"](np.linspace(0.0, 0.82, 256)))
 
@@ -128,7 +134,7 @@ def draw_outlines(ax: Axes, fields: FieldMap) -> None:
 
 def _name_windings(ax: Axes, regions: tuple[Region, ...], window: Window) -> None:
     """Write each winding's name once, into what the window shows of it."""
-    for name, (r, z) in _label_places(regions, window).items():
+    for name, (r, z) in label_places(regions, window).items():
         ax.text(
             1e3 * r,
             1e3 * z,
@@ -141,7 +147,7 @@ def _name_windings(ax: Axes, regions: tuple[Region, ...], window: Window) -> Non
         )
 
 
-def _label_places(regions: tuple[Region, ...], window: Window) -> dict[str, Point]:
+def label_places(regions: tuple[Region, ...], window: Window) -> dict[str, Point]:
     """Return where in m to name each winding in a window: one above the other, not side by side."""
     seen: dict[str, tuple[NDArray[np.float64], NDArray[np.float64]]] = {}
     for name in dict.fromkeys(region.winding for region in regions if region.role == "winding"):

@@ -75,7 +75,7 @@ def test_inductances_are_drawn_from_zero_current_with_saturation_marked(design: 
         x, y = line(ax, label)
         assert (x[0], y[0]) == pytest.approx((current, share * initial))
     assert not [text for text in ax.get_legend_handles_labels()[1] if "30 %" in text]
-    assert ax.get_ylabel() == "inductance, uH"
+    assert ax.get_ylabel() == "inductance, µH"
     assert ax.get_xlabel() == "current, A"
     assert ax.get_ylim()[0] == 0.0
 
@@ -116,7 +116,7 @@ def test_the_same_flux_takes_the_gaps_ampere_turns_more(design: fm.Design) -> No
     turns, flux = line(ax, "with the gap")
     assert turns == pytest.approx(TURNS * np.array([0.0, *CURRENTS]))
     assert 1e-6 * flux == pytest.approx(turns / (CORE + GAP))
-    assert ax.get_ylabel() == "flux per turn, uWb"
+    assert ax.get_ylabel() == "flux per turn, µWb"
     _, flux = line(ax, "without the gap")
     assert 1e-6 * flux == pytest.approx(turns / CORE)
     said = [text for text in ax.texts if "the gap takes" in text.get_text()]
