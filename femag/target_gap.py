@@ -313,10 +313,12 @@ def _hand_gaps(design: Design, target: float) -> tuple[HandGap, ...]:
     gaps = []
     for formula, column in zip(FORMULAS, tables.T, strict=True):
         falling = np.minimum.accumulate(column)  # some formulas turn up again at long gaps
-        reached = falling[0] > target > falling[-1]
-        reluctance, place = np.unique(-np.log(falling), return_index=True)
-        gap = float(np.exp(pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))))
-        gaps.append(HandGap(formula.name, gap if reached else None))
+        gap = None
+        if falling[0] > target > falling[-1]:
+            reluctance, place = np.unique(-np.log(falling), return_index=True)
+            log_gap = pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))
+            gap = float(np.exp(log_gap))
+        gaps.append(HandGap(formula.name, gap))
     return tuple(gaps)
 
 
