@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from rich.console import Console
+from rich.table import Table
 from rich.text import Text
 
 from femag.answer import cautions, columns, described
@@ -60,14 +61,7 @@ def print_gap(
     if spread is not None:
         console.print(spread_line(spread), highlight=False)
     console.print()
-    formulas = columns("hand formula", "gap", "off by", words=["hand formula"])
-    for entry in found.hand:
-        if entry.gap is None:
-            formulas.add_row(entry.name, "none", "-")
-        else:
-            error = entry.gap / found.gap - 1.0
-            formulas.add_row(entry.name, f"{1e3 * entry.gap:.4g} mm", f"{error:+.1%}")
-    console.print(formulas, highlight=False)
+    console.print(_hand_gaps(found), highlight=False)
     console.print()
     console.print(
         Text(
@@ -78,6 +72,18 @@ def print_gap(
     console.print()
     stored = 0.5 * value * design.current**2
     console.print(Text(cautions(stored, design.current)))
+
+
+def _hand_gaps(found: TargetGap) -> Table:
+    """Return what every hand formula asks for."""
+    formulas = columns("hand formula", "gap", "off by", words=["hand formula"])
+    for entry in found.hand:
+        if entry.gap is None:
+            formulas.add_row(entry.name, "none", "-")
+        else:
+            error = entry.gap / found.gap - 1.0
+            formulas.add_row(entry.name, f"{1e3 * entry.gap:.4g} mm", f"{error:+.1%}")
+    return formulas
 
 
 def _where(found: TargetGap) -> str:

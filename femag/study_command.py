@@ -208,7 +208,7 @@ def _bar() -> Iterator[Callable[[Progress], None]]:
     from rich.progress import BarColumn, TextColumn
     from rich.progress import Progress as Bar
 
-    columns = (BarColumn(30), TextColumn("{task.description}"))
+    columns = (BarColumn(20), TextColumn("{task.description}"))
     with Bar(*columns, console=Console(stderr=True), transient=True) as bar:
         task = bar.add_task("", total=None)
 
@@ -234,13 +234,14 @@ def _lines() -> Callable[[Progress], None]:
 
 def in_words(state: Progress) -> str:
     """Return how far a run is in one line."""
-    words = [f"{state.done + state.failed} of {state.total}", f"{state.failed} failed"]
+    finished = f"{state.done + state.failed} of {state.total}"
+    if state.stopping:
+        return f"{finished}, finishing what is in flight; Ctrl-C again stops now"
+    words = [finished, f"{state.failed} failed"]
     if state.here:
         words.append(f"{state.rate:.3g} a second")
     if state.seconds_left is not None and state.left:
         words.append(f"{_duration(state.seconds_left)} left")
-    if state.stopping:
-        words.append("stopping when the cases in flight are done; Ctrl-C again stops now")
     return ", ".join(words)
 
 

@@ -173,14 +173,7 @@ def gap_for(
     accepted = "an inductance above 0, such as '250 uH'"
     if not 0.0 < number(inductance, "inductance", accepted) < np.inf:
         raise InputError("not usable", key="inductance", value=inductance, accepted=accepted)
-    design = replace(
-        design,
-        current=design.current if current is None else current,
-        tolerance=design.tolerance if tolerance is None else tolerance,
-        gaps=design.gaps or (Gap(1e-3 * design.core.window_height),),
-    )
-    if any(gap.magnet is not None for gap in design.gaps):
-        raise InputError("a magnet in the gap", key="gap.magnet", accepted="a gap without a magnet")
+    design = _gapped(design, current, tolerance)
     hand = _hand_gaps(design, inductance) if start is None else None
     search = _Search(design, inductance, hand or (), start)
     found, solution, slope = search.run()
@@ -197,6 +190,18 @@ def gap_for(
         seconds=time.perf_counter() - started,
         versions=library_versions(),
         design_hash=design_hash(found),
+    )
+
+
+def _gapped(design: Design, current: float | None, tolerance: float | None) -> Design:
+    """Return the design with a gap, and with another current and tolerance if they are given."""
+    if any(gap.magnet is not None for gap in design.gaps):
+        raise InputError("a magnet in the gap", key="gap.magnet", accepted="a gap without a magnet")
+    return replace(
+        design,
+        current=design.current if current is None else current,
+        tolerance=design.tolerance if tolerance is None else tolerance,
+        gaps=design.gaps or (Gap(1e-3 * design.core.window_height),),
     )
 
 
@@ -308,10 +313,12 @@ def _hand_gaps(design: Design, target: float) -> tuple[HandGap, ...]:
     gaps = []
     for formula, column in zip(FORMULAS, tables.T, strict=True):
         falling = np.minimum.accumulate(column)  # some formulas turn up again at long gaps
-        reached = falling[0] > target > falling[-1]
-        reluctance, place = np.unique(-np.log(falling), return_index=True)
-        gap = float(np.exp(pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))))
-        gaps.append(HandGap(formula.name, gap if reached else None))
+        gap = None
+        if falling[0] > target > falling[-1]:
+            reluctance, place = np.unique(-np.log(falling), return_index=True)
+            log_gap = pchip_interpolate(reluctance, np.log(lengths[place]), -np.log(target))
+            gap = float(np.exp(log_gap))
+        gaps.append(HandGap(formula.name, gap))
     return tuple(gaps)
 
 

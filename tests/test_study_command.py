@@ -167,4 +167,4 @@ def test_progress_says_done_failed_rate_and_time_left() -> None:
     assert in_words(state) == "100 of 4000, 10 failed, 5 a second, 13:00 left"
     assert in_words(Progress(0, 0, 10, 0, 0.0)) == "0 of 10, 0 failed"
     stopping = Progress(5, 0, 10, 5, 1.0, stopping=True)
-    assert "stopping when the cases in flight are done" in in_words(stopping)
+    assert in_words(stopping) == "5 of 10, finishing what is in flight; Ctrl-C again stops now"

@@ -30,8 +30,8 @@ from femag.quantities.off_nominal import (
 from femag.quantities.sensitivity import coenergy_slope, energies_near
 from femag.quantities.stress import OfSides, Stress
 
-STEP = 1e-5
-"""Change of a parameter for its derivative, over its value."""
+STEPS = (1e-5, 1e-6, 1e-7)
+"""Changes of a parameter for its derivative, over its value; the first that keeps all corners."""
 
 
 @dataclass(frozen=True)
@@ -92,20 +92,41 @@ def _sensitivity(design: Design, solution: FieldSolution, parameter: Parameter) 
     if parameter.name in PLACES:
         slopes = Stress(solution).slopes_by_coil_place[PLACES.index(parameter.name)]
     elif parameter.name in SHARES:
-        slopes = _material_slopes(solution, *_neighbours(design, parameter))
+        slopes = _material_slopes(solution, *_neighbours(design, parameter, STEPS[0]))
     else:
-        less, more = _neighbours(design, parameter)
-        slopes = coenergy_slope(solution, less, more, 2.0 * STEP * parameter.value)
+        slopes = _size_slopes(design, solution, parameter)
     of_inductance = 2.0 / design.current**2
     inductance = slopes[0] * of_inductance, slopes[1] * of_inductance
     al = inductance[0] / design.turns**2, inductance[1] / design.turns**2
     return Sensitivity(parameter, slopes, inductance, al)
 
 
-def _neighbours(design: Design, parameter: Parameter) -> tuple[FieldProblem, FieldProblem]:
-    """Return the problems with a parameter a little smaller and a little larger."""
+def _size_slopes(design: Design, solution: FieldSolution, parameter: Parameter) -> OfSides:
+    """Return the co-energy's derivative by a size, J/m.
+
+    The plates that stand for straight ones have corners where they bend; a change may add one.
+    """
+    for share in STEPS[:-1]:
+        less, more = _neighbours(design, parameter, share * parameter.value)
+        if _same_corners(less, solution.sides.problem) and _same_corners(more, less):
+            return coenergy_slope(solution, less, more, 2.0 * share * parameter.value)
+    step = STEPS[-1] * parameter.value
+    return coenergy_slope(solution, *_neighbours(design, parameter, step), 2.0 * step)
+
+
+def _same_corners(one: FieldProblem, other: FieldProblem) -> bool:
+    first, second = (
+        [(region.name, len(region.polygon)) for region in problem.section.regions]
+        for problem in (one, other)
+    )
+    return first == second
+
+
+def _neighbours(
+    design: Design, parameter: Parameter, step: float
+) -> tuple[FieldProblem, FieldProblem]:
+    """Return the problems with a parameter smaller and larger by a step."""
     law = partial(_nearby_core_curve, design.core)
-    step = STEP * parameter.value
     less, more = (
         off_nominal_problem(design, {parameter.name: sign * step}, law) for sign in (-1.0, 1.0)
     )
@@ -128,7 +149,7 @@ def _nearby_core_curve(
 
 def _material_slopes(solution: FieldSolution, less: FieldProblem, more: FieldProblem) -> OfSides:
     """Return the co-energy's derivative by a material at fixed fields, J a unit of share."""
-    sides, apart = solution.sides, 2.0 * STEP
+    sides, apart = solution.sides, 2.0 * STEPS[0]
     weight = sides.discretisation.weight
     b, h = (np.hypot(found.field[:, 0], found.field[:, 1])
             for found in (solution.flux, solution.potential))  # fmt: skip

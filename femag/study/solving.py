@@ -63,13 +63,9 @@ def solved_case(document: Mapping[str, Any], file: str | None, keep: tuple[str, 
     MissingLibraryError
         If nothing can be solved here at all.
     """
-    from femag.result import solve
-
     started = time.perf_counter()
     try:
-        design = design_from_document(document, file)
-        result = solve(design, mesh=_coarse_mesh_of(design))
-        values = kept(result, keep)
+        return _solved(document, file, keep, started)
     except MissingLibraryError:
         raise
     except GapfieldError as error:
@@ -78,6 +74,16 @@ def solved_case(document: Mapping[str, Any], file: str | None, keep: tuple[str, 
         return failed("out of memory", time.perf_counter() - started)
     except Exception as error:  # a defect of one case is not the end of the others
         return failed(f"{type(error).__name__}: {error}", time.perf_counter() - started)
+
+
+def _solved(
+    document: Mapping[str, Any], file: str | None, keep: tuple[str, ...], started: float
+) -> Answer:
+    from femag.result import solve
+
+    design = design_from_document(document, file)
+    result = solve(design, mesh=_coarse_mesh_of(design))
+    values = kept(result, keep)
     seconds = time.perf_counter() - started
     return Answer(values, "", seconds, result.design_hash, result.versions)
 

@@ -6,6 +6,7 @@ takes its own case with it and no other.
 
 from __future__ import annotations
 
+import gc
 import multiprocessing
 import os
 import signal
@@ -56,7 +57,7 @@ class WorkerProcess:
             self._start()
         assert self._executor is not None
         try:
-            future = self._executor.submit(work, *arguments)
+            future = self._executor.submit(_tidily, work, *arguments)
         except BrokenProcessPool as problem:  # it died with nothing to do
             why_it_died(self, problem)
             self.end()
@@ -148,6 +149,19 @@ def _prepare() -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     threading.Thread(target=_leave_with_the_parent, daemon=True).start()
     import femag.result  # noqa: F401
+
+    gc.freeze()  # what is loaded stays: to look through it after each case would take long
+
+
+def _tidily(work: Callable[..., Any], *arguments: Any) -> Any:
+    """Return what work returns, and leave nothing behind.
+
+    Fields hold each other; waiting for Python to notice, memory grows by a third over 500 cases.
+    """
+    try:
+        return work(*arguments)
+    finally:
+        gc.collect()
 
 
 def _leave_with_the_parent() -> None:

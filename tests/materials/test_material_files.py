@@ -74,10 +74,10 @@ def test_units_do_not_matter(
         np.testing.assert_allclose(curve.flux_density(h), expected, rtol=1e-11)
 
 
-@pytest.mark.parametrize("kind", ["toml", "csv"])
-def test_files_in_the_document_are_materials(tmp_path: Path, kind: str) -> None:
+@pytest.mark.parametrize(("kind", "fence"), [("toml", "toml"), ("csv", "text")])
+def test_files_in_the_document_are_materials(tmp_path: Path, kind: str, fence: str) -> None:
     text = (Path(__file__).parents[2] / "docs/materials.md").read_text(encoding="utf-8")
-    (block,) = re.findall(rf"```{kind}\n(.*?)```", text, re.DOTALL)
+    (block,) = re.findall(rf"```{fence}\n(.*?)```", text, re.DOTALL)
     curve = curve_of(tmp_path, block, f"my.{kind}")
     assert curve.source == "data sheet, page 3"
     assert curve.points[1] == pytest.approx((25.0, 0.09), rel=1e-3)
