@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 from femag.current_curve import InductanceCurve, inductance_curve
 from femag.design import Design
+from femag.errors import InputError
 from femag.field.adapt import inductance_bounds, refinements
 from femag.field.bounds import Bounds, FieldSolution
 from femag.field.design_problem import field_problem
@@ -56,7 +57,7 @@ class Review:
     meshes : tuple of MeshStep
         The bounds on a row of meshes, from a coarse one to beyond the tolerance.
     finest : FieldSolution
-        Fields on the last of them.
+        Fields on the finest mesh that was solved at the peak current.
     curve : InductanceCurve
         With the fields at every current.
     checks : tuple of RequirementCheck
@@ -113,31 +114,25 @@ def design_review(
     Raises
     ------
     InputError
-        If the currents make no curve.
+        If the currents make no curve, or one has another sign than the peak.
     ToleranceError
         If the tolerance is out of reach.
     NumericalError
         If a mesh or a system fails.
     """
     said = progress or (lambda _: None)
+    asked = _asked(design.current, currents, measured)
     said("peak current")
     result = solve(design)
     said("row of meshes")
     meshes, finest = mesh_row(design)
     said("curve")
-    asked = dict.fromkeys(
-        [
-            *(currents or [design.current * step / STEPS for step in range(1, BEYOND + 1)]),
-            design.current,
-            *(measured.current if measured is not None else ()),
-        ]
-    )
     tolerance = max(CURVE_TOLERANCE, design.tolerance)
-    curve = inductance_curve(design, sorted(asked, key=abs), tolerance, keep_fields=True)
+    curve = inductance_curve(design, asked, tolerance, keep_fields=True)
     return Review(
         result=result,
         meshes=meshes,
-        finest=finest,
+        finest=max(finest, _fields(result), key=lambda solution: solution.unknowns),
         curve=curve,
         checks=checked_requirements(result),
         tolerances=_tolerances(result),
@@ -146,12 +141,32 @@ def design_review(
     )
 
 
+def _asked(peak: float, currents: Sequence[float], measured: MeasuredPoints | None) -> list[float]:
+    """Return the currents of the curve in A, by rising magnitude, each once."""
+    asked = {
+        *(currents or [peak * step / STEPS for step in range(1, BEYOND + 1)]),
+        peak,
+        *(measured.current if measured is not None else ()),
+    }
+    for current in asked:
+        if current * peak < 0.0:
+            raise InputError(
+                "of the other sign than the peak current", key="currents", value=current,
+                accepted=f"measured and other currents with the sign of the design's {peak:g} A",
+            )  # fmt: skip
+    return sorted(asked, key=abs)
+
+
+def _fields(result: Result) -> FieldSolution:
+    assert result.solution is not None  # it was just solved
+    return result.solution
+
+
 def _tolerances(result: Result) -> ToleranceBudget | None:
     """Return the budget of a result that was just solved, with customary tolerances if need be."""
     if any(gap.magnet is not None for gap in result.design.gaps):
         return None
-    assert result.solution is not None
-    return result.tolerance_budget or tolerance_budget(result.design, result.solution)
+    return result.tolerance_budget or tolerance_budget(result.design, _fields(result))
 
 
 def mesh_row(design: Design) -> tuple[tuple[MeshStep, ...], FieldSolution]:

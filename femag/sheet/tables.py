@@ -298,7 +298,7 @@ def provenance_table(review: Review) -> Table:
             f"{len(review.curve.points)} currents on one mesh, {review.curve.unknowns} unknowns, "
             f"half width at most {100 * review.curve.design.tolerance:g} %",
         ),
-        ("drawn fields", f"finest mesh of the row, {review.meshes[-1].unknowns} unknowns"),
+        ("drawn fields", f"finest mesh, {review.finest.unknowns} unknowns"),
         ("tolerance asked for", f"{100 * review.design.tolerance:g} % half width"),
         ("hash of the design", result.design_hash),
     )

@@ -150,6 +150,14 @@ def test_the_verdict_is_in_words(reviewed: Review, limits: dict[str, float], wor
     assert verdict(with_requirements(reviewed, **limits)) == words
 
 
+def test_currents_of_the_other_sign_are_refused() -> None:
+    design = design_from_toml(COARSE)
+    with pytest.raises(fm.InputError, match="of the other sign than the peak current"):
+        design_review(design, [-2.0, -6.0])
+    with pytest.raises(fm.InputError, match="measured and other currents with the sign"):
+        design_review(design, (), fm.MeasuredPoints((-2.5, -5.0), (400e-6, 390e-6)))
+
+
 @pytest.mark.slow
 def test_measured_points_stand_beside_the_curve() -> None:
     points = fm.MeasuredPoints((2.5, 5.0), (400e-6, 390e-6), source="bench <1>.csv")
