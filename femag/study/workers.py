@@ -15,8 +15,9 @@ import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
 from concurrent.futures.process import BrokenProcessPool
-from contextlib import contextmanager, suppress
+from contextlib import contextmanager
 from multiprocessing.connection import wait
+from multiprocessing.context import SpawnContext, SpawnProcess
 from typing import Any, Protocol
 
 from femag.errors import NumericalError
@@ -37,12 +38,27 @@ class Worker(Protocol):
         """End it now, with whatever it is doing, as far as that can be done."""
 
 
+class _KnownProcesses(SpawnContext):
+    """Spawns processes and knows them, so that they can be killed from their first moment on."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.processes: list[SpawnProcess] = []
+
+    def Process(self, *arguments: Any, **named: Any) -> SpawnProcess:  # type: ignore[override]
+        """Return a new process, not yet started."""
+        process = SpawnProcess(*arguments, **named)
+        self.processes.append(process)
+        return process
+
+
 class WorkerProcess:
     """A process of our own: spawned, with one BLAS thread, deaf to Ctrl-C, gone with its parent."""
 
     def __init__(self) -> None:
         self._executor: ProcessPoolExecutor | None = None
-        self._pid: Future[int] | None = None
+        self._first: Future[int] | None = None
+        self._context = _KnownProcesses()
         self._since = 0.0
 
     def submit(self, work: Callable[..., Any], *arguments: Any) -> Future[Any]:
@@ -68,7 +84,7 @@ class WorkerProcess:
     @property
     def came_up(self) -> bool:
         """Whether the process has begun to work."""
-        return self._pid is not None and self._pid.done() and self._pid.exception() is None
+        return self._first is not None and self._first.done() and not self._first.exception()
 
     def seconds_at_work(self) -> float:
         """Return for how long the last work has been going on, start of the process left out."""
@@ -76,13 +92,12 @@ class WorkerProcess:
 
     def end(self) -> None:
         """Kill the process if there is one; the next work gets a new one."""
-        executor, pid = self._executor, self._pid
-        self._executor = self._pid = None
+        executor = self._executor
+        self._executor = self._first = None
         if executor is None:
             return
-        if pid is not None and pid.done() and pid.exception() is None:
-            with suppress(ProcessLookupError):
-                os.kill(pid.result(), getattr(signal, "SIGKILL", signal.SIGTERM))
+        for process in self._context.processes:
+            process.kill()
         executor.shutdown(wait=False, cancel_futures=True)
 
     def close(self) -> None:
@@ -91,11 +106,11 @@ class WorkerProcess:
             self._executor.shutdown(wait=True, cancel_futures=True)
 
     def _start(self) -> None:
-        context = multiprocessing.get_context("spawn")
+        self._context = _KnownProcesses()
         with _one_thread(), _deaf_to_interrupts():
-            self._executor = ProcessPoolExecutor(1, context, _prepare)
-            self._pid = self._executor.submit(os.getpid)
-        self._pid.add_done_callback(self._ready)
+            self._executor = ProcessPoolExecutor(1, self._context, _prepare)
+            self._first = self._executor.submit(os.getpid)
+        self._first.add_done_callback(self._ready)
 
     def _ready(self, _: Future[int]) -> None:
         self._since = time.monotonic()
