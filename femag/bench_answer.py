@@ -13,7 +13,7 @@ from rich.table import Table
 from rich.text import Text
 
 from femag.answer import columns
-from femag.bench import Loop, MeasuredCurve
+from femag.bench import Loop, MeasuredCurve, MeasuredLoss
 from femag.units import with_unit
 
 FORMAT = "gapfield bench 1"
@@ -39,8 +39,13 @@ ERRORS_NOTE = (
 )
 
 
-def print_bench(loops: Sequence[Loop], curve: MeasuredCurve | None, console: Console) -> None:
-    """Print one loop in full or several in a table, then the curve if there is one."""
+def print_bench(
+    loops: Sequence[Loop],
+    curve: MeasuredCurve | None,
+    loss: MeasuredLoss | None,
+    console: Console,
+) -> None:
+    """Print one loop in full or several in a table, then curve and loss if there are any."""
     parts: list[Text | Table | str] = [Text(_core(loops[0])), ""]
     if len(loops) == 1:
         parts += [Text(_recorded(loops[0])), "", _readings(loops[0])]
@@ -57,6 +62,8 @@ def print_bench(loops: Sequence[Loop], curve: MeasuredCurve | None, console: Con
             _points(curve),
             *(Text(f"note: {note}") for note in curve.notes),
         ]
+    if loss is not None:
+        parts += ["", Text(_loss(loss)), *(Text(f"note: {note}") for note in loss.notes)]
     for part in (*parts, "", Text(CAUTION)):
         console.print(part, highlight=False)
 
@@ -139,12 +146,25 @@ def _points(curve: MeasuredCurve) -> Table:
     return table
 
 
-def bench_json(loops: Sequence[Loop], curve: MeasuredCurve | None) -> str:
-    """Return loops and curve as JSON, SI units."""
+def _loss(loss: MeasuredLoss) -> str:
+    fit = loss.fit
+    if fit is None:
+        return f"Loss density of {len(loss.readings)} captures with a sine, without parameters."
+    return (
+        f"Loss density under a sine: {fit.k:.4g} f^{fit.alpha:.4g} B^{fit.beta:.4g} W/m3 with f in "
+        f"Hz and B in T, {fit.source.removeprefix('bench; ')}."
+    )
+
+
+def bench_json(
+    loops: Sequence[Loop], curve: MeasuredCurve | None, loss: MeasuredLoss | None
+) -> str:
+    """Return loops, curve and loss as JSON, SI units."""
     document: dict[str, Any] = {
         "format": FORMAT,
         "captures": [_document(loop) for loop in loops],
         "curve": None if curve is None else asdict(curve),
+        "loss": None if loss is None else asdict(loss),
     }
     return json.dumps(document, indent=2, allow_nan=False) + "\n"
 

@@ -13,7 +13,7 @@ from femag.command_output import make_folder
 from femag.errors import InputError
 
 if TYPE_CHECKING:
-    from femag.bench import CoreUnderTest, Loop, MeasuredCurve
+    from femag.bench import CoreUnderTest, Loop, MeasuredCurve, MeasuredLoss
 
 FOLDER_FILES = ("bench.json", "loop.png", "waveforms.png")
 GEOMETRY = "--area and --path, or --core"
@@ -186,23 +186,25 @@ def _answer(
     out: Path | None,
 ) -> None:
     """Write files, then print."""
+    from femag.bench import measured_loss
     from femag.bench.normal_curve import LEAST_TIPS, middle_curve, normal_curve
     from femag.bench_answer import bench_json, print_bench
 
     curve: MeasuredCurve | None = None
+    loss: MeasuredLoss | None = None
     if len(loops) >= LEAST_TIPS:
-        curve = normal_curve(loops)
+        curve, loss = normal_curve(loops), measured_loss(loops, temperature)
     elif material is not None:
         curve = middle_curve(max(loops, key=lambda loop: loop.readings.peak_flux_density))
-    _write(loops, curve, material, name, temperature, json, out)
+    _write(loops, curve, loss, material, name, temperature, json, out)
     if json == "-":
-        typer.echo(bench_json(loops, curve), nl=False)
+        typer.echo(bench_json(loops, curve, loss), nl=False)
         return
     from rich.console import Console
 
     from femag.answer import WIDTH
 
-    print_bench(loops, curve, Console(width=WIDTH))
+    print_bench(loops, curve, loss, Console(width=WIDTH))
     written = [
         *([material] if material else []),
         *([out / file for file in FOLDER_FILES] if out else []),
@@ -214,6 +216,7 @@ def _answer(
 def _write(
     loops: Sequence[Loop],
     curve: MeasuredCurve | None,
+    loss: MeasuredLoss | None,
     material: Path | None,
     name: str | None,
     temperature: float,
@@ -227,11 +230,11 @@ def _write(
 
     with ExitStack() as stack:
         if material is not None and curve is not None:
-            text = material_toml(curve, name or material.stem, temperature)
+            text = material_toml(curve, name or material.stem, temperature, loss)
             stack.enter_context(whole_file(material)).write_text(text, encoding="utf-8")
         if json is not None and json != "-":
             target = stack.enter_context(whole_file(json))
-            target.write_text(bench_json(loops, curve), encoding="utf-8")
+            target.write_text(bench_json(loops, curve, loss), encoding="utf-8")
         if out is None:
             return
         from femag.plot import loop_figure, waveform_figure, write_figure
@@ -240,7 +243,7 @@ def _write(
         document, loop, waveforms = (
             stack.enter_context(whole_file(out / file)) for file in FOLDER_FILES
         )
-        document.write_text(bench_json(loops, curve), encoding="utf-8")
+        document.write_text(bench_json(loops, curve, loss), encoding="utf-8")
         largest = max(loops, key=lambda one: one.readings.peak_flux_density)
         write_figure(lambda ax: loop_figure(loops, ax, curve), loop)
         write_figure(lambda ax: waveform_figure(largest, ax), waveforms)

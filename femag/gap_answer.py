@@ -11,7 +11,7 @@ from femag.target_gap import TargetGap
 from femag.target_turns import TargetTurns
 from femag.tolerance_answer import budget_lines, spread_line
 from femag.tolerance_budget import SampledSpread
-from femag.units import with_unit
+from femag.units import exact_text, with_unit
 
 GRINDING = 0.01e-3
 """Change of the gap in m whose effect is printed."""
@@ -45,7 +45,7 @@ def print_gap(
     table.show_header = False
     share = found.slope * GRINDING / value
     rows = (
-        ("gap", f"{1e3 * found.gap:.4g} mm", f"for {with_unit(found.target, 'H', 5)}"),
+        ("gap", exact_text(found.gap, "m", "m"), f"for {with_unit(found.target, 'H', 5)}"),
         ("inductance", with_unit(value, "H", 5), f"between {_between(found)}"),
         ("0.01 mm more", f"{share:+.2%}", "of the inductance, from the energies' derivative"),
         ("flux density", f"{found.flux_density:.4f} T", f"greatest mean: {_where(found)}"),

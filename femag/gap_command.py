@@ -37,7 +37,9 @@ JsonOption = Annotated[
 ]
 WriteOption = Annotated[
     Path | None,
-    typer.Option("--write", metavar="FILE", help="Write the design with that gap."),
+    typer.Option(
+        "--write", metavar="FILE", help="Write the design with that gap, all else as it is."
+    ),
 ]
 
 
@@ -58,7 +60,7 @@ def gap_command(
     from rich.console import Console
 
     from femag.answer import WIDTH
-    from femag.design_file import design_toml, read_design
+    from femag.design_file import changed_design_file, read_design
     from femag.export.gap_file import gap_json
     from femag.export.whole_file import whole_file
     from femag.gap_answer import print_gap
@@ -76,9 +78,8 @@ def gap_command(
         check_spares(design, "the design", option, file)
     wanted = quantity("--inductance", inductance, "H")
     current = None if at is None else quantity("--at", at, "A")
-    base = read_design(design)
-    if turns is not None:
-        base = with_turns(base, turns)
+    own = read_design(design)
+    base = own if turns is None else with_turns(own, turns)
     by_turns = None
     if flux_density is not None:
         limit = quantity("--flux-density", flux_density, "T")
@@ -87,11 +88,11 @@ def gap_command(
     spread = None if sample is None else sampled_spread(found.design, sample)
     text = gap_json(found, by_turns, spread)
     with ExitStack() as stack:
+        if write is not None:
+            changed = changed_design_file(design, own, found.design, write)
+            stack.enter_context(whole_file(write)).write_bytes(changed.encode())
         if json is not None and json != "-":
             stack.enter_context(whole_file(json)).write_text(text, encoding="utf-8")
-        if write is not None:
-            target = stack.enter_context(whole_file(write))
-            target.write_text(design_toml(found.design), encoding="utf-8")
     if json == "-":
         typer.echo(text, nl=False)
         return

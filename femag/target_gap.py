@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import time
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
@@ -29,6 +30,8 @@ SHARE = 0.5
 """Share of the tolerance that the middle of the bounds may be off; the bounds have the rest."""
 TABLE = 60
 """Gaps at which every hand formula is tabulated."""
+COARSEST_DIGIT = 7
+"""Decimals of a gap in m that is found: 0.1 um, finer where the tolerance asks for it."""
 STEP = 1e-4
 """Change of the gap for its derivative, over the gap."""
 
@@ -147,7 +150,8 @@ def gap_for(
     The design's first gap is changed, its kind, pieces and filling kept; a design without a gap
     gets one in the post. Newton's method on the reluctance 1/L, which hardly bends with the gap,
     held between gaps that are known to be too short and too long; more gap is always less
-    inductance.
+    inductance. Gaps are whole tenths of a micrometre, or finer where rounding would take more than
+    a quarter of the tolerance.
 
     Parameters
     ----------
@@ -219,13 +223,17 @@ class _Search:
     ) -> None:
         self.design, self.target, self.hand, self.start = design, target, hand, start
         self.solutions = 0
-        self.short, self.long = _shortest_gap(design), _longest_gap(design)
+        self.short, self.long = (
+            _in_digits(gap, design.tolerance)
+            for gap in (_shortest_gap(design), _longest_gap(design))
+        )
 
     def run(self) -> tuple[Design, FieldSolution, float]:
         """Return design, fields and slope of the inductance (H/m) at the gap that is found."""
         gap = self._first_gap()
         low, high = self.short, self.long
         while self.solutions < MOST_SOLUTIONS:
+            gap = _in_digits(gap, self.design.tolerance)
             design = with_gap(self.design, gap)
             solution, slope = self._solved(design)
             bounds = inductance_bounds(solution)
@@ -290,6 +298,15 @@ class _Search:
 
 def _longer(design: Design, change: float) -> Design:
     return with_gap(design, design.gaps[0].length + change)
+
+
+def _in_digits(gap: float, tolerance: float) -> float:
+    """Return a gap in few digits, so that rounding takes a quarter of the tolerance at most.
+
+    The inductance changes by no larger share than the gap.
+    """
+    needed = -math.floor(math.log10(0.5 * tolerance * gap))
+    return round(gap, max(COARSEST_DIGIT, needed))
 
 
 def _shortest_gap(design: Design) -> float:

@@ -1,4 +1,5 @@
 import json
+import re
 from dataclasses import replace
 from pathlib import Path
 
@@ -86,7 +87,7 @@ def test_the_command_writes_a_design_that_meets_the_target(
     tmp_path: Path, pot_26_16: fm.Design, capsys: pytest.CaptureFixture[str]
 ) -> None:
     file = tmp_path / "design.toml"
-    file.write_text(fm.design_toml(pot_26_16))
+    file.write_text("# board 7\n" + fm.design_toml(pot_26_16))
     out, answer = tmp_path / "gapped.toml", tmp_path / "gap.json"
     arguments = ["gap", str(file), "--inductance", "250 uH", "--at", "3 A"]
     assert cli.main([*arguments, "--json", str(answer), "--write", str(out)]) == 0
@@ -98,7 +99,10 @@ def test_the_command_writes_a_design_that_meets_the_target(
     assert {entry["name"] for entry in document["hand"]} >= {"no fringing", "round edge"}
     result = fm.solve(fm.read_design(out))
     assert result.current == 3.0
-    assert result.design.gaps[0].length == pytest.approx(document["gap"], rel=1e-9)
+    assert result.design.gaps[0].length == document["gap"] == round(document["gap"], 7)
+    (shown,) = re.findall(r"^ *gap +([\d.]+ mm) +for", printed, re.MULTILINE)
+    kept = file.read_text().replace('length = "0.5 mm"', f'length = "{shown}"')
+    assert out.read_text() == kept.replace('current = "1 A"', 'current = "3 A"')
     assert result.inductance.value == pytest.approx(250e-6, rel=2e-3)
 
 

@@ -3,6 +3,7 @@
 from femag.bench.capture import Capture, CoreUnderTest
 from femag.bench.column_choice import CaptureColumns, read_capture
 from femag.bench.loop import Loop, Readings, loop_of
+from femag.bench.measured_loss import MeasuredLoss, measured_loss
 from femag.bench.normal_curve import MeasuredCurve, material_toml, middle_curve, normal_curve
 
 __all__ = [
@@ -11,9 +12,11 @@ __all__ = [
     "CoreUnderTest",
     "Loop",
     "MeasuredCurve",
+    "MeasuredLoss",
     "Readings",
     "loop_of",
     "material_toml",
+    "measured_loss",
     "middle_curve",
     "normal_curve",
     "read_capture",

@@ -11,11 +11,15 @@ import numpy as np
 
 from femag.bench.branches import branches
 from femag.bench.loop import Loop
+from femag.bench.measured_loss import MeasuredLoss, loss_toml
 from femag.errors import InputError
 from femag.units import MU_0, with_unit
 
 LEAST_TIPS = 3
 """Loops that make a normal curve."""
+
+EQUAL_FREQUENCY = 0.05
+"""Share within which two frequencies are one."""
 
 EQUAL_DRIVE = 0.01
 """Share of H within which two tips are averaged."""
@@ -52,7 +56,8 @@ class MeasuredCurve:
 def normal_curve(loops: Sequence[Loop]) -> MeasuredCurve:
     """Return the curve through the tips of loops at several drives.
 
-    Tips within 1 % of each other in H are averaged.
+    Tips within 1 % of each other in H are averaged. Where one frequency has three loops or more,
+    the lowest such frequency makes the curve alone: loss widens loops as the frequency rises.
 
     Parameters
     ----------
@@ -65,6 +70,7 @@ def normal_curve(loops: Sequence[Loop]) -> MeasuredCurve:
         If they are too few, or B does not rise from each to the next at least as in vacuum.
     """
     _refuse_biased(loops)
+    loops, notes = _of_lowest_frequency(loops)
     tips = sorted(
         (loop.readings.peak_field_strength, loop.readings.peak_flux_density, loop.name)
         for loop in loops
@@ -89,8 +95,21 @@ def normal_curve(loops: Sequence[Loop]) -> MeasuredCurve:
                 accepted="captures of one core, with the same turns and scales",
             )  # fmt: skip
     merged = len(tips) - len(groups)
-    notes = (f"{merged + 1} captures at nearly equal drive were averaged",) if merged else ()
+    if merged:
+        notes = (*notes, f"{merged + 1} captures at nearly equal drive were averaged")
     return _curve(points, "normal curve: tips of loops at several drives", loops, notes)
+
+
+def _of_lowest_frequency(loops: Sequence[Loop]) -> tuple[list[Loop], tuple[str, ...]]:
+    """Return the loops at the lowest frequency that has enough, all if none has; and a note."""
+    ordered = sorted(loops, key=lambda loop: loop.frequency)
+    for lowest in ordered:
+        limits = lowest.frequency, (1.0 + EQUAL_FREQUENCY) * lowest.frequency
+        chosen = [loop for loop in ordered if limits[0] <= loop.frequency <= limits[1]]
+        if len(chosen) >= LEAST_TIPS:
+            said = f"from the {len(chosen)} captures at {with_unit(lowest.frequency, 'Hz')} alone"
+            return chosen, (said,) if len(chosen) < len(ordered) else ()
+    return ordered, ()
 
 
 def middle_curve(loop: Loop) -> MeasuredCurve:
@@ -122,7 +141,9 @@ def middle_curve(loop: Loop) -> MeasuredCurve:
     return _curve(points, kind, [loop], ())
 
 
-def material_toml(curve: MeasuredCurve, name: str, temperature: float = 25.0) -> str:
+def material_toml(
+    curve: MeasuredCurve, name: str, temperature: float = 25.0, loss: MeasuredLoss | None = None
+) -> str:
     """Return a material file.
 
     Parameters
@@ -133,15 +154,18 @@ def material_toml(curve: MeasuredCurve, name: str, temperature: float = 25.0) ->
         Of the material.
     temperature : float
         Of the core while it was measured, degrees Celsius.
+    loss : MeasuredLoss, optional
+        Its readings go into the file where they fix the loss.
     """
     low, high = (with_unit(frequency, "Hz") for frequency in curve.frequencies)
     span = low if low == high else f"{low} to {high}"
     source = f"bench, {curve.kind}; {span}; {', '.join(curve.captures)}"
     points = ",\n".join(f"  [{h:.{DIGITS}g}, {b:.{DIGITS}g}]" for h, b in curve.points)
+    losses = "" if loss is None or loss.fit is None else f"\n{loss_toml(loss, 'curve.loss')}"
     return (
         f"name = {_toml_text(name)}\nsource = {_toml_text(source)}\n\n"
         '[units]\nfield_strength = "A/m"\nflux_density = "T"\n\n'
-        f'[[curve]]\ntemperature = "{temperature:g} C"\npoints = [\n{points},\n]\n'
+        f'[[curve]]\ntemperature = "{temperature:g} C"\npoints = [\n{points},\n]\n{losses}'
     )
 
 

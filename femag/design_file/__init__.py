@@ -1,5 +1,6 @@
 """Design files: TOML in and out, checked key by key."""
 
+from femag.design_file.changed_file import changed_design_file
 from femag.design_file.keys import (
     as_written,
     files_of,
@@ -23,6 +24,7 @@ from femag.design_file.writing import design_document, design_toml
 __all__ = [
     "DesignTable",
     "as_written",
+    "changed_design_file",
     "check_tables",
     "design_document",
     "design_from_document",

@@ -160,18 +160,25 @@ def as_written(key: str, value: Any) -> Any:
     return exact_text(float(value), unit, "m" if unit == "m" else "")
 
 
+def named_files(document: Document) -> Iterator[tuple[str, str]]:
+    """Yield dotted key and path, as it is written, of every file that a design document names."""
+    core, drive = document.get("core"), document.get("drive")
+    if isinstance(core, Mapping):
+        material, extra = core.get("material"), core.get("catalogue")
+        if isinstance(material, str) and is_material_file(material):
+            yield "core.material", material
+        if isinstance(material, Mapping) and isinstance(material.get("file"), str):
+            yield "core.material.file", material["file"]
+        if isinstance(extra, str):
+            yield "core.catalogue", extra
+    if isinstance(drive, Mapping) and isinstance(drive.get("waveform"), str):
+        yield "drive.waveform", drive["waveform"]
+
+
 def files_of(document: Document) -> Iterator[str]:
     """Yield the paths of the files that a design document names, as they are written."""
-    core = document.get("core")
-    if not isinstance(core, Mapping):
-        return
-    material, extra = core.get("material"), core.get("catalogue")
-    if isinstance(material, str) and is_material_file(material):
-        yield material
-    if isinstance(material, Mapping) and isinstance(material.get("file"), str):
-        yield material["file"]
-    if isinstance(extra, str):
-        yield extra
+    for _, path in named_files(document):
+        yield path
 
 
 def folder_of(file: str | None) -> Path:

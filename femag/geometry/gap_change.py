@@ -68,4 +68,5 @@ def _is_at_plate(gap: Gap, half: float) -> bool:
 
 
 def _at_plate(gap: Gap, half: float) -> Gap:
-    return replace(gap, offset=float(np.copysign(half - gap.length / 2, gap.offset)))
+    middle = round(half - gap.length / 2, 15)  # no digits of rounding in files
+    return replace(gap, offset=float(np.copysign(middle, gap.offset)))

@@ -176,7 +176,7 @@ class Plan:
         documents = [
             self._case(0, [*first[:place], row, *first[place + 1 :]]).document
             for place, factor in enumerate(self.factors)
-            if any(key.startswith("core") for key in factor.keys)
+            if any(key.startswith(("core", "drive")) for key in factor.keys)
             for row in factor.rows
         ]
         documents.append(self._case(0, first).document)

@@ -158,6 +158,21 @@ def test_a_case_is_known_by_design_files_and_versions(folder: Path) -> None:
     assert study_of(folder, text).plan.identity != identity
 
 
+def test_a_waveform_that_changes_makes_other_cases(folder: Path) -> None:
+    period = "t [us];I [mA]\n2;500\n6;1500\n12;500\n"
+    (folder / "p.csv").write_text(period)
+    text = """[axes]\n"drive.waveform" = ["p.csv"]\n"""
+
+    def key() -> str:
+        plan = study_of(folder, text).plan
+        return plan.key(plan.case(0), {"gapfield": "1"})
+
+    first, identity = key(), study_of(folder, text).plan.identity
+    (folder / "p.csv").write_text(period.replace("1500", "1600"))
+    assert key() != first
+    assert study_of(folder, text).plan.identity != identity
+
+
 @pytest.mark.parametrize(
     ("text", "problem"),
     [
