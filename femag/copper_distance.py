@@ -164,24 +164,17 @@ def keep_out(
     own = room.inner_radius - post
     found = _checked_distances(distances, gap.length, room, post)
     edges = tuple(sorted({*found, own}))
-    linear = replace(
-        design,
-        material=LinearCurve(design.material.initial_permeability),
-        windings=tuple(_strips(edges, room, post)),
-        driven=(),
-        ripple=None,
-        detail="block",
-        current=1.0,
-    )
-    spread = _squares(replace(linear, gaps=(_spread_gap(linear, gap),)), edges, found, own)
-    curves = []
-    for count in pieces:
-        divided = replace(gap, pieces=count, pitch=None, offset=0.0)
-        squares = _squares(replace(linear, gaps=(divided,)), edges, found, own)
-        winding = squares.windings / spread.windings
-        layer = 1.0 + (squares.layers - spread.layers) / spread.at_copper
-        pitch = design.core.window_height / count
-        curves.append(KeepOutCurve(count, pitch, tuple(winding.tolist()), tuple(layer.tolist())))
+    linear = _linear_design(design, _strips(edges, room, post))
+
+    def squares(of: Gap) -> _Squares:
+        return _squares(replace(linear, gaps=(of,)), edges, found, own)
+
+    spread = squares(_spread_gap(linear, gap))
+    height = design.core.window_height
+    curves = [
+        _curve(n, height / n, squares(replace(gap, pieces=n, pitch=None, offset=0.0)), spread)
+        for n in pieces
+    ]
     return KeepOut(
         design=design,
         gap=gap.length,
@@ -192,6 +185,26 @@ def keep_out(
         versions=library_versions(),
         design_hash=design_hash(design),
     )
+
+
+def _linear_design(design: Design, strips: Sequence[Winding]) -> Design:
+    """Return the design at small signal, 1 A in strips of copper."""
+    return replace(
+        design,
+        material=LinearCurve(design.material.initial_permeability),
+        windings=tuple(strips),
+        driven=(),
+        ripple=None,
+        detail="block",
+        current=1.0,
+    )
+
+
+def _curve(pieces: int, pitch: float, squares: _Squares, spread: _Squares) -> KeepOutCurve:
+    """Return the squared field of a divided gap over that of the gap spread evenly."""
+    winding = squares.windings / spread.windings
+    layer = 1.0 + (squares.layers - spread.layers) / spread.at_copper
+    return KeepOutCurve(pieces, pitch, tuple(winding.tolist()), tuple(layer.tolist()))
 
 
 def _gap_in_post(design: Design) -> Gap:

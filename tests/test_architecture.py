@@ -9,7 +9,7 @@ import femag
 
 ROOT = Path(femag.__file__).parent
 LAYERS = (
-    ("units", "errors", "line_search"),
+    ("units", "errors", "line_search", "text_file", "csv_columns"),
     ("materials", "geometry", "ripple", "requirements"),
     ("bench",),
     ("part_tolerances",),

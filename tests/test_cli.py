@@ -4,7 +4,6 @@ import pty
 import signal
 import subprocess
 import sys
-import time
 from importlib.resources import files
 from pathlib import Path
 
@@ -14,6 +13,7 @@ import femag as fm
 from femag import cli
 from femag.field import adapt
 
+SOURCES = Path(fm.__file__).parents[1]
 DEMO = files("femag").joinpath("demo.toml").read_text(encoding="utf-8")
 
 
@@ -230,24 +230,32 @@ def test_help_imports_no_library_behind_the_numbers() -> None:
     assert done.stdout.splitlines()[-1] == "[]"
 
 
-def slow_run(design: Path, stderr: int) -> subprocess.Popen[str]:
-    """Start a solution that takes several seconds."""
-    design.write_text(DEMO.replace("tolerance = 1e-3", "tolerance = 1e-6"))
-    return subprocess.Popen(
-        [sys.executable, "-m", "femag.cli", "solve", str(design), "--json", "r.json"],
-        stdout=subprocess.PIPE,
-        stderr=stderr,
-        text=True,
-        cwd=design.parent,
-        env=os.environ | {"TERM": "xterm", "COLUMNS": "80"},
-    )
+HELD_AT_FIRST_REFINEMENT = """
+import sys, time
+from femag import cli, result
+solved = result.adapted_solution
+def held(solution):
+    print("solved once", flush=True)
+    time.sleep(600)
+def adapted(problem, current, tolerance, progress, mesh):
+    return solved(problem, current, tolerance, held, mesh)
+result.adapted_solution = adapted
+sys.exit(cli.main(sys.argv[1:]))
+"""
 
 
 def test_interrupt_ends_cleanly(design: Path) -> None:
-    process = slow_run(design, subprocess.PIPE)
-    time.sleep(2.0)
+    process = subprocess.Popen(
+        [sys.executable, "-c", HELD_AT_FIRST_REFINEMENT, "solve", str(design), "--json", "r.json"],
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+        cwd=design.parent,
+    )
+    assert process.stdout is not None
+    assert process.stdout.readline() == "solved once\n"
     process.send_signal(signal.SIGINT)
-    out, err = process.communicate(timeout=20)
+    out, err = process.communicate()
     assert (process.returncode, out, err) == (130, "", "gapfield: stopped\n")
     assert list(design.parent.iterdir()) == [design]
 
@@ -257,7 +265,15 @@ def test_progress_shows_on_a_terminal(design: Path) -> None:
         terminal, ours = pty.openpty()
     except OSError as error:
         pytest.skip(f"no pseudo-terminal here: {error}")
-    process = slow_run(design, ours)
+    design.write_text(DEMO.replace("tolerance = 1e-3", "tolerance = 1e-6"))
+    process = subprocess.Popen(
+        [sys.executable, "-m", "femag.cli", "solve", str(design), "--json", "r.json"],
+        stdout=subprocess.PIPE,
+        stderr=ours,
+        text=True,
+        cwd=design.parent,
+        env=os.environ | {"TERM": "xterm", "COLUMNS": "80"},
+    )
     os.close(ours)
     shown = b""
     while b"unknowns" not in shown:
@@ -307,7 +323,7 @@ def test_missing_system_libraries_of_gmsh_are_one_line(design: Path, tmp_path: P
         capture_output=True,
         text=True,
         cwd=tmp_path,
-        env=os.environ | {"PYTHONPATH": str(stand_in)},
+        env=os.environ | {"PYTHONPATH": os.pathsep.join((str(stand_in), str(SOURCES)))},
     )
     assert (done.returncode, done.stdout) == (3, "")
     assert done.stderr.count("\n") == 1

@@ -41,6 +41,7 @@ from femag.geometry import (
 )
 from femag.part_tolerances import PartTolerances
 from femag.requirements import Requirements
+from femag.text_file import text_of_file
 
 
 def read_design(path: str | Path) -> Design:
@@ -62,13 +63,7 @@ def read_document(path: str | Path) -> dict[str, Any]:
     InputError
         If the file cannot be read.
     """
-    try:
-        text = Path(path).read_text(encoding="utf-8-sig")
-    except UnicodeDecodeError as error:
-        raise InputError("not UTF-8 text", file=str(path), accepted="a TOML file") from error
-    except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
-    return document_of_toml(text, str(path))
+    return document_of_toml(text_of_file(path, "a TOML file"), str(path))
 
 
 def design_from_toml(text: str, file: str | None = None) -> Design:

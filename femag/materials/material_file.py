@@ -20,6 +20,7 @@ from femag.materials.powder import powder_points
 from femag.materials.steinmetz import Steinmetz
 from femag.materials.tabulated import TabulatedCurve
 from femag.materials.temperature import Material
+from femag.text_file import text_of_file
 from femag.units import celsius, si_value
 
 Array = NDArray[np.float64]
@@ -44,12 +45,7 @@ def read_material(path: str | Path) -> Material:
         If the file cannot be read or used; it names the file.
     """
     file = Path(path)
-    try:
-        text = file.read_text(encoding="utf-8-sig")
-    except UnicodeDecodeError as error:
-        raise InputError("not UTF-8 text", file=str(path), accepted="TOML or CSV") from error
-    except OSError as error:
-        raise InputError(f"cannot be read ({error.strerror})", file=str(path)) from error
+    text = text_of_file(file, "TOML or CSV")
     try:
         if file.suffix.casefold() == ".toml":
             return material_of_document(_document(text))

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from femag.field.bounds import FieldSolution
 from femag.mesh import SectionMesh
-from femag.quantities.section_means import nodal_u
+from femag.quantities.inside_elements import flux_field, nodal_u
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -49,15 +49,9 @@ def field_map(solution: FieldSolution, parts: int = 4) -> FieldMap:
 
     The half below a mirror plane is added.
     """
-    basis = solution.sides.discretisation.basis
     local, pieces = _divided_triangle(parts)
-    r, z = basis.mapping.F(local)
-    local_u = nodal_u(solution)[basis.element_dofs]
-    u, du = np.zeros_like(r), np.zeros((2, *r.shape))
-    for i, coefficient in enumerate(local_u):
-        shape = basis.elem.gbasis(basis.mapping, local, i)[0]
-        u += coefficient[:, None] * np.asarray(shape)
-        du += coefficient[:, None] * shape.grad
+    r, z = solution.sides.discretisation.basis.mapping.F(local)
+    u, b = flux_field(solution, nodal_u(solution), local)
     first = local.shape[1] * np.arange(len(r))[:, None, None]
     role = _roles(solution.sides.mesh)
     half = FieldMap(
@@ -65,7 +59,7 @@ def field_map(solution: FieldSolution, parts: int = 4) -> FieldMap:
         z=z.ravel(),
         triangles=(first + pieces).reshape(-1, 3),
         flux=(2.0 * np.pi * r**2 * u).ravel(),
-        flux_density=np.hypot(r * du[1], 2.0 * u + r * du[0]).ravel(),
+        flux_density=np.hypot(*b).ravel(),
         role=np.repeat(role, len(pieces)),
         outlines={name: _outline(solution.sides.mesh, role == name) for name in np.unique(role)},
     )

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from femag.field.bounds import FieldSolution
-from femag.quantities.section_means import located, nodal_u
+from femag.quantities.inside_elements import above_mirror, flux_field, located, nodal_u
 
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
@@ -56,20 +56,16 @@ def point_fields(solution: FieldSolution, points: Array) -> PointFields:
     """
     points = np.asarray(points, dtype=float)
     mesh = solution.sides.mesh
-    mirrored = (points[1] < 0.0) & (mesh.section.copies == 2)
-    inside = np.where(mirrored, -points[1], points[1])
-    elements = mesh.triangles.nelements
-    pieces = np.array_split(
-        np.stack([points[0], inside]), 1 + points.shape[1] * elements // AT_ONCE, axis=1
-    )
+    inside, sign = above_mirror(solution, points)
+    pairs = points.shape[1] * mesh.triangles.nelements
+    pieces = np.array_split(inside, 1 + pairs // AT_ONCE, axis=1)
     found = [_fields_inside(solution, piece) for piece in pieces]
     u, b, element = (np.concatenate(parts, axis=-1) for parts in zip(*found, strict=True))
     h = _field_strength(solution, b, element)
-    flip = np.where(mirrored, -1.0, 1.0)
     return PointFields(
         points=points,
-        flux_density=b * [flip, np.ones_like(flip)],
-        field_strength=h * [flip, np.ones_like(flip)],
+        flux_density=b * [sign, np.ones_like(sign)],
+        field_strength=h * [sign, np.ones_like(sign)],
         flux=2.0 * np.pi * points[0] ** 2 * u,
         region=tuple(mesh.names[index] for index in mesh.region[element]),
     )
@@ -77,16 +73,9 @@ def point_fields(solution: FieldSolution, points: Array) -> PointFields:
 
 def _fields_inside(solution: FieldSolution, points: Array) -> tuple[Array, Array, Index]:
     """Return u, B (2, n) and the element of points of the mesh."""
-    basis = solution.sides.discretisation.basis
     element, local = located(solution, points)
-    of_element = nodal_u(solution)[basis.element_dofs[:, element]]
-    u, du = np.zeros(points.shape[1]), np.zeros_like(points)
-    for i, coefficient in enumerate(of_element):
-        shape = basis.elem.gbasis(basis.mapping, local[:, :, None], i, tind=element)[0]
-        u += coefficient * np.asarray(shape)[:, 0]
-        du += coefficient * shape.grad[:, :, 0]
-    r = points[0]
-    return u, np.stack([-r * du[1], 2.0 * u + r * du[0]]), element
+    u, b = flux_field(solution, nodal_u(solution), local[:, :, None], element)
+    return u[:, 0], b[:, :, 0], element
 
 
 def _field_strength(solution: FieldSolution, b: Array, element: Index) -> Array:

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from femag.field.bounds import FieldSolution
-from femag.quantities.section_means import nodal_u
+from femag.quantities.inside_elements import flux_field, from_quadrature, nodal_u
 
 Array = NDArray[np.float64]
 
@@ -45,23 +45,13 @@ class NodalField:
 
 def nodal_field(solution: FieldSolution) -> NodalField:
     """Return the fields of a solution at the nodes of every element."""
-    discretisation, sides = solution.sides.discretisation, solution.sides
-    basis = discretisation.basis
-    points = np.asarray(basis.mapping.F(NODES)).transpose(1, 2, 0)
-    to_nodes = _quadratics(NODES) @ np.linalg.pinv(_quadratics(basis.quadrature[0]))
-    b, h = solution.flux.field, solution.potential.field
-    if sides.flux.fixed is not None and sides.potential.fixed is not None:
-        b, h = b - sides.flux.fixed, h - sides.potential.fixed
-    u = nodal_u(solution)[discretisation.element_dofs]
+    h, fixed = solution.potential.field, solution.sides.potential.fixed
+    points = solution.sides.discretisation.basis.mapping.F(NODES).transpose(1, 2, 0)
+    u, b = flux_field(solution, nodal_u(solution), NODES)
+    to_nodes = from_quadrature(solution, NODES)
     return NodalField(
         points=points,
         flux=2.0 * np.pi * points[..., 0] ** 2 * u,
-        flux_density=np.einsum("nq,ecq->enc", to_nodes, b),
-        field_strength=np.einsum("nq,ecq->enc", to_nodes, h),
+        flux_density=b.transpose(1, 2, 0),
+        field_strength=np.einsum("nq,ecq->enc", to_nodes, h if fixed is None else h - fixed),
     )
-
-
-def _quadratics(local: Array) -> Array:
-    """Return 1, x, y, x^2, xy and y^2 at local coordinates (2, n), (n, 6)."""
-    x, y = local
-    return np.stack([np.ones_like(x), x, y, x * x, x * y, y * y], axis=1)

@@ -18,7 +18,7 @@ from femag.field.regional import elements_in
 from femag.field.side import Side
 from femag.field.tangent import flux_tangent
 from femag.mesh import SectionMesh
-from femag.quantities.section_means import nodal_values
+from femag.quantities.inside_elements import above_mirror, flux_field, nodal_values
 
 Array = NDArray[np.float64]
 
@@ -51,25 +51,18 @@ class RippleField:
 
     def at_points(self, points: Array) -> Array:
         """Return (B_r, B_z) at points (2, n) of the whole section in m, (2, n), T/A."""
-        mirrored = self.mesh.section.copies == 2
-        sign = np.where(mirrored & (points[1] < 0.0), -1.0, 1.0)
-        inside = np.stack([points[0], sign * points[1]])
+        inside, sign = above_mirror(self.solution, points)
         starts = range(0, points.shape[1], AT_ONCE)
         found = np.hstack([self._inside(inside[:, i : i + AT_ONCE]) for i in starts])
         return np.stack([sign * found[0], found[1]])
 
     def _inside(self, points: Array) -> Array:
         """Return (B_r, B_z) at points of the meshed part, from the element that holds each."""
-        basis, mapping = self.solution.sides.discretisation.basis, self.mesh.triangles.mapping()
+        mapping = self.mesh.triangles.mapping()
         element = np.asarray(self.mesh.triangles.element_finder(mapping)(*points))
         local = mapping.invF(points[:, :, None], tind=element)
-        nodal = nodal_values(self.solution, self.rate)[basis.element_dofs[:, element]]
-        u, du = np.zeros(points.shape[1]), np.zeros_like(points)
-        for i, coefficient in enumerate(nodal):
-            shape = basis.elem.gbasis(mapping, local, i, tind=element)[0]
-            u += coefficient * np.asarray(shape)[:, 0]
-            du += coefficient * shape.grad[:, :, 0]
-        return np.stack([-points[0] * du[1], 2.0 * u + points[0] * du[0]])
+        nodal = nodal_values(self.solution, self.rate)
+        return flux_field(self.solution, nodal, local, element)[1][:, :, 0]
 
     def squared_in(self, regions: Collection[str]) -> float:
         """Return the integral of |B|^2 over the volume of regions, T2 m3/A2, as exact as the field.

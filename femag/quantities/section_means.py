@@ -11,9 +11,9 @@ from numpy.typing import NDArray
 from femag.design import Design
 from femag.field.bounds import FieldSolution
 from femag.geometry import Cut, core_cuts
+from femag.quantities.inside_elements import flux_field, located, nodal_u
 
 Array = NDArray[np.float64]
-Index = NDArray[np.int64]
 
 
 @dataclass(frozen=True)
@@ -72,32 +72,6 @@ def flux_through_discs(solution: FieldSolution, points: Array) -> Array:
     points : array, (2, n)
         r and z in m.
     """
-    basis = solution.sides.discretisation.basis
     element, local = located(solution, points)
-    shapes = [basis.elem.lbasis(local, i)[0] for i in range(6)]
-    u = np.sum(shapes * nodal_u(solution)[basis.element_dofs[:, element]], axis=0)
-    return np.asarray(2.0 * np.pi * points[0] ** 2 * u)
-
-
-def located(solution: FieldSolution, points: Array) -> tuple[Index, Array]:
-    """Return the element that each point lies in (or nearest to) and its place there."""
-    mapping = solution.sides.discretisation.basis.mapping
-    elements = solution.sides.mesh.triangles.nelements
-    everywhere = np.broadcast_to(points[:, None, :], (2, elements, points.shape[1]))
-    local = mapping.invF(everywhere)
-    depth = np.minimum(local.min(axis=0), 1.0 - local.sum(axis=0))
-    element = depth.argmax(axis=0)
-    return element, local[:, element, np.arange(points.shape[1])]
-
-
-def nodal_u(solution: FieldSolution) -> Array:
-    """Return u = A/r in T at every node of the P2 basis."""
-    return nodal_values(solution, solution.flux.x)
-
-
-def nodal_values(solution: FieldSolution, unknowns: Array) -> Array:
-    """Return what the flux side's unknowns (size,) are at every node of the P2 basis."""
-    side, dofs = solution.sides.flux, solution.sides.discretisation.element_dofs
-    nodal = np.zeros(solution.sides.discretisation.basis.N)
-    nodal[dofs] = np.append(unknowns, 0.0)[side.numbering.unknown]
-    return nodal
+    u, _ = flux_field(solution, nodal_u(solution), local[:, :, None], element)
+    return np.asarray(2.0 * np.pi * points[0] ** 2 * u[:, 0])

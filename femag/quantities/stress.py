@@ -28,7 +28,7 @@ from numpy.typing import NDArray
 from femag.field.bounds import FieldSolution
 from femag.field.flux_side import turn_density
 from femag.field.newton import Minimum
-from femag.quantities.section_means import located
+from femag.quantities.inside_elements import from_quadrature, located
 from femag.units import MU_0
 
 Array = NDArray[np.float64]
@@ -147,8 +147,7 @@ class Stress:
         radius = inner + (outer - inner) * (points + 1.0) / 2.0
         ring = np.pi * (outer - inner) * weights * radius
         element, local = located(self.solution, np.array([radius, np.full(CUT_POINTS, height)]))
-        fit = np.linalg.pinv(_quadratics(self.solution.sides.discretisation.basis.quadrature[0]))
-        spread = np.einsum("pk,kq->pq", _quadratics(local), fit)
+        spread = from_quadrature(self.solution, local)
         pulls = []
         for own in self.fields:
             bz, hr = (np.sum(spread * f[element], axis=1) for f in (own.b[:, 1], own.h[:, 0]))
@@ -187,9 +186,3 @@ def _potential_field(solution: FieldSolution) -> SideField:
     b = found.secant[:, None] * found.field
     coenergy = side.density(np.hypot(found.field[:, 0], found.field[:, 1]))
     return SideField(b, h, coenergy - laws.remanence**2 / (2.0 * laws.permeability))
-
-
-def _quadratics(local: Array) -> Array:
-    """Return the powers up to the second of local coordinates (2, n), last axis 6."""
-    x, y = local
-    return np.stack([np.ones_like(x), x, y, x * x, x * y, y * y], axis=-1)

@@ -20,7 +20,7 @@ from femag.field.bounds import FieldSolution
 from femag.materials import MagnetisationCurve
 from femag.plot.flux_map import Window, gap_window, label_places, light_to_dark, section_window
 from femag.quantities import field_map, typical_peak
-from femag.quantities.section_means import nodal_u
+from femag.quantities.inside_elements import nodal_u
 from femag.sheet.field_strength_table import field_strength_table
 from femag.sheet.texts import shown
 

@@ -13,8 +13,8 @@ from femag.field.design_problem import field_problem
 from femag.quantities import copper_loss, wound_copper
 from femag.quantities.ac_factors import foil_crossing_factor, round_crossing_factor, skin_depth
 from femag.quantities.copper_loss import WindingLoss
+from femag.quantities.inside_elements import nodal_values
 from femag.quantities.ripple_field import ripple_field
-from femag.quantities.section_means import nodal_values
 from femag.quantities.turn_field import crossing_square, turn_field
 from femag.units import MU_0
 
