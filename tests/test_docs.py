@@ -56,6 +56,14 @@ def test_design_files_in_a_document_are_designs(name: str) -> None:
         assert design_from_toml(block).turns > 0
 
 
+def test_the_first_design_and_its_requirements_are_accepted() -> None:
+    text = (ROOT / "docs/start.md").read_text(encoding="utf-8")
+    design, requirements = re.findall(r"```toml\n(.*?)```", text, re.DOTALL)
+    found = design_from_toml(f"{design}\n{requirements}")
+    assert found.ripple is not None
+    assert found.requirements is not None
+
+
 def test_every_key_of_the_design_file_is_documented() -> None:
     text = (ROOT / "docs/files-and-commands.md").read_text(encoding="utf-8")
     schema = DesignTable.model_json_schema()
