@@ -14,7 +14,14 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from femag.bench_command import bench_command
-from femag.command_output import check_file, check_targets, make_folder, quantity, shown_progress
+from femag.command_output import (
+    check_file,
+    check_targets,
+    make_folder,
+    quantity,
+    shown_progress,
+    terminal,
+)
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
@@ -144,9 +151,7 @@ def cores_command(
 
     Every number comes with its source.
     """
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.core_answer import print_core, print_core_list
     from femag.geometry import catalogue, matching_cores
 
@@ -159,7 +164,7 @@ def cores_command(
         from femag.plot import core_drawing, write_figure
 
         write_figure(lambda ax: core_drawing(found[0].core(), ax), out)
-    console = Console(width=WIDTH)
+    console = terminal()
     if len(found) == 1:
         print_core(found[0], console)
     else:
@@ -183,13 +188,11 @@ def materials_command() -> None:
 
     Every material comes with its source.
     """
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.material_answer import print_material_list
     from femag.materials import material_library
 
-    print_material_list(material_library(), Console(width=WIDTH))
+    print_material_list(material_library(), terminal())
 
 
 def _with_current(design: Design, current: str | None) -> Design:
@@ -223,11 +226,10 @@ def _answer(
 
         typer.echo(result_json(result), nl=False)
         return code
-    from rich.console import Console
 
-    from femag.answer import WIDTH, print_answer
+    from femag.answer import print_answer
 
-    print_answer(result, Console(width=WIDTH))
+    print_answer(result, terminal())
     if out is not None:
         files = (*FOLDER_FILES, *([COPPER_FILE] if _has_turn_losses(result) else []))
         typer.echo(f"\nWritten to {out}: {', '.join(files)}")

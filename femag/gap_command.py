@@ -8,7 +8,7 @@ from typing import Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, quantity
+from femag.command_output import check_spares, check_targets, quantity, terminal
 from femag.errors import InputError
 
 DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design file.")]
@@ -55,9 +55,7 @@ def gap_command(
 
     In the field, between bounds, beside what every hand formula asks for.
     """
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.design_file import design_toml, read_design
     from femag.export.gap_file import gap_json
     from femag.export.whole_file import whole_file
@@ -95,6 +93,6 @@ def gap_command(
     if json == "-":
         typer.echo(text, nl=False)
         return
-    print_gap(found, Console(width=WIDTH), by_turns, spread)
+    print_gap(found, terminal(), by_turns, spread)
     if write is not None:
         typer.echo(f"\nWritten to {write}")

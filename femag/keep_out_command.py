@@ -8,7 +8,7 @@ from typing import Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, make_folder, quantity
+from femag.command_output import check_spares, check_targets, make_folder, quantity, terminal
 from femag.errors import InputError
 
 FOLDER_FILES = ("keepout.json", "keepout.png")
@@ -43,9 +43,7 @@ def keep_out_command(
 
     Loss by the fringe field against distance, for one gap and for several small ones.
     """
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.copper_distance import PIECES, keep_out
     from femag.design_file import read_design
     from femag.export.keep_out_file import keep_out_json
@@ -73,7 +71,7 @@ def keep_out_command(
     if json == "-":
         typer.echo(text, nl=False)
         return
-    print_keep_out(found, Console(width=WIDTH))
+    print_keep_out(found, terminal())
     if out is not None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
 

@@ -6,7 +6,6 @@ import math
 from collections.abc import Iterator
 
 from rich.console import Console
-from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
@@ -38,7 +37,7 @@ def print_windings(found: WindingMatrix, console: Console) -> None:
 def _matrix(found: WindingMatrix, places: range) -> Table:
     """Return some columns of the matrix, middles of the bounds."""
     head = "inductance"
-    table = columns(head, *(escape(found.names[place]) for place in places), words=[head])
+    table = columns(head, *(found.names[place] for place in places), words=[head])
     for name, turns, row in zip(found.names, found.turns, found.inductance, strict=True):
         shown = [_digits(row[place]) for place in places]
         values = [
@@ -50,7 +49,7 @@ def _matrix(found: WindingMatrix, places: range) -> Table:
 
 
 def _pair(pair: WindingPair) -> Table:
-    head = escape(f"{pair.first} and {pair.second}")
+    head = f"{pair.first} and {pair.second}"
     table = columns(head, "", "", words=[head])
     for words, bounds in _rows(pair):
         digits = _digits(bounds)
