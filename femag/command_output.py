@@ -97,6 +97,30 @@ def quantity(option: str, text: str, unit: str) -> float:
         raise error.changed(key=option, value=text) from error
 
 
+@contextmanager
+def options_named(**texts: str | None) -> Iterator[None]:
+    """Say what the user wrote where an argument that an option gave cannot be used.
+
+    Parameters
+    ----------
+    **texts : str or None
+        By the argument's name, which the option shares: the option's text, if it was given.
+
+    Raises
+    ------
+    InputError
+        That of the work, with option and text instead of argument and SI value.
+    """
+    try:
+        yield
+    except InputError as error:
+        text = texts.get(error.key or "")
+        if text is None:
+            raise
+        option = f"--{str(error.key).replace('_', '-')}"
+        raise error.changed(key=option, value=text) from error
+
+
 def check_spares(source: Path, what: str, option: str, target: str | Path | None) -> None:
     """Refuse to write over what is read.
 
@@ -144,7 +168,7 @@ def terminal(stderr: bool = False) -> Console:
     Parameters
     ----------
     stderr : bool
-        Standard error, as wide as it is, instead of standard output in `femag.answer.WIDTH` columns.
+        Standard error, as wide as it is; else standard output, in `femag.answer.WIDTH` columns.
     """
     from rich.console import Console
 

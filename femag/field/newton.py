@@ -168,16 +168,16 @@ def solved(matrix: csc_matrix, load: Array, ordering: str = FILL_REDUCING) -> Ar
     except RuntimeError as error:
         raise NumericalError(f"a linear system cannot be solved ({error})") from error
     solution = np.asarray(factor.solve(load))
-    error = backward_error(matrix, solution, load)
-    if not error <= BACKWARD_ERROR:
-        raise NumericalError(f"a linear system is solved to a backward error of {error:.1e} only")
+    off = backward_error(matrix, solution, load)
+    if not off <= BACKWARD_ERROR:
+        raise NumericalError(f"a linear system is solved to a backward error of {off:.1e} only")
     return solution
 
 
 def backward_error(matrix: csc_matrix, solution: Array, load: Array) -> float:
     """Return the least relative change of matrix and load that makes a solution exact.
 
-    Normwise, in the maximum norm: |A x - b| / (|A| |x| + |b|), not a number where one is not finite.
+    Normwise, in the maximum norm: |A x - b| / (|A| |x| + |b|); NaN where something is not finite.
 
     References
     ----------
