@@ -8,7 +8,14 @@ from typing import Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, quantity, terminal
+from femag.command_output import (
+    check_file,
+    check_spares,
+    check_targets,
+    options_named,
+    quantity,
+    terminal,
+)
 from femag.errors import InputError
 
 DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design file.")]
@@ -70,6 +77,7 @@ def gap_command(
             accepted="one of the two",
         )  # fmt: skip
     check_targets(json, None)
+    check_file("--write", write, ".toml")
     for option, file in (("--json", json), ("--write", write)):
         check_spares(design, "the design", option, file)
     wanted = quantity("--inductance", inductance, "H")
@@ -77,11 +85,10 @@ def gap_command(
     base = read_design(design)
     if turns is not None:
         base = with_turns(base, turns)
-    by_turns = None
-    if flux_density is not None:
-        limit = quantity("--flux-density", flux_density, "T")
-        by_turns = turns_for(base, wanted, limit, current)
-    found = by_turns.found if by_turns else gap_for(base, wanted, current)
+    limit = None if flux_density is None else quantity("--flux-density", flux_density, "T")
+    with options_named(inductance=inductance, flux_density=flux_density):
+        by_turns = None if limit is None else turns_for(base, wanted, limit, current)
+        found = by_turns.found if by_turns else gap_for(base, wanted, current)
     spread = None if sample is None else sampled_spread(found.design, sample)
     text = gap_json(found, by_turns, spread)
     with ExitStack() as stack:
