@@ -9,7 +9,7 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
-from femag.answer import columns, described
+from femag.answer import columns, described, with_turns
 from femag.coupled_windings import WindingMatrix, WindingPair
 from femag.field.bounds import Bounds
 from femag.units import with_unit
@@ -44,7 +44,7 @@ def _matrix(found: WindingMatrix, places: range) -> Table:
             with_unit(row[place].value, "H", digits)
             for place, digits in zip(places, shown, strict=True)
         ]
-        table.add_row(Text(f"{name}, {turns} turns"), *values)
+        table.add_row(Text(f"{name}, {with_turns(turns)}"), *values)
     return table
 
 
