@@ -61,35 +61,40 @@ def described(design: Design, currents: str | None = None) -> Text:
         core.description,
         *([described_gap(gap) for gap in design.gaps] or ["no gap"]),
     ]
-    drive = f"{design.turns} turns, {currents or f'{design.current:g} A'}"
+    drive = f"{with_turns(design.turns)}, {currents or f'{design.current:g} A'}"
     if design.ripple is not None and currents is None:
         drive += f"\n{described_ripple(design.ripple, design.current)}"
     return Text(f"{', '.join(parts)}\n{design.material.label}\n{drive}")
 
 
+def with_turns(turns: float) -> str:
+    """Return a number of turns in words."""
+    return "1 turn" if turns == 1 else f"{turns} turns"
+
+
 def described_gap(gap: Gap) -> str:
-    """Return a gap in words."""
-    words = [f"{1e3 * gap.length:g} mm gap in the post"]
+    """Return a gap in words, lengths to four digits."""
+    words = [f"{1e3 * gap.length:.4g} mm gap in the post"]
     if gap.leg == "all":
-        words = [f"{1e3 * gap.length:g} mm spacer in all legs"]
+        words = [f"{1e3 * gap.length:.4g} mm spacer in all legs"]
     if gap.pieces > 1:
         words.append(f"in {gap.pieces} pieces")
     if gap.offset:
-        words.append(f"{1e3 * gap.offset:+g} mm off the middle")
+        words.append(f"{1e3 * gap.offset:+.4g} mm off the middle")
     return " ".join([*words, *_described_faces(gap), *_described_filling(gap)])
 
 
 def _described_faces(gap: Gap) -> list[str]:
     words = []
     if gap.rim_length is not None:
-        words.append(f"tapered to {1e3 * gap.rim_length:g} mm at the rim")
+        words.append(f"tapered to {1e3 * gap.rim_length:.4g} mm at the rim")
     if gap.step is not None:
-        inside = f"{1e3 * gap.step.length:g} mm" if gap.step.length else "none"
-        words.append(f"with {inside} inside of {1e3 * gap.step.diameter:g} mm")
+        inside = f"{1e3 * gap.step.length:.4g} mm" if gap.step.length else "none"
+        words.append(f"with {inside} inside of {1e3 * gap.step.diameter:.4g} mm")
     if gap.chamfer:
-        words.append(f"with chamfers of {1e3 * gap.chamfer:g} mm")
+        words.append(f"with chamfers of {1e3 * gap.chamfer:.4g} mm")
     if gap.edge_radius:
-        words.append(f"with edges of radius {1e3 * gap.edge_radius:g} mm")
+        words.append(f"with edges of radius {1e3 * gap.edge_radius:.4g} mm")
     return words
 
 
@@ -150,19 +155,28 @@ def _apart(of_sides: tuple[float, float]) -> str:
 
 
 def _flux_densities(result: Result) -> Table:
-    table = columns("mean flux density", "T", "section, mm2", words=["mean flux density"])
+    values = [mean.flux_density for mean in result.section_means]
+    unit, factor = _flux_density_unit(max(values))
+    table = columns("mean flux density", unit, "section, mm2", words=["mean flux density"])
     for mean in result.section_means:
-        table.add_row(mean.name, f"{mean.flux_density:.4f}", f"{1e6 * mean.area:.1f}")
+        table.add_row(mean.name, f"{mean.flux_density / factor:.4f}", f"{1e6 * mean.area:.1f}")
     return table
+
+
+def _flux_density_unit(largest: float) -> tuple[str, float]:
+    """Return a unit, and how many T it is, in which four decimals show a flux density in T."""
+    units = (("T", 1.0), ("mT", 1e-3), ("uT", 1e-6), ("nT", 1e-9), ("pT", 1e-12))
+    return next((unit for unit in units if largest >= 0.01 * unit[1]), units[-1])
 
 
 def where_it_saturates(result: Result) -> str:
     """Return the fullest section, and what flux density shares of the core stay below."""
     fullest = max(result.section_means, key=lambda mean: mean.flux_density)
-    levels = ", ".join(f"{share.flux_density:.3f}" for share in result.volume_shares)
+    unit, factor = _flux_density_unit(max(share.flux_density for share in result.volume_shares))
+    levels = ", ".join(f"{share.flux_density / factor:.3f}" for share in result.volume_shares)
     return (
         f"Saturates first: {fullest.name}. Half, 90 % and 99 % of the core's volume lie below "
-        f"{levels} T."
+        f"{levels} {unit}."
     )
 
 

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from femag.command_output import make_folder
+from femag.command_output import make_folder, terminal
 from femag.errors import InputError
 
 if TYPE_CHECKING:
@@ -200,11 +200,8 @@ def _answer(
     if json == "-":
         typer.echo(bench_json(loops, curve, loss), nl=False)
         return
-    from rich.console import Console
 
-    from femag.answer import WIDTH
-
-    print_bench(loops, curve, loss, Console(width=WIDTH))
+    print_bench(loops, curve, loss, terminal())
     written = [
         *([material] if material else []),
         *([out / file for file in FOLDER_FILES] if out else []),

@@ -14,7 +14,14 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from femag.bench_command import bench_command
-from femag.command_output import check_file, check_targets, make_folder, quantity, shown_progress
+from femag.command_output import (
+    check_file,
+    check_targets,
+    make_folder,
+    quantity,
+    shown_progress,
+    terminal,
+)
 from femag.curve_command import curve_command
 from femag.errors import GapfieldError, InputError
 from femag.gap_command import gap_command
@@ -32,6 +39,7 @@ if TYPE_CHECKING:
 STOPPED = 130
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
 COPPER_FILE = "copper.png"
+CORE_LOSS_FILE = "core-loss.png"
 
 app = typer.Typer(
     add_completion=False,
@@ -144,9 +152,6 @@ def cores_command(
 
     Every number comes with its source.
     """
-    from rich.console import Console
-
-    from femag.answer import WIDTH
     from femag.core_answer import print_core, print_core_list
     from femag.geometry import catalogue, matching_cores
 
@@ -159,7 +164,7 @@ def cores_command(
         from femag.plot import core_drawing, write_figure
 
         write_figure(lambda ax: core_drawing(found[0].core(), ax), out)
-    console = Console(width=WIDTH)
+    console = terminal()
     if len(found) == 1:
         print_core(found[0], console)
     else:
@@ -183,13 +188,10 @@ def materials_command() -> None:
 
     Every material comes with its source.
     """
-    from rich.console import Console
-
-    from femag.answer import WIDTH
     from femag.material_answer import print_material_list
     from femag.materials import material_library
 
-    print_material_list(material_library(), Console(width=WIDTH))
+    print_material_list(material_library(), terminal())
 
 
 def _with_current(design: Design, current: str | None) -> Design:
@@ -223,14 +225,12 @@ def _answer(
 
         typer.echo(result_json(result), nl=False)
         return code
-    from rich.console import Console
 
-    from femag.answer import WIDTH, print_answer
+    from femag.answer import print_answer
 
-    print_answer(result, Console(width=WIDTH))
+    print_answer(result, terminal())
     if out is not None:
-        files = (*FOLDER_FILES, *([COPPER_FILE] if _has_turn_losses(result) else []))
-        typer.echo(f"\nWritten to {out}: {', '.join(files)}")
+        typer.echo(f"\nWritten to {out}: {', '.join((*FOLDER_FILES, *_loss_files(result)))}")
     return code
 
 
@@ -286,15 +286,28 @@ def _write(
         stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
     write_figure(lambda ax: flux_map(result, ax), section)
     write_figure(lambda ax: gap_map(result, ax), gap)
-    if _has_turn_losses(result):
-        from femag.plot import copper_map, layer_bars, write_panels
-
-        draws = (lambda ax: copper_map(result, ax), lambda ax: layer_bars(result, ax))
-        write_panels(draws, stack.enter_context(whole_file(out / COPPER_FILE)))
+    _write_losses(result, out, stack)
 
 
-def _has_turn_losses(result: Result) -> bool:
-    return any(loss.crossing_of_turns for loss in result.copper_loss)
+def _write_losses(result: Result, out: Path, stack: ExitStack) -> None:
+    """Draw the losses that are known; renamed when the stack is left."""
+    from femag.export.whole_file import whole_file
+    from femag.plot import copper_map, core_loss_map, layer_bars, write_figure, write_panels
+
+    for name in _loss_files(result):
+        file = stack.enter_context(whole_file(out / name))
+        if name == COPPER_FILE:
+            panels = (lambda ax: copper_map(result, ax), lambda ax: layer_bars(result, ax))
+            write_panels(panels, file)
+        else:
+            write_figure(lambda ax: core_loss_map(result, ax), file)
+
+
+def _loss_files(result: Result) -> list[str]:
+    """Return the names of the figures of losses in a folder."""
+    copper = any(loss.crossing_of_turns for loss in result.copper_loss)
+    names = {COPPER_FILE: copper, CORE_LOSS_FILE: result.core_loss is not None}
+    return [name for name, is_known in names.items() if is_known]
 
 
 def _bracket(solution: FieldSolution) -> str:

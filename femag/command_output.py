@@ -7,9 +7,12 @@ import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from femag.errors import InputError
+
+if TYPE_CHECKING:
+    from rich.console import Console
 
 PATIENCE = 1.0
 """Seconds of silence before progress shows on a terminal."""
@@ -94,6 +97,30 @@ def quantity(option: str, text: str, unit: str) -> float:
         raise error.changed(key=option, value=text) from error
 
 
+@contextmanager
+def options_named(**texts: str | None) -> Iterator[None]:
+    """Say what the user wrote where an argument that an option gave cannot be used.
+
+    Parameters
+    ----------
+    **texts : str or None
+        By the argument's name, which the option shares: the option's text, if it was given.
+
+    Raises
+    ------
+    InputError
+        That of the work, with option and text instead of argument and SI value.
+    """
+    try:
+        yield
+    except InputError as error:
+        text = texts.get(error.key or "")
+        if text is None:
+            raise
+        option = f"--{str(error.key).replace('_', '-')}"
+        raise error.changed(key=option, value=text) from error
+
+
 def check_spares(source: Path, what: str, option: str, target: str | Path | None) -> None:
     """Refuse to write over what is read.
 
@@ -135,6 +162,21 @@ def make_folder(out: Path, option: str = "--out") -> None:
         ) from error
 
 
+def terminal(stderr: bool = False) -> Console:
+    """Return a console that prints names and titles as they are: no markup, no emoji codes.
+
+    Parameters
+    ----------
+    stderr : bool
+        Standard error, as wide as it is; else standard output, in `femag.answer.WIDTH` columns.
+    """
+    from rich.console import Console
+
+    from femag.answer import WIDTH
+
+    return Console(stderr=stderr, width=None if stderr else WIDTH, markup=False, emoji=False)
+
+
 @contextmanager
 def shown_progress(said: Callable[..., str]) -> Iterator[Callable[..., Any] | None]:
     """Give a callback that shows what it says on a terminal when it takes long; None if piped.
@@ -147,10 +189,8 @@ def shown_progress(said: Callable[..., str]) -> Iterator[Callable[..., Any] | No
     if sys.stderr is None or not sys.stderr.isatty():
         yield None
         return
-    from rich.console import Console
-
     started = time.monotonic()
-    with Console(stderr=True).status("") as status:
+    with terminal(stderr=True).status("") as status:
         status.stop()
 
         def show(*state: Any) -> None:

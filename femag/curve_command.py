@@ -16,6 +16,7 @@ from femag.command_output import (
     check_targets,
     make_folder,
     shown_progress,
+    terminal,
 )
 from femag.errors import InputError, NumericalError
 
@@ -295,9 +296,7 @@ def _write(
 
 
 def _print(curve: InductanceCurve, beside: MeasuredBeside | None) -> None:
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.curve_answer import print_curve
 
-    print_curve(curve, Console(width=WIDTH), beside)
+    print_curve(curve, terminal(), beside)

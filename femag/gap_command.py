@@ -8,7 +8,14 @@ from typing import Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, quantity
+from femag.command_output import (
+    check_file,
+    check_spares,
+    check_targets,
+    options_named,
+    quantity,
+    terminal,
+)
 from femag.errors import InputError
 
 DesignArgument = Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design file.")]
@@ -57,9 +64,6 @@ def gap_command(
 
     In the field, between bounds, beside what every hand formula asks for.
     """
-    from rich.console import Console
-
-    from femag.answer import WIDTH
     from femag.design_file import changed_design_file, read_design
     from femag.export.gap_file import gap_json
     from femag.export.whole_file import whole_file
@@ -74,17 +78,17 @@ def gap_command(
             accepted="one of the two",
         )  # fmt: skip
     check_targets(json, None)
+    check_file("--write", write, ".toml")
     for option, file in (("--json", json), ("--write", write)):
         check_spares(design, "the design", option, file)
     wanted = quantity("--inductance", inductance, "H")
     current = None if at is None else quantity("--at", at, "A")
     own = read_design(design)
     base = own if turns is None else with_turns(own, turns)
-    by_turns = None
-    if flux_density is not None:
-        limit = quantity("--flux-density", flux_density, "T")
-        by_turns = turns_for(base, wanted, limit, current)
-    found = by_turns.found if by_turns else gap_for(base, wanted, current)
+    limit = None if flux_density is None else quantity("--flux-density", flux_density, "T")
+    with options_named(inductance=inductance, flux_density=flux_density):
+        by_turns = None if limit is None else turns_for(base, wanted, limit, current)
+        found = by_turns.found if by_turns else gap_for(base, wanted, current)
     spread = None if sample is None else sampled_spread(found.design, sample)
     text = gap_json(found, by_turns, spread)
     with ExitStack() as stack:
@@ -96,6 +100,6 @@ def gap_command(
     if json == "-":
         typer.echo(text, nl=False)
         return
-    print_gap(found, Console(width=WIDTH), by_turns, spread)
+    print_gap(found, terminal(), by_turns, spread)
     if write is not None:
         typer.echo(f"\nWritten to {write}")

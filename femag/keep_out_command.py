@@ -8,7 +8,14 @@ from typing import Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, make_folder, quantity
+from femag.command_output import (
+    check_spares,
+    check_targets,
+    make_folder,
+    options_named,
+    quantity,
+    terminal,
+)
 from femag.errors import InputError
 
 FOLDER_FILES = ("keepout.json", "keepout.png")
@@ -43,9 +50,6 @@ def keep_out_command(
 
     Loss by the fringe field against distance, for one gap and for several small ones.
     """
-    from rich.console import Console
-
-    from femag.answer import WIDTH
     from femag.copper_distance import PIECES, keep_out
     from femag.design_file import read_design
     from femag.export.keep_out_file import keep_out_json
@@ -58,7 +62,9 @@ def keep_out_command(
     if distances is not None:
         lengths = [quantity("--distances", text.strip(), "m") for text in distances.split(",")]
     numbers = PIECES if pieces is None else _numbers(pieces)
-    found = keep_out(read_design(design), lengths, numbers)
+    base = read_design(design)
+    with options_named(distances=distances):
+        found = keep_out(base, lengths, numbers)
     text = keep_out_json(found)
     with ExitStack() as stack:
         if json is not None and json != "-":
@@ -73,16 +79,22 @@ def keep_out_command(
     if json == "-":
         typer.echo(text, nl=False)
         return
-    print_keep_out(found, Console(width=WIDTH))
+    print_keep_out(found, terminal())
     if out is not None:
         typer.echo(f"\nWritten to {out}: {', '.join(FOLDER_FILES)}")
 
 
 def _numbers(text: str) -> list[int]:
-    """Return the whole numbers of a list."""
+    """Return the numbers of a list."""
+    from femag.geometry.gaps import MOST_PIECES
+
     try:
-        return [int(part) for part in text.split(",")]
-    except ValueError as error:
+        numbers = [int(part) for part in text.split(",")]
+    except ValueError:
+        numbers = []
+    if not numbers or not all(1 <= count <= MOST_PIECES for count in numbers):
         raise InputError(
-            "not whole numbers", key="--pieces", value=text, accepted="a list such as '1, 2, 4'"
-        ) from error
+            "not usable", key="--pieces", value=text,
+            accepted=f"whole numbers from 1 to {MOST_PIECES} such as '1, 2, 4'",
+        )  # fmt: skip
+    return numbers

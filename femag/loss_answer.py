@@ -72,7 +72,7 @@ def core_loss_notes(loss: CoreLoss, straight_legs: bool) -> str:
     if abs(loss.bend) > BEND:
         notes.append(
             "As the core saturates, B does not follow the current in proportion, which adds "
-            f"{100.0 * loss.bend:.2g} %."
+            f"{_percent(loss.bend)} %."
         )
     return " ".join([*notes, STRAIGHT_LEGS] if straight_legs else notes)
 
@@ -80,6 +80,12 @@ def core_loss_notes(loss: CoreLoss, straight_legs: bool) -> str:
 def _apart(loss: CoreLoss) -> float:
     flux, potential = loss.total_of_sides
     return 100.0 * abs(potential - flux) / loss.total
+
+
+def _percent(share: float) -> str:
+    """Return a share in per cent, to two digits or to one per cent."""
+    percent = 100.0 * share
+    return f"{percent:.0f}" if abs(percent) >= 10.0 else f"{percent:.2g}"
 
 
 def _parameters(material: Steinmetz) -> str:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from femag.command_output import check_spares, shown_progress
+from femag.command_output import check_spares, shown_progress, terminal
 from femag.curve_command import (
     DesignArgument,
     KindOption,
@@ -80,12 +80,10 @@ def _check_target(out: Path) -> None:
 
 
 def _print(reviewed: Review) -> None:
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.requirement_answer import requirement_lines
 
-    console = Console(width=WIDTH)
+    console = terminal()
     console.print(f"inductance {reviewed.result.inductance}", highlight=False)
     if reviewed.checks:
         for line in requirement_lines(reviewed.checks):

@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from femag.command_output import make_folder, quantity
+from femag.command_output import make_folder, quantity, terminal
 from femag.errors import InputError, MissingLibraryError, NumericalError
 
 if TYPE_CHECKING:
@@ -154,15 +154,13 @@ def _write_charts(found: StudyTable, folder: Path) -> list[str]:
 
 
 def _print_state(path: Path) -> None:
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.study import Store
     from femag.study_answer import print_state
 
     with Store(path) as store:
         title = store.about()["title"]
-        print_state(title, store.counts(), store.reasons(), Console(width=WIDTH))
+        print_state(title, store.counts(), store.reasons(), terminal())
 
 
 @contextmanager
@@ -204,12 +202,11 @@ def _shown() -> Iterator[Callable[[Progress], None]]:
 
 @contextmanager
 def _bar() -> Iterator[Callable[[Progress], None]]:
-    from rich.console import Console
     from rich.progress import BarColumn, TextColumn
     from rich.progress import Progress as Bar
 
     columns = (BarColumn(20), TextColumn("{task.description}"))
-    with Bar(*columns, console=Console(stderr=True), transient=True) as bar:
+    with Bar(*columns, console=terminal(stderr=True), transient=True) as bar:
         task = bar.add_task("", total=None)
 
         def show(state: Progress) -> None:

@@ -17,6 +17,7 @@ from femag.field.design_problem import field_problem
 from femag.part_tolerances import CUSTOMARY, PartTolerances
 from femag.quantities.off_nominal import Parameter, off_nominal_problem, parameters_of
 from femag.quantities.parameter_slopes import sensitivities_of
+from femag.units import exact_text
 
 Array = NDArray[np.float64]
 
@@ -190,6 +191,7 @@ def sampled_spread(
     budget = tolerance_budget(design, nominal, tolerances)
     names = tuple(entry.name for entry in budget.contributions)
     half = np.array([entry.half_range for entry in budget.contributions])
+    _check_some_gap_left(design, dict(zip(names, half.tolist(), strict=True)))
     slopes = np.array([entry.change for entry in budget.contributions]) / half
     changes = np.random.default_rng(seed).uniform(-1.0, 1.0, (int(count), len(half))) * half
     share = SAMPLE_SHARE * budget.root_sum_square / budget.inductance
@@ -198,6 +200,16 @@ def sampled_spread(
                    for row in changes.tolist()]  # fmt: skip
     linear = budget.inductance + changes @ slopes
     return SampledSpread(names, changes, np.array(inductances), linear, seed)
+
+
+def _check_some_gap_left(design: Design, half_ranges: dict[str, float]) -> None:
+    least = min((gap.length for gap in design.gaps), default=math.inf)
+    if half_ranges.get("gap", 0.0) >= least:
+        raise InputError(
+            "samples would have no gap left", key="tolerance.gap",
+            value=exact_text(half_ranges["gap"], "m", "m"),
+            accepted=f"less than the gap, {1e3 * least:.4g} mm",
+        )  # fmt: skip
 
 
 def _inductance(design: Design, changes: dict[str, float], tolerance: float) -> float:

@@ -202,8 +202,14 @@ def with_unit(value: float, unit: str, digits: int = 4) -> str:
 
 
 def with_common_unit(values: Sequence[float], unit: str, digits: int = 4) -> tuple[str, ...]:
-    """Return texts that share the prefix and the decimals of the first value."""
+    """Return texts that share the prefix and the decimals of the first value.
+
+    Beyond the prefixes, below a hundredth of the least or above 10 000 of the greatest, they have
+    powers of ten.
+    """
     lead = abs(values[0])
+    if lead != 0.0 and not 1e-2 * _PREFIXES[-1][0] <= lead < 1e4 * _PREFIXES[0][0]:
+        return tuple(f"{value:.{digits - 1}e} {unit}" for value in values)
     if not math.isfinite(lead) or lead == 0.0:
         factor, prefix, decimals = 1.0, "", digits - 1
     else:

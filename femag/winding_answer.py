@@ -6,11 +6,10 @@ import math
 from collections.abc import Iterator
 
 from rich.console import Console
-from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
-from femag.answer import columns, described
+from femag.answer import columns, described, with_turns
 from femag.coupled_windings import WindingMatrix, WindingPair
 from femag.field.bounds import Bounds
 from femag.units import with_unit
@@ -38,19 +37,19 @@ def print_windings(found: WindingMatrix, console: Console) -> None:
 def _matrix(found: WindingMatrix, places: range) -> Table:
     """Return some columns of the matrix, middles of the bounds."""
     head = "inductance"
-    table = columns(head, *(escape(found.names[place]) for place in places), words=[head])
+    table = columns(head, *(found.names[place] for place in places), words=[head])
     for name, turns, row in zip(found.names, found.turns, found.inductance, strict=True):
         shown = [_digits(row[place]) for place in places]
         values = [
             with_unit(row[place].value, "H", digits)
             for place, digits in zip(places, shown, strict=True)
         ]
-        table.add_row(Text(f"{name}, {turns} turns"), *values)
+        table.add_row(Text(f"{name}, {with_turns(turns)}"), *values)
     return table
 
 
 def _pair(pair: WindingPair) -> Table:
-    head = escape(f"{pair.first} and {pair.second}")
+    head = f"{pair.first} and {pair.second}"
     table = columns(head, "", "", words=[head])
     for words, bounds in _rows(pair):
         digits = _digits(bounds)

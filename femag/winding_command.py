@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from femag.command_output import check_spares, check_targets, quantity, shown_progress
+from femag.command_output import check_spares, check_targets, quantity, shown_progress, terminal
 from femag.errors import InputError
 
 if TYPE_CHECKING:
@@ -62,12 +62,10 @@ def windings_command(
 
         with whole_file(json) as target:
             target.write_text(winding_json(found), encoding="utf-8")
-    from rich.console import Console
 
-    from femag.answer import WIDTH
     from femag.winding_answer import print_windings
 
-    print_windings(found, Console(width=WIDTH))
+    print_windings(found, terminal())
 
 
 def _how_far(found: Response) -> str:

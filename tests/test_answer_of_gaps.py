@@ -12,10 +12,14 @@ from femag.answer import WIDTH, print_answer
 
 def answer(design: fm.Design) -> str:
     """The answer as one line of words, after a look at its width."""
+    return " ".join(printed(fm.solve(design, tolerance=1e-2)).split())
+
+
+def printed(result: fm.Result) -> str:
     text = StringIO()
-    print_answer(fm.solve(design, tolerance=1e-2), Console(file=text, width=WIDTH))
+    print_answer(result, Console(file=text, width=WIDTH))
     assert max(map(len, text.getvalue().splitlines())) <= WIDTH
-    return " ".join(text.getvalue().split())
+    return text.getvalue()
 
 
 SATURATING = fm.FroehlichCurve(2000.0, 0.45, 2.0)
@@ -57,3 +61,21 @@ def test_without_shape_and_magnet_nothing_is_said_of_them(pot_26_16: fm.Design) 
     assert "magnet," not in text
     assert "without current" not in text
     assert "shaped" not in text
+
+
+def test_small_numbers_keep_their_digits(pot_26_16: fm.Design) -> None:
+    """A signal coil: flux densities of microtesla, one turn, a gap of many digits."""
+    small = replace(
+        pot_26_16,
+        current=1e-3,
+        gaps=(fm.Gap(0.579976e-3),),
+        windings=(replace(pot_26_16.windings[0], turns=1),),
+    )
+    result = fm.solve(small, tolerance=1e-2)
+    text = printed(result)
+    assert "0.58 mm gap" in text
+    assert "\n1 turn, 0.001 A" in text
+    (head,) = (line for line in text.splitlines() if line.startswith("mean flux density"))
+    assert head.split()[3] == "uT"
+    for mean in result.section_means:
+        assert f"{1e6 * mean.flux_density:.4f}" in text

@@ -70,11 +70,16 @@ def test_result_file_gives_the_losses_back(result: fm.Result, tmp_path: Path) ->
     assert fm.read_result(tmp_path / "r.json").copper_loss == result.copper_loss
 
 
-def test_solve_writes_the_figure(
+def test_solve_writes_the_figures_of_losses_that_are_known(
     design: fm.Design, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    file = tmp_path / "design.toml"
-    file.write_text(design_toml(design), encoding="utf-8")
-    assert main(["solve", str(file), "--out", str(tmp_path / "out")]) == 0
-    assert (tmp_path / "out" / "copper.png").stat().st_size > 10_000
-    assert "copper.png" in capsys.readouterr().out
+    file, folder = tmp_path / "design.toml", tmp_path / "out"
+    lossy = fm.Steinmetz(1.5, 1.45, 2.6, (25e3, 300e3), (0.03, 0.3))
+    for loss, names in ((None, ["copper.png"]), (lossy, ["copper.png", "core-loss.png"])):
+        text = design_toml(replace(design, material=fm.LinearCurve(2000.0, loss)))
+        file.write_text(text, encoding="utf-8")
+        assert main(["solve", str(file), "--out", str(folder)]) == 0
+        assert f"gap.png, {', '.join(names)}\n" in capsys.readouterr().out
+        for name in names:
+            assert (folder / name).stat().st_size > 10_000
+        assert (folder / "core-loss.png").exists() == (loss is not None)

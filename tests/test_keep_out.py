@@ -156,8 +156,9 @@ def test_command_prints_and_writes(
     assert (out / "keepout.png").stat().st_size > 10_000
     assert main(["keepout", str(file), "--distances", "0.5"]) == 2
     assert "--distances" in capsys.readouterr().err
-    assert main(["keepout", str(file), "--pieces", "1, two"]) == 2
-    assert "--pieces = '1, two': not whole numbers" in capsys.readouterr().err
+    for option, text in (("--pieces", "1, two"), ("--pieces", "0"), ("--distances", "50 mm")):
+        assert main(["keepout", str(file), option, text]) == 2
+        assert f"{option} = '{text}': not usable" in capsys.readouterr().err
 
 
 def test_chart_draws_a_line_for_every_number_of_pieces(

@@ -111,7 +111,11 @@ def test_the_command_writes_a_design_that_meets_the_target(
     [
         (["--inductance", "250"], "--inductance = '250': "),
         (["--inductance", "250 uH", "--at", "3"], "--at = '3': "),
-        (["--inductance", "9 H"], "inductance = 9.0: more than this core gives"),
+        (["--inductance", "9 H"], "--inductance = '9 H': more than this core gives"),
+        (
+            ["--inductance", "1 mH", "--write", "nowhere/found.toml"],
+            "--write = 'nowhere/found.toml'",
+        ),
         (["--inductance", "1 mH", "--json", "{design}"], "--json = "),
     ],
 )

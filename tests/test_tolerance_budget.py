@@ -169,3 +169,11 @@ def test_the_straight_line_fails_where_a_tolerance_is_a_good_part_of_the_gap(
     spread = fm.sampled_spread(design, 100, 1, fm.PartTolerances(gap=0.03e-3))
     assert spread.mean > 1.02 * float(np.mean(spread.linear))
     assert spread.standard_deviation > 1.1 * spread.linear_standard_deviation
+
+
+def test_samples_without_a_gap_left_are_refused(pot_26_16: fm.Design) -> None:
+    design = replace(pot_26_16, part_tolerances=fm.PartTolerances(gap=0.6e-3))
+    with pytest.raises(
+        fm.InputError, match=r"tolerance\.gap = '0.6 mm': .*less than the gap, 0.5 mm"
+    ):
+        fm.sampled_spread(design, 2)

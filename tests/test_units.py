@@ -62,6 +62,9 @@ def test_exact_text_reads_back_to_the_same_number(value: float) -> None:
         (9.9999e-7, "1.000 uH"),
         (1.0, "1.000 H"),
         (-3e-3, "-3.000 mH"),
+        (1e-14, "0.01000 pH"),
+        (3.1712e-22, "3.171e-22 H"),
+        (-2.5e13, "-2.500e+13 H"),
     ],
 )
 def test_short_text(value: float, text: str) -> None:
@@ -70,3 +73,4 @@ def test_short_text(value: float, text: str) -> None:
 
 def test_common_unit_is_that_of_the_first() -> None:
     assert with_common_unit((650.19e-6, 1.2e-3, 9e-9), "H") == ("650.2 uH", "1200.0 uH", "0.0 uH")
+    assert with_common_unit((2e-21, 5e-22), "W") == ("2.000e-21 W", "5.000e-22 W")

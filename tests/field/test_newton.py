@@ -9,7 +9,7 @@ from femag.errors import NewtonError
 from femag.field import newton
 from femag.field.bounds import Sides, both_sides, field_solution
 from femag.field.design_problem import field_problem
-from femag.field.newton import solved
+from femag.field.newton import backward_error, solved
 from femag.mesh import coarse_mesh
 
 
@@ -69,3 +69,14 @@ def test_systems_without_an_answer_are_errors() -> None:
         solved(csc_matrix(np.diag([1.0, 0.0, 1.0])), load)
     with pytest.raises(fm.NumericalError):
         solved(csc_matrix(np.diag([1.0, np.nan, 1.0])), load)
+
+
+def test_a_solution_is_judged_by_its_backward_error() -> None:
+    """The answer dwarfs the load: rounding leaves a residual that is large beside it alone."""
+    apart = 2.0**-40
+    matrix = csc_matrix([[1.0, 1.0 - apart], [1.0 - apart, 1.0]])
+    load = np.array([1.0, -1.0 + 1e-3])
+    found = solved(matrix, load)
+    assert backward_error(matrix, found, load) < 1e-15
+    assert backward_error(matrix, found + 1e-6 * np.max(np.abs(found)), load) > 1e-7
+    assert np.isnan(backward_error(matrix, np.array([np.nan, 0.0]), load))
