@@ -221,7 +221,7 @@ def test_a_case_is_known_by_design_files_and_versions(folder: Path) -> None:
         ('[[together]]\ngap.length = ["1 mm"]', 'together.gap: a table; accepted: "gap.length"'),
         ('[[case]]\ngap.length = "1 mm"', 'case.gap: a table; accepted: "gap.length" in quotes'),
         ('[ranges]\ngap.length = ["1 mm", "2 mm"]', 'ranges.gap: a table; accepted: "gap.length"'),
-        ('[axes]\n"gap.length" = 3', "axes.gap.length = 3: not usable; accepted: a table of design"),
+        ('[axes]\n"gap.length" = 3', "axes.gap.length = 3: not usable; accepted: a table of"),
         ('[axes]\n"gap.length" = ["1 mm"]\n[axes.x]\n', "axes.x = {}: not usable"),
         ("axes = 3", "axes = 3: not usable; accepted: a table of design keys"),
     ],
