@@ -49,6 +49,8 @@ def _lines(
     if counts["failed"]:
         yield Text("--retry solves failed cases again.")
     if counts["taken"]:
-        yield Text(f"{counts['taken']} are being solved by another run.")
+        verb = "is" if counts["taken"] == 1 else "are"
+        yield Text(f"{counts['taken']} {verb} being solved by another run.")
     if counts["open"]:
-        yield Text(f"{counts['open']} are open; the same command goes on.")
+        verb = "is" if counts["open"] == 1 else "are"
+        yield Text(f"{counts['open']} {verb} open; the same command goes on.")

@@ -160,7 +160,7 @@ def _print_state(path: Path) -> None:
 
     with Store(path) as store:
         title = store.about()["title"]
-        print_state(title, store.counts(), store.reasons(), terminal())
+        print_state(title, store.states(), store.reasons(), terminal())
 
 
 @contextmanager
@@ -217,13 +217,13 @@ def _bar() -> Iterator[Callable[[Progress], None]]:
 
 
 def _lines() -> Callable[[Progress], None]:
-    last = time.monotonic() - LINE_EVERY
+    last, stopping = time.monotonic() - LINE_EVERY, False
 
     def show(state: Progress) -> None:
-        nonlocal last
+        nonlocal last, stopping
         now = time.monotonic()
-        if now - last >= LINE_EVERY or state.left == 0:
-            last = now
+        if now - last >= LINE_EVERY or state.left == 0 or state.stopping != stopping:
+            last, stopping = now, state.stopping
             typer.echo(in_words(state), err=True)
 
     return show

@@ -41,6 +41,21 @@ def test_a_file_gives_the_design_that_its_keys_say(pot_26_16: fm.Design) -> None
     assert design_from_toml(TEXT) == replace(pot_26_16, title="two posts")
 
 
+def test_a_written_file_has_a_point_on_a_line_and_reads_back(pot_26_16: fm.Design) -> None:
+    samples = tuple((step / 8, 1.0 + min(step, 8 - step) / 4) for step in range(9))
+    ripple = fm.Ripple(1.0, 1e5, "samples", samples=samples)
+    points = tuple((100.0 * step, 0.05 * step) for step in range(6))
+    material = fm.TabulatedCurve(points, 'a "[" b = [', "[", ("[[x]]",))
+    design = replace(pot_26_16, material=material, title="x = [", ripple=ripple, current=2.0)
+    text = fm.design_toml(design)
+    assert design_from_toml(text) == design
+    lines = [line.strip() for line in text.splitlines()]
+    assert '["100 A/m", "0.05 T"],' in lines
+    assert '[0.5, "2 A"],' in lines
+    assert sum(line.endswith("[") for line in lines) == 2
+    assert max(map(len, lines)) <= 80
+
+
 def test_units_may_be_of_any_kind(pot_26_16: fm.Design) -> None:
     design = design_from_toml(TEXT.replace('"0.5 mm"', '"500 um"').replace('"1 A"', '"1000 mA"'))
     assert design == replace(pot_26_16, title="two posts")

@@ -6,7 +6,7 @@ import pytest
 import femag as fm
 from femag import cli
 from femag.study import Progress
-from femag.study_command import in_words
+from femag.study_command import _lines, in_words
 
 DESIGN = """
 [core]
@@ -168,3 +168,12 @@ def test_progress_says_done_failed_rate_and_time_left() -> None:
     assert in_words(Progress(0, 0, 10, 0, 0.0)) == "0 of 10, 0 failed"
     stopping = Progress(5, 0, 10, 5, 1.0, stopping=True)
     assert in_words(stopping) == "5 of 10, finishing what is in flight; Ctrl-C again stops now"
+
+
+def test_lines_say_at_once_that_a_run_is_stopping(capsys: pytest.CaptureFixture[str]) -> None:
+    show = _lines()
+    for stopping in (False, False, True, True):
+        show(Progress(5, 0, 10, 5, 1.0, stopping))
+    assert [line.split(",")[1] for line in capsys.readouterr().err.splitlines()] == [
+        " 0 failed", " finishing what is in flight; Ctrl-C again stops now"
+    ]  # fmt: skip

@@ -5,7 +5,7 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
-from typing import Any, get_args
+from typing import Any, get_args, get_origin
 
 from pydantic import ValidationError
 
@@ -60,7 +60,11 @@ def first_error(error: ValidationError, file: str | None, root: Any = DesignTabl
         near = difflib.get_close_matches(str(location[-1]), known, n=1, cutoff=0.5)
         accepted = f"nearest known key: {near[0]!r}" if near else ", ".join(known)
         return InputError("unknown key", key=key, accepted=accepted, file=file)
-    named = _up_to_last_name(location)
+    inside = _inside_free_keys(location, root)
+    if inside:
+        location = location[:inside]
+        key = _dotted(location)
+    named = _up_to_last_name(location[: inside - 1] if inside else location)
     description = _fields_at(named[:-1], root)[str(named[-1])] if named else "a table"
     if first["type"] == "missing":
         return InputError("missing", key=key, accepted=description, file=file)
@@ -77,6 +81,20 @@ def _up_to_last_name(location: Sequence[int | str]) -> Sequence[int | str]:
     """Return a location without the numbers at its end: an entry is described with its list."""
     length = max((i for i, part in enumerate(location, 1) if isinstance(part, str)), default=0)
     return location[:length]
+
+
+def _inside_free_keys(location: Sequence[int | str], table: Any) -> int:
+    """Return how many parts lead to an entry of a table whose keys are free; 0 if none does."""
+    for length, part in enumerate(location, 1):
+        if isinstance(part, int):
+            continue
+        annotation = table.model_fields[part].annotation
+        table = table_in(annotation)
+        if not hasattr(table, "model_fields"):
+            free = dict in (get_origin(annotation), get_origin(table))
+            names = (i for i in range(length, len(location)) if isinstance(location[i], str))
+            return next(names, -1) + 1 if free else 0
+    return 0
 
 
 def _dotted(location: Sequence[int | str]) -> str:

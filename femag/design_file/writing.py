@@ -25,6 +25,9 @@ from femag.units import exact_text
 
 Document = dict[str, Any]
 
+WIDTH = 80
+"""Most characters of a list on one line."""
+
 
 def design_document(design: Design) -> Document:
     """Return the nested mapping that `design_from_document` turns into an equal design."""
@@ -50,8 +53,28 @@ def design_document(design: Design) -> Document:
 
 
 def design_toml(design: Design) -> str:
-    """Return the design file of a design."""
-    return tomli_w.dumps(design_document(design))
+    """Return the design file of a design; lists that fit on a line stand on one."""
+    return _with_short_lists(tomli_w.dumps(design_document(design)))
+
+
+def _with_short_lists(text: str) -> str:
+    """Return TOML as tomli_w writes it, one entry of a list a line, with its short lists joined.
+
+    A line that ends with an opening bracket begins a list: texts end with a quote there.
+    """
+    done: list[str] = []
+    begun: list[int] = []
+    for line in text.splitlines():
+        done.append(line)
+        if line.endswith("["):
+            begun.append(len(done) - 1)
+        elif begun and line.strip() in ("]", "],"):
+            start = begun.pop()
+            entries = " ".join(entry.strip() for entry in done[start + 1 : -1]).removesuffix(",")
+            joined = f"{done[start]}{entries}{line.strip()}"
+            if len(joined) <= WIDTH and not any(entry.endswith("[") for entry in done[start + 1 :]):
+                done[start:] = [joined]
+    return "".join(f"{line}\n" for line in done)
 
 
 def _core_document(core: Core, material: MagnetisationCurve) -> Document:

@@ -26,6 +26,9 @@ SHORT = 1e-4
 the copper that one lies inside of it: on an edge between elements B would be of either."""
 HEADROOM = 1.5
 """Height of the picture over the largest value in the middle of the gap; the edge goes beyond."""
+ENDS = SAMPLES // 25
+"""Samples at either end that do not count for the height of the picture: copper may reach into the
+corners of the window, where the field has no limit."""
 FOOT = 0.12
 """Share of the height that is left below, for the names of the bands."""
 
@@ -102,6 +105,9 @@ def layer_field(result: Result, ax: Axes) -> Axes:
         ax.axvspan(1e3 * low, 1e3 * high, color="0.88", linewidth=0.0, zorder=0,
                    label="gap" if place == 0 else None)  # fmt: skip
     ax.axhline(0.0, color="0.7", linewidth=0.6, zorder=0)
+    between = np.stack([np.hypot(*b), *b])[:, ENDS:-ENDS]
+    room = FOOT * float(np.ptp(between))
+    ax.set_ylim(float(between.min()) - room, float(between.max()) + room)
     ax.set(xlim=(1e3 * bottom, 1e3 * top), xlabel="height z, mm",
            ylabel=f"flux density at r = {1e3 * inner:.4g} mm, mT")  # fmt: skip
     ax.legend(loc="best", frameon=False)

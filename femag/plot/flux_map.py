@@ -16,6 +16,7 @@ from femag.design import Design, whole_section
 from femag.geometry import Region
 from femag.geometry.gaps import GapPiece, post_pieces
 from femag.geometry.section import Point
+from femag.plot.text_room import points_per_unit
 from femag.quantities import FieldMap, field_map, typical_peak
 from femag.result import Result
 
@@ -23,6 +24,9 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 Window = tuple[float, float, float, float]
+
+NAME_HEIGHT = 13.0
+"""Points that a winding's name takes across."""
 
 SCALE_SHARE = 0.98
 """Share of the core's volume that the colour scale covers; corners are sharper than any scale."""
@@ -107,7 +111,6 @@ def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
     levels = np.linspace(fields.flux.min(), fields.flux.max(), lines + 2)[1:-1]
     ax.tricontour(mesh, fields.flux, levels=levels, colors="black", linewidths=0.5)
     draw_outlines(ax, fields)
-    _name_windings(ax, _regions(result), window)
     r0, r1, z0, z1 = (1e3 * edge for edge in window)
     ax.set(xlim=(r0, r1), ylim=(z0, z1), xlabel="r, mm", ylabel="z, mm", aspect="equal")
     ax.set_title(f"flux lines and flux density at {result.current:g} A", fontsize=10)
@@ -115,6 +118,7 @@ def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
     bar.set_label(f"|B|, T; {SCALE_SHARE:.0%} of the core lies on this scale")
     bar.locator = MaxNLocator(6)
     bar.update_ticks()
+    _name_windings(ax, _regions(result), window)
     return ax
 
 
@@ -133,8 +137,12 @@ def draw_outlines(ax: Axes, fields: FieldMap) -> None:
 
 
 def _name_windings(ax: Axes, regions: tuple[Region, ...], window: Window) -> None:
-    """Write each winding's name once, into what the window shows of it."""
+    """Write each winding's name once, into what the window shows of it, if it has room."""
+    scale = 1e3 * points_per_unit(ax)
     for name, (r, z) in label_places(regions, window).items():
+        radii = [r for region in regions if region.winding == name for r, _ in region.polygon]
+        if scale * (min(max(radii), window[1]) - max(min(radii), window[0])) < NAME_HEIGHT:
+            continue
         ax.text(
             1e3 * r,
             1e3 * z,

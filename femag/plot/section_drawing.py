@@ -14,6 +14,7 @@ from femag.geometry import PotCore, Region, half_window_height
 from femag.geometry.section import Point
 from femag.plot.core_drawing import CORE, dimension
 from femag.plot.flux_map import label_places
+from femag.plot.text_room import points_per_unit
 from femag.quantities import gap_openings
 
 if TYPE_CHECKING:
@@ -27,6 +28,10 @@ SEAM = 1e-9
 """Distance in m within which parts of the core touch."""
 MOST_TURNS = 60
 """Turns that are drawn one by one with an outline that shows."""
+NAME_HEIGHT = 24.0
+"""Points that the two lines of a winding's name take across."""
+Label = tuple[str, Point]
+"""A text, and the place in mm that it belongs to."""
 
 
 def section_drawing(design: Design, ax: Axes) -> Axes:
@@ -46,11 +51,9 @@ def section_drawing(design: Design, ax: Axes) -> Axes:
     for region in regions:
         if region.role != "core":
             _draw_region(region, ax, many=len(regions) > MOST_TURNS)
-    _name_copper(design, regions, ax, half_height)
     below = _widths(design, ax, half_height, step)
     beside = _heights(design, ax, half_width, step)
     above = _copper_sizes(regions, ax, half_height, step)
-    _name_gaps(design, ax, half_width, step)
     low, high = -half_height - (below + 0.6) * step, half_height + (above + 0.6) * step
     ax.plot([0.0, 0.0], [low, high], color="black", linewidth=0.6, dashes=(12, 3, 2, 3))
     ax.set(
@@ -58,6 +61,8 @@ def section_drawing(design: Design, ax: Axes) -> Axes:
         ylim=(low, high),
         aspect="equal",
     )
+    beside_copper = _name_copper(design, regions, ax, half_height)
+    _label([*beside_copper, *_gap_labels(design)], ax, half_width, step)
     ax.axis("off")
     return ax
 
@@ -96,13 +101,22 @@ def _draw_core(regions: tuple[Region, ...], ax: Axes) -> None:
                                      edgecolor="black", linewidth=1.1, zorder=0.9))  # fmt: skip
 
 
-def _name_copper(design: Design, regions: tuple[Region, ...], ax: Axes, half_height: float) -> None:
+def _name_copper(
+    design: Design, regions: tuple[Region, ...], ax: Axes, half_height: float
+) -> list[Label]:
+    """Write names and turns into the copper; return the labels of what is too narrow for them."""
     turns = {winding.name: winding.turns for winding in design.windings}
     window = (0.0, np.inf, -half_height, half_height)
+    beside: list[Label] = []
     for name, (r, z) in label_places(regions, window).items():
+        corners = np.vstack([region.polygon for region in regions if region.winding == name])
+        if 1e3 * np.ptp(corners[:, 0]) * points_per_unit(ax) < NAME_HEIGHT:
+            beside.append((f"{name}, {turns[name]} turns", (1e3 * r, 1e3 * z)))
+            continue
         ax.text(1e3 * r, 1e3 * z, f"{name}\n{turns[name]} turns", ha="center", va="center",
                 fontsize=8, rotation=90, zorder=3,
                 bbox={"facecolor": "white", "edgecolor": "none", "pad": 1.2})  # fmt: skip
+    return beside
 
 
 def _widths(design: Design, ax: Axes, half_height: float, step: float) -> int:
@@ -137,16 +151,25 @@ def _copper_sizes(regions: tuple[Region, ...], ax: Axes, half_height: float, ste
     return 2
 
 
-def _name_gaps(design: Design, ax: Axes, half_width: float, step: float) -> None:
-    """Write the length of every opening on the left, with a line to it; alike ones once."""
+def _gap_labels(design: Design) -> list[Label]:
+    """Return the length of every opening, with the highest place of alike ones."""
     places: dict[str, list[Point]] = {}
     for radius, low, high in gap_openings(design):
         middle = 0.5 * (low + high)
         places.setdefault(f"gap {1e3 * (high - low):.4g}", []).append((radius, middle))
-    for number, (text, points) in enumerate(places.items()):
+    labels = []
+    for text, points in places.items():
         radius, middle = max(points, key=lambda point: point[1])
         text = f"{len(points)} x {text}" if len(points) > 1 else text
-        height = 1e3 * middle - number * step
-        ax.annotate(text, (-1e3 * radius, 1e3 * middle), (-half_width - 0.35 * step, height),
+        labels.append((text, (1e3 * radius, 1e3 * middle)))
+    return labels
+
+
+def _label(labels: list[Label], ax: Axes, half_width: float, step: float) -> None:
+    """Write labels on the left, one below the other, each with a line to its place."""
+    height = np.inf
+    for text, (radius, middle) in sorted(labels, key=lambda label: -label[1][1]):
+        height = min(middle, height - step)
+        ax.annotate(text, (-radius, middle), (-half_width - 0.35 * step, height),
                     ha="right", va="center", fontsize=9, zorder=4,
-                    arrowprops={"arrowstyle": "-", "linewidth": 0.7})  # fmt: skip
+                    arrowprops={"arrowstyle": "-", "linewidth": 0.7, "shrinkB": 0.0})  # fmt: skip

@@ -19,6 +19,10 @@ MOST_LABELS = 8
 """Lines up to which each is named."""
 LEVELS = (0.01, 0.02, 0.05, 0.10, 0.20)
 """Sizes of error at which the tone of a cell changes."""
+MANY_CELLS = 10
+"""Cells side by side beyond which their numbers are set smaller."""
+CLOSE_POINTS = 40
+"""Points of a line beyond which they are not marked."""
 TONES = ("1.0", "0.9", "0.78", "0.62", "0.42", "0.2")
 
 
@@ -83,6 +87,7 @@ def hand_error_chart(table: StudyTable, formula: str, ax: Axes) -> Axes:
         Where to draw.
     """
     plane = error_plane(table, formula)
+    size = 7.0 if len(plane.gaps) <= MANY_CELLS else 5.5
     tones = np.searchsorted(LEVELS, np.abs(plane.error))
     for row, column in np.argwhere(~np.isnan(plane.error)).tolist():
         tone = TONES[tones[row, column]]
@@ -90,7 +95,7 @@ def hand_error_chart(table: StudyTable, formula: str, ax: Axes) -> Axes:
         error = 100 * plane.error[row, column]
         text = f"{error:+.1f}" if abs(error) < 10.0 else f"{error:+.0f}"
         text = text if plane.in_range[row, column] else f"({text})"
-        ax.text(column, row, text, ha="center", va="center", fontsize=7,
+        ax.text(column, row, text, ha="center", va="center", fontsize=size,
                 color="white" if float(tone) < 0.5 else "black")  # fmt: skip
     for ticks, values, axis in ((plane.gaps, "gap", ax.xaxis), (plane.heights, "window", ax.yaxis)):
         axis.set_ticks(range(len(ticks)), [f"{value:.3g}" for value in ticks.tolist()])
@@ -106,7 +111,7 @@ def _draw(series: list[Series], ax: Axes) -> None:
     named: set[int] = set()
     for one in series:
         dashes, grey = DASHES[one.group % len(DASHES)], GREYS[one.group % len(GREYS)]
-        marker = MARKERS[one.group % len(MARKERS)]
+        marker = MARKERS[one.group % len(MARKERS)] if len(one.x) <= CLOSE_POINTS else ""
         label = "_" if one.group in named else one.label
         named.add(one.group)
         ax.plot(one.x, one.y, color=grey, linestyle=dashes if len(one.x) > 1 else "none",

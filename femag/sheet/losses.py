@@ -39,8 +39,15 @@ def loss_texts(result: Result) -> tuple[str, ...]:
 
 
 def _copper_table(result: Result) -> Table:
-    rows = tuple(tuple(with_micro(cell.strip()) for cell in row) for row in loss_rows(result))
-    return Table("Loss in the copper", LOSS_COLUMNS, rows)
+    """Return layers and windings; a layer is named with its winding, whose row comes after it."""
+    rows: list[tuple[str, ...]] = []
+    winding = ""
+    for name, *cells in reversed(loss_rows(result)):
+        is_layer = name.startswith(" ")
+        winding = winding if is_layer else name
+        name = f"{winding}, {name.strip()}" if is_layer else name
+        rows.insert(0, (name, *(with_micro(cell.strip()) for cell in cells)))
+    return Table("Loss in the copper", LOSS_COLUMNS, tuple(rows))
 
 
 def _core_table(loss: CoreLoss) -> Table:

@@ -28,6 +28,10 @@ APPLICATION = 0x47415046
 SCHEMA = 1
 PATIENCE = 60.0
 """Seconds that a writer waits for another one."""
+NOT_OURS, FOLDER, MISSING, EMPTY = NO_STORE = (
+    "is no study store", "is a folder", "is not there", "holds no study",
+)  # fmt: skip
+"""What a file is that cannot be used as a store at all."""
 TABLES = (
     "CREATE TABLE study (name TEXT PRIMARY KEY, value TEXT NOT NULL)",
     "CREATE TABLE cases (number INTEGER PRIMARY KEY, key TEXT NOT NULL UNIQUE,"
@@ -156,6 +160,16 @@ class Store:
             )
         return counts
 
+    def states(self) -> dict[State, int]:
+        """Return the number of cases in each state, those that dead runs had taken being open."""
+        counts = self.counts()
+        with self._said():
+            taken = self._connection.execute(
+                "SELECT run, count(*) FROM cases WHERE state = 'taken' GROUP BY run"
+            ).fetchall()
+        dead = sum(number for run, number in taken if not self._is_alive(run))
+        return counts | {"open": counts["open"] + dead, "taken": counts["taken"] - dead}
+
     def rows(self) -> list[Row]:
         """Return all cases in order, as they are now."""
         query = "SELECT number, settings, state, answer, reason FROM cases ORDER BY number"
@@ -250,18 +264,33 @@ class Store:
 
     # --- the file ---
 
+    def _is_alive(self, run: str) -> bool:
+        """Return whether a run holds its lock; the file of one that does not is left as it is."""
+        file = self._lock_file(run)
+        if run == self.run or not Path(file).exists():
+            return run == self.run
+        lock = FileLock(file)
+        try:
+            lock.acquire(timeout=0)
+        except Timeout:
+            return True
+        except OSError:  # a folder that cannot be written: no run goes on in it
+            return False
+        lock.release()
+        return False
+
     def _lock_file(self, run: str) -> str:
         return f"{self.path}-run-{run}"
 
     def _opened(self, writing: bool) -> sqlite3.Connection:
         if self.path.is_dir():
-            raise self._refusal("is a folder")
+            raise self._refusal(FOLDER)
         if writing:
             if not self.path.parent.is_dir():
                 raise self._refusal("the folder is not there")
             return _connection(self.path, "rwc")
         if not self.path.exists():
-            raise self._refusal("is not there")
+            raise self._refusal(MISSING)
         try:
             connection = _connection(self.path, "rw")  # not "ro", which leaves files behind
             with closing(connection.execute("PRAGMA user_version")):
@@ -277,11 +306,11 @@ class Store:
         ((schema,),) = connection.execute("PRAGMA user_version")
         tables = connection.execute("SELECT count(*) FROM sqlite_master").fetchone()[0]
         if tables and application != APPLICATION:
-            raise self._refusal("is no study store")
+            raise self._refusal(NOT_OURS)
         if schema > SCHEMA:
             raise self._refusal(f"was written by a later version (format {schema}, not {SCHEMA})")
         if not tables and not writing:
-            raise self._refusal("holds no study")
+            raise self._refusal(EMPTY)
         if writing:
             connection.execute("PRAGMA journal_mode = WAL").fetchall()
             connection.execute("PRAGMA synchronous = NORMAL")
@@ -308,7 +337,8 @@ class Store:
             raise self._refusal(_in_words(error)) from error
 
     def _refusal(self, problem: str) -> InputError:
-        return InputError(problem, file=str(self.path), accepted="a store of 'gapfield study'")
+        accepted = "a store of 'gapfield study'" if problem in NO_STORE else None
+        return InputError(problem, file=str(self.path), accepted=accepted)
 
 
 def _connection(path: Path, mode: str) -> sqlite3.Connection:
@@ -325,7 +355,7 @@ def _release(connection: sqlite3.Connection, run: str) -> None:
 def _in_words(error: sqlite3.Error) -> str:
     problem = str(error)
     if "not a database" in problem:
-        return "is no study store"
+        return NOT_OURS
     if "full" in problem or "disk I/O" in problem:
         return f"cannot be written ({problem}); what was finished is kept"
     if "unable to open" in problem or "readonly" in problem:

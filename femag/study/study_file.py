@@ -58,6 +58,7 @@ def read_study(path: str | Path) -> Study:
     """
     file = str(path)
     document = read_document(path)
+    _refuse_keys_without_quotes(document, file)
     try:
         table = StudyFileTable.model_validate(document)
     except ValidationError as error:
@@ -66,6 +67,22 @@ def read_study(path: str | Path) -> Study:
         return _study(table, Path(path).parent)
     except InputError as error:
         raise (error if error.file else error.changed(file=file)) from error
+
+
+def _refuse_keys_without_quotes(document: dict[str, Any], file: str) -> None:
+    """TOML reads ``gap.length`` without quotes as a table in a table."""
+    tables = [(name, document.get(name)) for name in ("axes", "ranges")]
+    for name in ("together", "case"):
+        entries = document.get(name)
+        if isinstance(entries, list):
+            tables += [(entry_key(name, index), entry) for index, entry in enumerate(entries)]
+    for name, table in tables:
+        for key, value in table.items() if isinstance(table, dict) else ():
+            if isinstance(value, dict) and value and "." not in key:
+                raise InputError(
+                    "a table", key=f"{name}.{key}", file=file,
+                    accepted=f'"{key}.{next(iter(value))}" in quotes, as every key with a dot',
+                )  # fmt: skip
 
 
 def _study(table: StudyFileTable, folder: Path) -> Study:

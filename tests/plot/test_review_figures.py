@@ -1,11 +1,15 @@
 from dataclasses import replace
+from itertools import combinations, pairwise
 from pathlib import Path
 from xml.etree import ElementTree
 
 import numpy as np
 import pytest
 from matplotlib.axes import Axes
+from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
+from matplotlib.text import Text
+from matplotlib.transforms import Bbox
 
 import femag as fm
 from femag import cli
@@ -49,6 +53,56 @@ def test_a_section_shows_the_dimensions_that_the_field_depends_on(pot_26_16: fm.
     pieces = replace(pot_26_16, gaps=fm.Gap(0.6e-3, pieces=3))
     texts = {text.get_text() for text in fm.plot.section_drawing(pieces, axes()).texts}
     assert "3 x gap 0.2" in texts
+
+
+def boxes(ax: Axes, wanted: set[str]) -> list[Bbox]:
+    """Return where the texts of an Axes that contain one of `wanted` come out."""
+    figure = ax.get_figure()
+    assert isinstance(figure, Figure)
+    FigureCanvasAgg(figure).draw()
+    texts = [text for text in ax.texts if any(name in text.get_text() for name in wanted)]
+    return [Text.get_window_extent(text) for text in texts]  # without the line of a label
+
+
+def test_names_of_thin_windings_stand_clear_of_each_other_and_of_the_copper(
+    pot_26_16: fm.Design,
+) -> None:
+    names = {"primary", "secondary", "third"}
+    thin = [
+        fm.Winding(5, fm.Block(r, r + 0.3e-3, -4e-3, 4e-3), name=name)
+        for name, r in zip(sorted(names), (6.4e-3, 6.9e-3, 7.4e-3), strict=True)
+    ]
+    ax = fm.plot.section_drawing(replace(pot_26_16, windings=thin), axes())
+    found = boxes(ax, {*names, "gap 0.5"})
+    assert len(found) == 4
+    assert not any(one.overlaps(other) for one, other in combinations(found, 2))
+    left = ax.transData.transform((-12.75, 0.0))[0]
+    assert all(box.x1 <= left for box in found)
+
+
+def test_a_map_names_windings_only_where_they_are_wide_enough(result: fm.Result) -> None:
+    def names(*edges: float) -> list[str]:
+        windings = [
+            fm.Winding(1, fm.Block(r0, r1, -4e-3, 4e-3), name=f"{number}")
+            for number, (r0, r1) in enumerate(pairwise(edges))
+        ]
+        shown = replace(result, design=replace(result.design, windings=windings))
+        return [text.get_text() for text in fm.plot.flux_map(shown, axes()).texts]
+
+    assert names(6.4e-3, 10e-3) == ["winding 0"]
+    assert names(6.4e-3, 6.6e-3, 10e-3) == ["winding 1"]
+    assert names(6.4e-3, 6.6e-3, 6.8e-3) == []
+
+
+def test_the_corners_of_the_window_do_not_set_the_scale_along_a_layer() -> None:
+    core = fm.PotCore(25.5e-3, 21.2e-3, 11.5e-3, 16.1e-3, 11.0e-3)
+    design = fm.Design(
+        core=core, windings=fm.Winding(20), material=fm.FroehlichCurve(2000.0, 0.45, 2.0),
+        current=0.5, tolerance=2e-2,
+    )  # fmt: skip
+    ax = fm.plot.layer_field(fm.solve(design), axes())
+    size = drawn_line(ax, "size")[1]
+    assert size[20:-20].max() <= ax.get_ylim()[1] < 1.3 * size[20:-20].max()
 
 
 def test_the_field_across_the_gap_is_the_solvers(result: fm.Result) -> None:

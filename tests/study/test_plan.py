@@ -232,6 +232,13 @@ def test_a_waveform_that_changes_makes_other_cases(folder: Path) -> None:
             '[sample]\nmethod = "grid"\ncases = 4\n[ranges]\n"gap.length" = ["1 mm", "2 mm"]',
             "'sobol' or 'latin hypercube'",
         ),
+        ('[axes]\ngap.length = ["1 mm"]', 'axes.gap: a table; accepted: "gap.length" in quotes'),
+        ('[[together]]\ngap.length = ["1 mm"]', 'together.gap: a table; accepted: "gap.length"'),
+        ('[[case]]\ngap.length = "1 mm"', 'case.gap: a table; accepted: "gap.length" in quotes'),
+        ('[ranges]\ngap.length = ["1 mm", "2 mm"]', 'ranges.gap: a table; accepted: "gap.length"'),
+        ('[axes]\n"gap.length" = 3', "axes.gap.length = 3: not usable; accepted: a table of"),
+        ('[axes]\n"gap.length" = ["1 mm"]\n[axes.x]\n', "axes.x = {}: not usable"),
+        ("axes = 3", "axes = 3: not usable; accepted: a table of design keys"),
     ],
 )
 def test_bad_plans_are_one_line_each(folder: Path, text: str, problem: str) -> None:

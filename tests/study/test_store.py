@@ -134,6 +134,18 @@ def test_an_answer_counts_only_from_the_run_that_has_the_case(path: Path) -> Non
         assert first.rows()[0].values == answer_of(0).values
 
 
+def test_cases_of_a_dead_run_count_as_open_without_being_touched(path: Path) -> None:
+    with begun(path, 3) as alive, Store(path) as other:
+        alive.start_run()
+        assert alive.take() == 0
+        with sqlite3.connect(path) as connection:
+            connection.execute("UPDATE cases SET state = 'taken', run = 'gone' WHERE number = 1")
+        connection.close()
+        Path(f"{path}-run-gone").touch()  # as a killed run leaves it
+        assert other.states() == {"open": 2, "taken": 1, "done": 0, "failed": 0}
+        assert other.counts() == {"open": 1, "taken": 2, "done": 0, "failed": 0}
+
+
 def test_a_full_disk_is_one_line_and_nothing_is_lost(path: Path) -> None:
     with begun(path) as store:
         store.start_run()
@@ -146,6 +158,7 @@ def test_a_full_disk_is_one_line_and_nothing_is_lost(path: Path) -> None:
         finally:
             resource.setrlimit(resource.RLIMIT_FSIZE, (soft, hard))
         assert "\n" not in str(refused.value)
+        assert "accepted" not in str(refused.value)
     with Store(path, writing=True) as store:
         store.start_run()
         written = store.counts()["done"]
