@@ -7,7 +7,7 @@ import pytest
 import femag as fm
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def pot_26_16() -> fm.Design:
     """Pot core 26/16 with a gap of 0.5 mm and 50 turns, linear."""
     return fm.Design(
@@ -25,7 +25,7 @@ def pot_26_16() -> fm.Design:
     )
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def saturating_26_16(pot_26_16: fm.Design) -> fm.Design:
     """The same core with a saturating material, driven into the knee."""
     return replace(pot_26_16, material=fm.FroehlichCurve(2000.0, 0.45, 2.0), current=6.0)

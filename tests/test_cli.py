@@ -1,6 +1,7 @@
 import json
 import os
 import pty
+import shutil
 import signal
 import subprocess
 import sys
@@ -76,14 +77,16 @@ def test_out_writes_json_and_two_figures(
     assert one == two
 
 
-def test_demo_leaves_a_design_to_start_from(
-    tmp_path: Path, capsys: pytest.CaptureFixture[str]
-) -> None:
-    code, out, _ = run(capsys, "demo", "--out", tmp_path / "demo")
-    assert code == 0
-    assert "(invented)" in out
-    design = fm.read_design(tmp_path / "demo" / "design.toml")
-    assert fm.read_result(tmp_path / "demo" / "result.json").design == design
+@pytest.fixture(scope="module")
+def demo_folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("left") / "demo"
+    assert cli.main(["demo", "--out", str(folder)]) == 0
+    return folder
+
+
+def test_demo_leaves_a_design_to_start_from(demo_folder: Path) -> None:
+    design = fm.read_design(demo_folder / "design.toml")
+    assert fm.read_result(demo_folder / "result.json").design == design
 
 
 @pytest.mark.parametrize(
@@ -167,12 +170,14 @@ def test_a_link_is_written_through(
     assert fm.read_result(tmp_path / "target.json").current == 4.0
 
 
-def test_demo_keeps_a_design_that_was_changed(
-    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+def test_demo_runs_again_and_keeps_a_design_that_was_changed(
+    demo_folder: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
     folder = tmp_path / "demo"
-    assert run(capsys, "demo", "--out", folder)[0] == 0
-    assert run(capsys, "demo", "--out", folder)[0] == 0
+    shutil.copytree(demo_folder, folder)
+    code, out, _ = run(capsys, "demo", "--out", folder)
+    assert code == 0
+    assert "(invented)" in out
     own = DEMO.replace("turns = 36", "turns = 40")
     (folder / "design.toml").write_text(own)
     code, out, err = run(capsys, "demo", "--out", folder)

@@ -8,7 +8,12 @@ import pytest
 import femag as fm
 from femag import cli
 from femag.design_file import design_from_toml
-from femag.target_gap import gap_for, with_gap
+from femag.target_gap import TargetGap, gap_for, with_gap
+
+
+@pytest.fixture(scope="module")
+def of_650_uh(pot_26_16: fm.Design) -> TargetGap:
+    return gap_for(pot_26_16, 650e-6)
 
 
 @pytest.mark.parametrize("target", [180e-6, 650e-6, 3e-3])
@@ -42,8 +47,8 @@ def test_an_ungapped_design_gets_a_gap_in_the_post(pot_26_16: fm.Design) -> None
     assert found.gap == pytest.approx(0.5e-3, rel=1e-3)  # validation/pot_core_26_16
 
 
-def test_the_slope_is_that_of_neighbouring_gaps(pot_26_16: fm.Design) -> None:
-    found = gap_for(pot_26_16, 650e-6)
+def test_the_slope_is_that_of_neighbouring_gaps(pot_26_16: fm.Design, of_650_uh: TargetGap) -> None:
+    found = of_650_uh
     low, high = (
         fm.solve(with_gap(pot_26_16, found.gap * share), tolerance=1e-4).inductance.value
         for share in (0.99, 1.01)
@@ -51,9 +56,10 @@ def test_the_slope_is_that_of_neighbouring_gaps(pot_26_16: fm.Design) -> None:
     assert found.slope == pytest.approx((high - low) / (0.02 * found.gap), rel=1e-2)
 
 
-def test_every_hand_gap_gives_the_target_by_its_formula(pot_26_16: fm.Design) -> None:
-    found = gap_for(pot_26_16, 650e-6)
-    for entry in found.hand:
+def test_every_hand_gap_gives_the_target_by_its_formula(
+    pot_26_16: fm.Design, of_650_uh: TargetGap
+) -> None:
+    for entry in of_650_uh.hand:
         assert entry.gap is not None
         result = fm.solve(with_gap(pot_26_16, entry.gap), tolerance=1e-2)
         (row,) = [row for row in result.hand if row.estimate.name == entry.name]

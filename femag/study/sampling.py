@@ -18,7 +18,6 @@ from femag.study.plan import MOST_CASES, Factor
 
 Method = Literal["sobol", "latin hypercube"]
 METHODS: tuple[Method, ...] = get_args(Method)
-SPACINGS = ("even", "log")
 ACCEPTED_RANGE = "[first, last], or [first, last, 'log'] of numbers above 0"
 ACCEPTED_STEPS = "a list of values, or 'first:last:number', or 'first:last:number:log'"
 DIGITS = 9

@@ -74,9 +74,16 @@ def test_width_of_a_saturating_core_shrinks_at_the_same_rate(saturating_26_16: f
     assert rate(saturating_26_16, 4_000, 25_000) < -1.9
 
 
+@pytest.fixture(scope="module")
+def closely_bounded(pot_26_16: fm.Design) -> Bounds:
+    return inductance_bounds(solved(pot_26_16, 1e-5))
+
+
 @pytest.mark.parametrize("scale", [1e-3, 0.3, 8.0, 700.0])
-def test_scaling_all_lengths_scales_the_inductance(pot_26_16: fm.Design, scale: float) -> None:
-    one = inductance_bounds(solved(pot_26_16, 1e-5))
+def test_scaling_all_lengths_scales_the_inductance(
+    pot_26_16: fm.Design, closely_bounded: Bounds, scale: float
+) -> None:
+    one = closely_bounded
     other = inductance_bounds(solved(scaled(pot_26_16, scale), 1e-5))
     assert overlap(one.scaled(scale, "H"), other)
     assert other.value == pytest.approx(scale * one.value, rel=1e-5)
@@ -116,7 +123,10 @@ def test_inductance_goes_with_turns_squared(saturating_26_16: fm.Design) -> None
     assert other.upper == pytest.approx(4 * one.upper, rel=1e-11)
 
 
-@pytest.mark.parametrize("gaps", [(fm.Gap(0.5e-3),), (fm.Gap(0.3e-3, "all"),), ()])
+@pytest.mark.parametrize(
+    "gaps",
+    [(fm.Gap(0.5e-3),), pytest.param((fm.Gap(0.3e-3, "all"),), marks=pytest.mark.slow), ()],
+)
 def test_mirrored_half_and_whole_section_agree(
     saturating_26_16: fm.Design, gaps: tuple[fm.Gap, ...]
 ) -> None:

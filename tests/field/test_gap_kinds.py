@@ -51,7 +51,9 @@ def test_a_filling_of_permeability_one_is_air(pot_26_16: fm.Design) -> None:
     assert other.inductance == one.inductance
 
 
-@pytest.mark.parametrize("kind", [{}, {"pieces": 2}, {"offset": 2e-3}], ids=str)
+@pytest.mark.parametrize(
+    "kind", [{}, {"pieces": 2}, pytest.param({"offset": 2e-3}, marks=pytest.mark.slow)], ids=str
+)
 def test_filling_raises_the_inductance_up_to_that_of_the_ungapped_core(
     pot_26_16: fm.Design, kind: dict[str, float]
 ) -> None:

@@ -68,8 +68,8 @@ def test_limits_are_ordered_and_near_the_name(core: CatalogueCore) -> None:
 
 def test_material_grows_from_minimum_to_maximum() -> None:
     for core in catalogue():
-        volumes = [effective_parameters(core.core(limit)).volume for limit in LIMITS]
-        factors = [effective_parameters(core.core(limit)).c1 for limit in LIMITS]
+        found = [effective_parameters(core.core(limit)) for limit in LIMITS]
+        volumes, factors = [one.volume for one in found], [one.c1 for one in found]
         assert volumes == sorted(volumes)
         assert factors == sorted(factors, reverse=True)
 

@@ -22,7 +22,10 @@ def solved(design: fm.Design, tolerance: float = 1e-4) -> FieldSolution:
     return adapted_solution(field_problem(design), design.current, tolerance)[0]
 
 
-@pytest.mark.parametrize("current", [0.5, 6.0, 20.0])
+@pytest.mark.parametrize(
+    "current",
+    [pytest.param(0.5, marks=pytest.mark.slow), 6.0, pytest.param(20.0, marks=pytest.mark.slow)],
+)
 def test_incremental_inductance_is_the_slope_of_the_flux_linkage(
     saturating_26_16: fm.Design, current: float
 ) -> None:

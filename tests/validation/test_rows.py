@@ -12,6 +12,7 @@ from femag.field.bounds import Bounds
 from validation.__main__ import FOLDERS, folder_rows, main
 from validation.core_loss import run as core_loss
 from validation.nonlinear_pot import run as nonlinear_pot
+from validation.round_leg_3d import run as round_leg_3d
 from validation.round_post_fringing import run as round_post_fringing
 from validation.rows import Digits, Row, bounded_row, plain_row, printed, table_of
 from validation.sphere import run as sphere
@@ -29,11 +30,17 @@ BOUNDED = (
 LINE_BY_LINE: dict[str, Callable[[dict[str, str]], Iterable[Row]]] = {
     "core_loss": core_loss.rows_of,
     "nonlinear_pot": nonlinear_pot.rows_of,
+    "round_leg_3d": round_leg_3d.rows_of,
     "round_post_fringing": round_post_fringing.rows_of,
     "sphere": sphere.rows_of,
 }
 """Their problems are solved one at a time, to keep each test short."""
-LONG = {("core_loss", number) for number in (0, 2, 3)}
+LONG = {("core_loss", number) for number in (0, 2, 3)} | {("sphere", 2)}
+LONG |= {
+    ("round_leg_3d", number)
+    for number, line in enumerate(table_of("round_leg_3d"))
+    if line["outline"] in ("RM-like", "ETD-like") and line["gap_mm"] != "0.5"
+}
 WHOLE = tuple(folder for folder in FOLDERS if folder not in LINE_BY_LINE)
 
 
@@ -66,6 +73,10 @@ def test_every_row_passes(folder: str) -> None:
 )
 def test_every_row_of_a_line_passes(folder: str, number: int) -> None:
     check(tuple(LINE_BY_LINE[folder](table_of(folder)[number])), folder)
+
+
+def test_every_row_of_the_saturating_core_with_straight_legs_passes() -> None:
+    check(tuple(round_leg_3d.saturating_rows()), "round_leg_3d")
 
 
 @pytest.mark.parametrize(
