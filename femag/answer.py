@@ -15,7 +15,8 @@ from femag.quantities import Pull, WoundCopper
 from femag.requirement_answer import requirement_lines
 from femag.requirement_checks import checked_requirements
 from femag.result import Result
-from femag.tolerance_answer import budget_lines
+from femag.tolerance_answer import budget_lines, spread_line
+from femag.tolerance_budget import SampledSpread
 from femag.units import with_common_unit, with_unit
 
 WIDTH = 80
@@ -27,8 +28,18 @@ HAND_NOTE = (
 OTHER_WINDINGS = "Inductance matrix, coupling and leakage of the windings: gapfield windings."
 
 
-def print_answer(result: Result, console: Console) -> None:
-    """Print what the field says about a design, the hand formulas beside it, and cautions."""
+def print_answer(result: Result, console: Console, spread: SampledSpread | None = None) -> None:
+    """Print what the field says about a design, the hand formulas beside it, and cautions.
+
+    Parameters
+    ----------
+    result : Result
+        What the field says.
+    console : Console
+        Where to print.
+    spread : SampledSpread, optional
+        Samples of the design's tolerances.
+    """
     design = result.design
     lines: list[Text | Table | str] = []
     if design.title:
@@ -45,7 +56,8 @@ def print_answer(result: Result, console: Console) -> None:
     if result.copper_loss:
         lines += [_losses(result), *map(Text, loss_notes(result)), ""]
     if result.tolerance_budget is not None:
-        lines += [*budget_lines(result.tolerance_budget), ""]
+        sampled = [] if spread is None else [spread_line(spread)]
+        lines += [*budget_lines(result.tolerance_budget), *sampled, ""]
     lines += [_hand_formulas(result), Text(HAND_NOTE), *hand_caveat(result), ""]
     lines += loss_lines(result)
     lines += [Text(_provenance(result)), "", Text(cautions(result.stored_energy, result.current))]

@@ -35,6 +35,7 @@ if TYPE_CHECKING:
     from femag.design import Design
     from femag.field.bounds import FieldSolution
     from femag.result import Result
+    from femag.tolerance_budget import SampledSpread
 
 STOPPED = 130
 FOLDER_FILES = ("result.json", "section.png", "gap.png")
@@ -70,6 +71,16 @@ FiguresOption = Annotated[
     Path | None,
     typer.Option("--figures", metavar="DIR", help="Write every figure of the result by itself."),
 ]
+SampleOption = Annotated[
+    int | None,
+    typer.Option(
+        "--sample",
+        metavar="N",
+        min=2,
+        max=100_000,
+        help="Solve N samples of the design's tolerances as well.",
+    ),
+]
 
 
 @app.callback(invoke_without_command=True)
@@ -96,6 +107,7 @@ def solve_command(
     field: FieldOption = None,
     mesh: MeshOption = None,
     figures: FiguresOption = None,
+    sample: SampleOption = None,
 ) -> int:
     """Solve a design file.
 
@@ -112,7 +124,12 @@ def solve_command(
     check_file("--mesh", mesh, ".msh")
     check_targets(None, figures, "--figures")
     asked = _with_current(read_design(design), current)
-    return _answer(asked, json, out, meshed=(field, mesh), figures=figures)
+    if sample is not None and asked.part_tolerances is None:
+        raise InputError(
+            "the design has no tolerances", key="--sample", value=sample,
+            accepted="a table [tolerance] in the design",
+        )  # fmt: skip
+    return _answer(asked, json, out, meshed=(field, mesh), figures=figures, sample=sample)
 
 
 @app.command("demo")
@@ -207,28 +224,31 @@ def _answer(
     texts: Mapping[Path, str] | None = None,
     meshed: tuple[Path | None, Path | None] = (None, None),
     figures: Path | None = None,
+    sample: int | None = None,
 ) -> int:
     """Solve, write files, with `texts` among them, print; return the exit code."""
     from femag.requirement_checks import all_kept, checked_requirements
     from femag.result import solve
+    from femag.tolerance_budget import sampled_spread
 
     check_targets(json, out)
     with shown_progress(_bracket) as progress:
         result = solve(design, progress=progress)
+        spread = None if sample is None else sampled_spread(design, sample)
     with ExitStack() as stack:
         _write_on_mesh(result, *meshed, stack)
         _write_figures(result, figures, stack)
-        _write(result, json, out, texts or {}, stack)
+        _write(result, spread, json, out, texts or {}, stack)
     code = 0 if all_kept(checked_requirements(result)) else MISSED
     if json == "-":
         from femag.export.result_file import result_json
 
-        typer.echo(result_json(result), nl=False)
+        typer.echo(result_json(result, spread), nl=False)
         return code
 
     from femag.answer import print_answer
 
-    print_answer(result, terminal())
+    print_answer(result, terminal(), spread)
     if out is not None:
         typer.echo(f"\nWritten to {out}: {', '.join((*FOLDER_FILES, *_loss_files(result)))}")
     return code
@@ -263,6 +283,7 @@ def _write_figures(result: Result, folder: Path | None, stack: ExitStack) -> Non
 
 def _write(
     result: Result,
+    spread: SampledSpread | None,
     json: str | None,
     out: Path | None,
     texts: Mapping[Path, str],
@@ -274,14 +295,14 @@ def _write(
 
     if json is not None and json != "-":
         target = stack.enter_context(whole_file(json))
-        target.write_text(result_json(result), encoding="utf-8")
+        target.write_text(result_json(result, spread), encoding="utf-8")
     if out is None:
         return
     from femag.plot import flux_map, gap_map, write_figure
 
     make_folder(out)
     document, section, gap = (stack.enter_context(whole_file(out / name)) for name in FOLDER_FILES)
-    document.write_text(result_json(result), encoding="utf-8")
+    document.write_text(result_json(result, spread), encoding="utf-8")
     for file, text in texts.items():
         stack.enter_context(whole_file(file)).write_text(text, encoding="utf-8")
     write_figure(lambda ax: flux_map(result, ax), section)

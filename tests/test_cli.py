@@ -5,6 +5,7 @@ import shutil
 import signal
 import subprocess
 import sys
+from dataclasses import replace
 from importlib.resources import files
 from pathlib import Path
 
@@ -360,3 +361,25 @@ def test_a_closed_pipe_costs_the_demo_no_file(tmp_path: Path) -> None:
         process.stdout.close()
         assert process.wait(60) in (0, -signal.SIGPIPE)
     assert {file.name for file in folder.iterdir()} == {"design.toml", *cli.FOLDER_FILES}
+
+
+def test_samples_of_tolerances_stand_beside_the_budget(
+    tmp_path: Path, pot_26_16: fm.Design, capsys: pytest.CaptureFixture[str]
+) -> None:
+    file, answer = tmp_path / "d.toml", tmp_path / "r.json"
+    parts = fm.PartTolerances(gap=1e-5, permeability=0.25)
+    design = replace(pot_26_16, part_tolerances=parts, tolerance=4e-3)
+    file.write_text(fm.design_toml(design))
+    assert cli.main(["solve", str(file), "--sample", "6", "--json", str(answer)]) == 0
+    assert "6 samples" in capsys.readouterr().out
+    document = json.loads(answer.read_text())
+    sampled = document["sampled"]
+    assert sampled["samples"] == 6
+    assert sampled["lowest"] < document["inductance"]["value"] < sampled["highest"]
+    assert sampled["standard_deviation"] == pytest.approx(
+        sampled["linear_standard_deviation"], rel=0.05
+    )
+    assert fm.read_result(answer).inductance.lower == document["inductance"]["lower"]
+    file.write_text(fm.design_toml(pot_26_16))
+    assert cli.main(["solve", str(file), "--sample", "6"]) == 2
+    assert "--sample = 6: the design has no tolerances" in capsys.readouterr().err

@@ -20,13 +20,20 @@ from femag.export.loss_entries import (
     core_loss_of,
     loss_budget_entry,
 )
-from femag.export.tolerance_entry import ToleranceBudgetEntry, budget_entry, budget_of_entry
+from femag.export.tolerance_entry import (
+    SampledSpreadEntry,
+    ToleranceBudgetEntry,
+    budget_entry,
+    budget_of_entry,
+    spread_entry,
+)
 from femag.export.whole_file import whole_file
 from femag.field.bounds import Bounds
 from femag.hand import HandEstimate
 from femag.quantities import Force, Pull, SectionMean, VolumeShare, WoundCopper
 from femag.requirement_checks import RequirementCheck, checked_requirements
 from femag.result import Comparison, Result
+from femag.tolerance_budget import SampledSpread
 
 FORMAT: Literal["gapfield result 1"] = "gapfield result 1"
 
@@ -145,6 +152,7 @@ class ResultDocument(Entry):
     losses: LossBudgetEntry | None = None
     force: ForceEntry
     tolerance_budget: ToleranceBudgetEntry | None = None
+    sampled: SampledSpreadEntry | None = None
     hand: list[HandEntry]
     model_note: str = ""
     unknowns: int
@@ -152,9 +160,18 @@ class ResultDocument(Entry):
     seconds: float
 
 
-def result_json(result: Result) -> str:
-    """Return a result as JSON text, SI units throughout."""
-    return _document(result).model_dump_json(indent=2) + "\n"
+def result_json(result: Result, spread: SampledSpread | None = None) -> str:
+    """Return a result as JSON text, SI units throughout.
+
+    Parameters
+    ----------
+    result : Result
+        What was solved.
+    spread : SampledSpread, optional
+        Samples of the design's tolerances; `read_result` leaves them out.
+    """
+    sampled = {"sampled": spread_entry(spread)} if spread else {}
+    return _document(result).model_copy(update=sampled).model_dump_json(indent=2) + "\n"
 
 
 def write_result(result: Result, path: str | Path) -> None:
