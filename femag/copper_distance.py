@@ -320,7 +320,7 @@ def _fields_of(problems: Sequence[FieldProblem], known: FieldSolution) -> list[R
         for problem in problems
     ]
     rates = solved(matrix, np.stack(loads, axis=1), flux.side.numbering.ordering)
-    return [RippleField(known, 0.0, rate) for rate in rates.T]
+    return [RippleField(known, 0.0, flux.side.change(rate)) for rate in rates.T]
 
 
 def _along_layer(field: RippleField, design: Design, distance: float) -> float:

@@ -20,7 +20,7 @@ from numpy.typing import NDArray
 
 from femag.design import Design, whole_section, wound_coils
 from femag.field.bounds import FieldSolution
-from femag.field.regional import agreeing_solution
+from femag.field.regional import settled_solution
 from femag.geometry import (
     Coil,
     Conductor,
@@ -162,8 +162,8 @@ def copper_loss(
     if design.ripple is None:
         return ()
     copper = {region.name for region in whole_section(design).regions if region.winding}
-    close = agreeing_solution(solution, copper, accuracy)
-    field = ripple_field(close, design.ripple.bias(design.current))
+    close, side = settled_solution(solution, copper, accuracy)
+    field = ripple_field(close, design.ripple.bias(design.current), side)
     return tuple(_winding_loss(design, coil, field) for coil in wound_coils(design))
 
 

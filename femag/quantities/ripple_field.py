@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Collection
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,9 +17,10 @@ from femag.field.bounds import FieldSolution
 from femag.field.newton import Minimum, minimum
 from femag.field.regional import elements_in
 from femag.field.side import Side
-from femag.field.tangent import flux_tangent
+from femag.field.tangent import flux_tangent, potential_tangent
 from femag.mesh import SectionMesh
-from femag.quantities.inside_elements import above_mirror, flux_field, nodal_values
+from femag.quantities.inside_elements import above_mirror, from_quadrature
+from femag.units import MU_0
 
 Array = NDArray[np.float64]
 
@@ -28,7 +30,7 @@ AT_ONCE = 50_000
 
 @dataclass(frozen=True)
 class RippleField:
-    """Flux density per ampere of a small change, from the flux side.
+    """Flux density per ampere of a small change, in copper and air.
 
     Parameters
     ----------
@@ -36,13 +38,13 @@ class RippleField:
         Of the design; its mesh is used.
     bias : float
         Current about which the change is small, A.
-    rate : array, (size,)
-        Change of the flux side's unknowns, 1/A.
+    per_ampere : array, (elements, 2, points)
+        B at the quadrature points of the mesh, T/A; in each element it is a quadratic.
     """
 
     solution: FieldSolution
     bias: float
-    rate: Array
+    per_ampere: Array
 
     @property
     def mesh(self) -> SectionMesh:
@@ -61,8 +63,8 @@ class RippleField:
         mapping = self.mesh.triangles.mapping()
         element = np.asarray(self.mesh.triangles.element_finder(mapping)(*points))
         local = mapping.invF(points[:, :, None], tind=element)
-        nodal = nodal_values(self.solution, self.rate)
-        return flux_field(self.solution, nodal, local, element)[1][:, :, 0]
+        weights = from_quadrature(self.solution, local[:, :, 0])
+        return np.asarray(np.einsum("nq,ncq->cn", weights, self.per_ampere[element]))
 
     def squared_in(self, regions: Collection[str]) -> float:
         """Return the integral of |B|^2 over the volume of regions, T2 m3/A2, as exact as the field.
@@ -73,12 +75,14 @@ class RippleField:
             Names; those that the mesh does not hold are left out.
         """
         elements = elements_in(self.solution, regions)
-        b = self.solution.sides.flux.change(self.rate)[elements]
+        b = self.per_ampere[elements]
         weight = self.solution.sides.discretisation.weight[elements]
         return float(np.sum(weight * np.sum(b**2, axis=1)))
 
 
-def ripple_field(solution: FieldSolution, bias: float) -> RippleField:
+def ripple_field(
+    solution: FieldSolution, bias: float, side: Literal["flux", "potential"] = "flux"
+) -> RippleField:
     """Return the field per ampere of a small change of the current about a bias.
 
     From the tangent problem at the bias; of a saturating core that is solved again on the mesh of
@@ -90,23 +94,30 @@ def ripple_field(solution: FieldSolution, bias: float) -> RippleField:
         Of the design at any current.
     bias : float
         A.
+    side : {"flux", "potential"}
+        B, or mu0 H.
 
     Raises
     ------
     NumericalError
         If the field at the bias cannot be solved.
     """
-    return RippleField(solution, bias, flux_tangent(_flux_at(solution, bias)).rate)
+    if side == "flux":
+        at_bias = _at(solution, solution.flux, bias)
+        return RippleField(solution, bias, at_bias.side.change(flux_tangent(at_bias).rate))
+    at_bias = _at(solution, solution.potential, bias)
+    h = at_bias.side.source + at_bias.side.change(potential_tangent(at_bias).rate)
+    return RippleField(solution, bias, MU_0 * h)
 
 
-def _flux_at(solution: FieldSolution, current: float) -> Minimum:
-    """Return the flux side's minimiser at a current; of a linear core any has the same tangent."""
-    side = solution.flux.side
+def _at(solution: FieldSolution, known: Minimum, current: float) -> Minimum:
+    """Return a side's minimiser at a current; of a linear core any has the same tangent."""
+    side = known.side
     if current == solution.current or not solution.sides.laws.saturating:
-        return solution.flux
+        return known
     if current == 0.0 and side.fixed is None:
         return _nothing(side)
-    return minimum(side, current, solution.flux.field)
+    return minimum(side, current, known.field)
 
 
 def _nothing(side: Side) -> Minimum:
