@@ -172,6 +172,15 @@ def test_clearance_is_the_distance_of_metal_from_the_opening(pot_26_16: fm.Desig
     centre, half_pitch = 0.6e-3 + 0.28e-3, 0.28e-3  # no turn of 16 lies at z = 0
     expected = np.hypot(centre, max(half_pitch - 0.25e-3, 0.0)) - 0.25e-3
     assert found.distance == pytest.approx(expected)
+    pm = fm.catalogue_core("PM 114/93").core()
+    wire = fm.LitzWire(600, 0.1e-3)
+    touching = fm.Design(
+        core=pm, gaps=fm.Gap(3e-3, "all"), windings=fm.Winding(30, conductor=wire),
+        material=fm.LinearCurve(2000.0),
+    )  # fmt: skip
+    found = copper_clearance(touching)
+    assert found is not None
+    assert found.distance == 0.0
     assert copper_clearance(replace(pot_26_16, gaps=())) is None
 
 

@@ -14,6 +14,10 @@ Opening = tuple[float, float, float]
 """Radius at which a gap opens into the window, and its lower and upper edge there, m."""
 
 
+DECIMALS = 12
+"""Of distances in m: what is less comes from rounding where copper touches."""
+
+
 @dataclass(frozen=True)
 class CopperClearance:
     """The winding that comes nearest to a gap.
@@ -38,7 +42,9 @@ def copper_clearance(design: Design) -> CopperClearance | None:
     """Return the winding that comes nearest to the opening of a gap; None without gaps."""
     openings = gap_openings(design)
     found = [
-        CopperClearance(coil.winding.name, _distance(coil, opening), opening[2] - opening[1])
+        CopperClearance(
+            coil.winding.name, round(_distance(coil, opening), DECIMALS), opening[2] - opening[1]
+        )
         for coil in wound_coils(design)
         for opening in openings
     ]

@@ -213,6 +213,11 @@ def clearance_text(result: Result) -> str:
     found = copper_clearance(result.design)
     if found is None:
         return "There is no gap that copper could be near to."
+    if found.distance <= 0.0:
+        return (
+            f"Winding {found.name} reaches the edge of a gap of {1e3 * found.gap:.3g} mm. To keep "
+            "two to three gap lengths away is common practice, no source."
+        )
     return (
         f"Winding {found.name} comes as near as {1e3 * found.distance:.3g} mm to the edge of a "
         f"gap of {1e3 * found.gap:.3g} mm: {found.distance / found.gap:.2g} gap lengths. To keep "

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import tempfile
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from concurrent.futures import Executor
 from contextlib import ExitStack
 from dataclasses import dataclass, field
@@ -229,6 +229,10 @@ def _axis_factors(axes: Axes) -> list[Factor]:
         together = (keys,) if isinstance(keys, str) else tuple(keys)
         if isinstance(values, str):
             values = steps_of(together[0], values)
+        if not isinstance(values, Iterable):
+            raise InputError(
+                "no list", key=", ".join(together), value=values, accepted="a sequence of values"
+            )
         rows = [(value,) if isinstance(keys, str) else tuple(value) for value in values]
         for row in rows:
             if len(row) != len(together):

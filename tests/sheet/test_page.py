@@ -184,6 +184,7 @@ def test_losses_forces_and_tolerances_have_their_tables(pot_26_16: fm.Design) ->
     page = Page(review_sheet(reviewed))
     for caption in ("Loss in the copper", "Loss in the core", "Losses added up", "Forces at 1 A"):
         assert caption in page.text
+    assert "winding main, layer 1" in page.text
     assert result.loss_budget is not None
     for value in (result.loss_budget.total, result.force.halves.by_work):
         assert any(text in page.text for text in (f"{1e3 * value:.1f} m", f"{value:.3f} "))

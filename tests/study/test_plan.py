@@ -260,6 +260,11 @@ def test_a_base_may_lack_what_every_case_sets(folder: Path) -> None:
     assert len(study_of(folder, '[axes]\n"gap.length" = ["1 mm"]').plan) == 1
 
 
+def test_an_axis_that_is_a_single_number_is_refused(pot_26_16: fm.Design) -> None:
+    with pytest.raises(fm.InputError, match=r"gap.length = 0.001: no list"):
+        _ = fm.Study(pot_26_16, {"gap.length": 1e-3}).plan  # type: ignore[dict-item]
+
+
 def test_a_plan_is_a_value(pot_26_16: fm.Design) -> None:
     one, other = (fm.Study(pot_26_16, {"gap.length": [1e-3, 2e-3]}).plan for _ in range(2))
     assert one == other
