@@ -12,6 +12,7 @@ from femag.current_curve import inductance_curve
 from femag.errors import InputError
 from femag.materials import FroehlichCurve, LinearCurve, ScaledCurve, with_permeability
 from femag.measured_inductance import (
+    Fit,
     MeasuredPoints,
     fitted_design,
     measured_curve,
@@ -170,6 +171,17 @@ class TestResiduals:
             residuals(MeasuredPoints((1.0, 1.5), (1e-3, 1e-3)), curve)
 
 
+@pytest.fixture(scope="module")
+def two_points(linear: fm.Design) -> MeasuredPoints:
+    return as_measured(linear, (1.0, 2.0))
+
+
+@pytest.fixture(scope="module")
+def fit_of_two_points(linear: fm.Design, two_points: MeasuredPoints) -> Fit:
+    """From a gap 1.2 times as long."""
+    return fitted_design(altered(linear, "gap", 1.2), two_points)
+
+
 class TestFit:
     @pytest.mark.slow
     def test_gap_and_permeability_of_a_known_design_are_recovered(
@@ -226,26 +238,23 @@ class TestFit:
             with pytest.raises(InputError, match="weights"):
                 fitted_design(linear, points, weights=weights)
 
-    def test_turns_scale_out(self, linear: fm.Design) -> None:
+    def test_turns_scale_out(
+        self, linear: fm.Design, two_points: MeasuredPoints, fit_of_two_points: Fit
+    ) -> None:
         """L goes with the square of the turns at equal ampere turns, so the gap stays."""
-        points = as_measured(linear, (1.0, 2.0))
         (coil,) = linear.windings
         twice = replace(linear, windings=(replace(coil, turns=2 * coil.turns),))
-        scaled = MeasuredPoints((0.5, 1.0), tuple(4.0 * np.array(points.inductance)))
-        fits = [
-            fitted_design(altered(start, "gap", 1.2), measured)
-            for start, measured in ((linear, points), (twice, scaled))
-        ]
-        assert fits[1].gap == pytest.approx(fits[0].gap, rel=1e-9)
-        assert fits[0].gap == pytest.approx(0.5e-3, rel=1e-3)
+        scaled = MeasuredPoints((0.5, 1.0), tuple(4.0 * np.array(two_points.inductance)))
+        fit = fitted_design(altered(twice, "gap", 1.2), scaled)
+        assert fit.gap == pytest.approx(fit_of_two_points.gap, rel=1e-9)
+        assert fit_of_two_points.gap == pytest.approx(0.5e-3, rel=1e-3)
 
-    def test_negative_currents_give_the_same_fit(self, linear: fm.Design) -> None:
-        points = as_measured(linear, (1.0, 2.0))
-        start = altered(linear, "gap", 1.1)
-        mirrored = replace(points, current=(-1.0, -2.0))
-        assert fitted_design(start, mirrored).gap == pytest.approx(
-            fitted_design(start, points).gap, rel=1e-9
-        )
+    def test_negative_currents_give_the_same_fit(
+        self, linear: fm.Design, two_points: MeasuredPoints, fit_of_two_points: Fit
+    ) -> None:
+        mirrored = replace(two_points, current=(-1.0, -2.0))
+        fit = fitted_design(altered(linear, "gap", 1.2), mirrored)
+        assert fit.gap == pytest.approx(fit_of_two_points.gap, rel=1e-9)
 
     def test_of_an_ungapped_core_the_permeability_is_fitted(self, linear: fm.Design) -> None:
         """L = mu N^2/C1 where no flux leaves the core: all but 2e-3 of it at 10 000."""
