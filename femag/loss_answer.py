@@ -34,9 +34,10 @@ def described_ripple(ripple: Ripple, peak: float) -> str:
 
 
 def loss_lines(result: Result) -> list[Text | Table | str]:
-    """Return the lines about losses; none without a ripple."""
+    """Return the lines about losses; without a ripple those of a constant current, if known."""
     if result.design.ripple is None:
-        return []
+        constant = constant_current_loss(result)
+        return [Text(constant), ""] if constant else []
     lines: list[Text | Table | str] = []
     if result.core_loss is None:
         lines.append(Text(NO_PARAMETERS))
@@ -44,6 +45,18 @@ def loss_lines(result: Result) -> list[Text | Table | str]:
         straight = not isinstance(result.design.core, PotCore)
         lines += [_core_loss(result.core_loss), Text(core_loss_notes(result.core_loss, straight))]
     return [*lines, "", *_budget(result), ""]
+
+
+def constant_current_loss(result: Result) -> str:
+    """Return the loss of a constant current in words; empty where it is not known."""
+    budget = result.loss_budget
+    if budget is None:
+        return ""
+    return (
+        f"Loss in the copper: {with_unit(budget.total, 'W', 3)} at a constant "
+        f"{abs(result.current):g} A. What a current that alternates adds, here and in the core, "
+        "takes drive.ripple."
+    )
 
 
 def _core_loss(loss: CoreLoss) -> Table:

@@ -169,7 +169,7 @@ def _temperature(result: Result) -> Known:
 def _loss(result: Result) -> Known:
     budget = result.loss_budget
     if budget is None:
-        return Known(None, None, None, "the drive has no ripple")
+        return Known(None, None, None, "a winding that carries current has no conductor")
     if budget.missing:
         return Known(None, None, None, f"not known: {', '.join(budget.missing)}")
     return Known(budget.total, budget.total, budget.total, "estimate, core and copper")

@@ -173,9 +173,12 @@ class Result:
 
     @property
     def loss_budget(self) -> LossBudget | None:
-        """Losses under current and ripple, added up; None without a ripple."""
+        """Losses under current and ripple, added up; without a ripple those of a constant current.
+
+        None without a ripple where a winding that carries current has no conductor.
+        """
         if self.design.ripple is None:
-            return None
+            return self._loss_of_constant_current
         copper = self.copper_loss
         by_ripple = [part for loss in copper for part in (loss.ripple, loss.crossing)]
         return LossBudget(
@@ -183,6 +186,15 @@ class Result:
             copper_dc=_sum_if_known([loss.dc for loss in copper]),
             copper_ripple=_sum_if_known(by_ripple),
         )
+
+    @property
+    def _loss_of_constant_current(self) -> LossBudget | None:
+        resistances = {copper.name: copper.resistance for copper in self.copper}
+        names = [winding.name for winding in self.design.driven_windings]
+        if not resistances.keys() >= set(names):
+            return None
+        resistance = sum(resistances[name] for name in names)
+        return LossBudget(core=0.0, copper_dc=self.current**2 * resistance, copper_ripple=0.0)
 
     @property
     def fringing_factor(self) -> float:

@@ -4,15 +4,20 @@ from __future__ import annotations
 
 from femag.copper_answer import LOSS_COLUMNS, loss_notes, loss_rows
 from femag.geometry import PotCore
-from femag.loss_answer import NO_PARAMETERS, core_loss_notes, described_ripple
+from femag.loss_answer import (
+    NO_PARAMETERS,
+    constant_current_loss,
+    core_loss_notes,
+    described_ripple,
+)
 from femag.quantities import CoreLoss
 from femag.result import Result
 from femag.sheet.tables import Table
 from femag.sheet.texts import shown, with_micro
 
 NO_RIPPLE = (
-    "Losses were not computed: the drive has no ripple. The keys ripple and frequency of the table "
-    "[drive] give it one."
+    "Losses were not computed: the drive has no ripple, and a winding that carries its current no "
+    "conductor. The keys ripple and frequency of the table [drive] give it one."
 )
 
 
@@ -30,7 +35,7 @@ def loss_texts(result: Result) -> tuple[str, ...]:
     """Return what the losses belong to, what they are, and what they leave out."""
     design = result.design
     if design.ripple is None:
-        return (NO_RIPPLE,)
+        return (constant_current_loss(result) or NO_RIPPLE,)
     drive = described_ripple(design.ripple, design.current)
     texts = [f"{drive[0].upper()}{drive[1:]}.", *(loss_notes(result) if result.copper_loss else [])]
     if result.core_loss is None:

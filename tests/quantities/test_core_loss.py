@@ -168,8 +168,15 @@ def test_without_ripple_or_parameters_there_is_no_loss(linear: fm.Design) -> Non
     assert result.core_loss is None
     assert result.loss_budget is not None
     assert result.loss_budget.core is None
+
+
+def test_without_ripple_what_is_left_is_a_constant_current(linear: fm.Design) -> None:
     result = fm.solve(replace(linear, ripple=None), tolerance=1e-2)
-    assert (result.core_loss, result.loss_budget) == (None, None)
+    assert result.core_loss is None
+    assert result.loss_budget is not None
+    assert result.loss_budget.total == pytest.approx(4.0 * result.copper[0].resistance)
+    block = fm.solve(replace(linear, ripple=None, windings=(fm.Winding(50),)), tolerance=1e-2)
+    assert block.loss_budget is None
 
 
 def test_the_budget_adds_what_is_known(solved: fm.Result) -> None:
