@@ -1,5 +1,6 @@
 """What the answer says about losses."""
 
+import re
 from dataclasses import replace
 from io import StringIO
 
@@ -59,4 +60,19 @@ def test_it_says_what_is_not_known_and_what_lies_outside_of_the_fit(design: fm.D
 
 def test_a_core_with_straight_legs_calls_its_plates_a_lower_estimate(design: fm.Design) -> None:
     legs = replace(design, core=fm.catalogue_core("PQ 26/25").core(), windings=(fm.Winding(20),))
-    assert "The plates' loss is a lower estimate" in words(legs)
+    text = answer(legs)
+    assert "The plates' loss is a lower estimate" in " ".join(text.split())
+    table = text.partition("core loss ")[2].splitlines()
+    assert [line.split()[0] for line in table[1:4]] == ["post", "plates", "legs"]
+
+
+def test_a_strong_bend_is_a_plain_percentage(design: fm.Design) -> None:
+    far = replace(
+        design,
+        material=fm.FroehlichCurve(2000.0, 0.4, 4.0, LOSS),
+        current=60.0,
+        ripple=fm.Ripple(60.0, 1e5),
+    )
+    text = words(far)
+    (share,) = re.findall(r"in proportion, which adds (\S+) %", text)
+    assert "e" not in share
