@@ -44,7 +44,7 @@ JsonOption = Annotated[
 ]
 WriteOption = Annotated[
     Path | None,
-    typer.Option("--write", metavar="FILE", help="Write the design with that gap."),
+    typer.Option("--write", metavar="FILE.toml", help="Write the design with that gap."),
 ]
 
 
