@@ -45,7 +45,7 @@ JsonOption = Annotated[
 WriteOption = Annotated[
     Path | None,
     typer.Option(
-        "--write", metavar="FILE", help="Write the design with that gap, all else as it is."
+        "--write", metavar="FILE.toml", help="Write the design with that gap, all else as it is."
     ),
 ]
 

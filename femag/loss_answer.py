@@ -43,7 +43,10 @@ def loss_lines(result: Result) -> list[Text | Table | str]:
         lines.append(Text(NO_PARAMETERS))
     else:
         straight = not isinstance(result.design.core, PotCore)
-        lines += [_core_loss(result.core_loss), Text(core_loss_notes(result.core_loss, straight))]
+        lines += [
+            _core_loss(result.core_loss, straight),
+            Text(core_loss_notes(result.core_loss, straight)),
+        ]
     return [*lines, "", *_budget(result), ""]
 
 
@@ -59,11 +62,17 @@ def constant_current_loss(result: Result) -> str:
     )
 
 
-def _core_loss(loss: CoreLoss) -> Table:
+def core_part(name: str, straight_legs: bool) -> str:
+    """Return what a part of the core is called: a ring may stand for straight legs."""
+    return "legs" if straight_legs and name == "ring" else name
+
+
+def _core_loss(loss: CoreLoss, straight_legs: bool) -> Table:
     table = _columns("core loss", "W", "kW/m3", "mm3")
     for part in loss.parts:
         density = f"{1e-3 * part.loss / part.volume:.4g}"
-        table.add_row(part.name, f"{part.loss:.4g}", density, f"{1e9 * part.volume:.0f}")
+        name = core_part(part.name, straight_legs)
+        table.add_row(name, f"{part.loss:.4g}", density, f"{1e9 * part.volume:.0f}")
     volume = sum(part.volume for part in loss.parts)
     total = (f"{loss.total:.4g}", f"{1e-3 * loss.mean_density:.4g}", f"{1e9 * volume:.0f}")
     table.add_row(*(Text(text, style="bold") for text in ("whole core", *total)))

@@ -75,11 +75,9 @@ def test_solve_writes_the_figures_of_losses_that_are_known(
 ) -> None:
     file, folder = tmp_path / "design.toml", tmp_path / "out"
     lossy = fm.Steinmetz(1.5, 1.45, 2.6, (25e3, 300e3), (0.03, 0.3))
-    for loss, names in ((None, ["copper.png"]), (lossy, ["copper.png", "core-loss.png"])):
-        text = design_toml(replace(design, material=fm.LinearCurve(2000.0, loss)))
-        file.write_text(text, encoding="utf-8")
-        assert main(["solve", str(file), "--out", str(folder)]) == 0
-        assert f"gap.png, {', '.join(names)}\n" in capsys.readouterr().out
-        for name in names:
-            assert (folder / name).stat().st_size > 10_000
-        assert (folder / "core-loss.png").exists() == (loss is not None)
+    text = design_toml(replace(design, material=fm.LinearCurve(2000.0, lossy), tolerance=1e-2))
+    file.write_text(text, encoding="utf-8")
+    assert main(["solve", str(file), "--out", str(folder)]) == 0
+    assert "gap.png, copper.png, core-loss.png\n" in capsys.readouterr().out
+    for name in ("copper.png", "core-loss.png"):
+        assert (folder / name).stat().st_size > 10_000

@@ -8,6 +8,7 @@ from rich.console import Console
 
 import femag as fm
 from femag.answer import WIDTH, print_answer
+from femag.loss_answer import core_loss_notes
 
 LOSS = fm.Steinmetz(1.5, 1.45, 2.6, (25e3, 300e3), (0.001, 0.3), 100.0, "invented for a test")
 
@@ -59,4 +60,14 @@ def test_it_says_what_is_not_known_and_what_lies_outside_of_the_fit(design: fm.D
 
 def test_a_core_with_straight_legs_calls_its_plates_a_lower_estimate(design: fm.Design) -> None:
     legs = replace(design, core=fm.catalogue_core("PQ 26/25").core(), windings=(fm.Winding(20),))
-    assert "The plates' loss is a lower estimate" in words(legs)
+    text = answer(legs)
+    assert "The plates' loss is a lower estimate" in " ".join(text.split())
+    table = text.partition("core loss ")[2].splitlines()
+    assert [line.split()[0] for line in table[1:4]] == ["post", "plates", "legs"]
+
+
+def test_a_strong_bend_is_a_plain_percentage(design: fm.Design) -> None:
+    loss = fm.solve(design, tolerance=1e-2).core_loss
+    assert loss is not None
+    assert "which adds 141 %" in core_loss_notes(replace(loss, bend=1.413), False)
+    assert "which adds 2.8 %" in core_loss_notes(replace(loss, bend=0.0283), False)

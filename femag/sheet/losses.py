@@ -8,6 +8,7 @@ from femag.loss_answer import (
     NO_PARAMETERS,
     constant_current_loss,
     core_loss_notes,
+    core_part,
     described_ripple,
 )
 from femag.quantities import CoreLoss
@@ -27,7 +28,8 @@ def loss_tables(result: Result) -> tuple[Table, ...]:
         return ()
     tables = [_copper_table(result)] if result.copper_loss else []
     if result.core_loss is not None:
-        tables.append(_core_table(result.core_loss))
+        straight = not isinstance(result.design.core, PotCore)
+        tables.append(_core_table(result.core_loss, straight))
     return (*tables, _budget_table(result))
 
 
@@ -55,10 +57,10 @@ def _copper_table(result: Result) -> Table:
     return Table("Loss in the copper", LOSS_COLUMNS, tuple(rows))
 
 
-def _core_table(loss: CoreLoss) -> Table:
+def _core_table(loss: CoreLoss, straight_legs: bool) -> Table:
     rows = [
-        (part.name, shown(part.loss, "W"), f"{1e-3 * part.loss / part.volume:.4g}",
-         f"{1e9 * part.volume:.0f}")
+        (core_part(part.name, straight_legs), shown(part.loss, "W"),
+         f"{1e-3 * part.loss / part.volume:.4g}", f"{1e9 * part.volume:.0f}")
         for part in loss.parts
     ]  # fmt: skip
     volume = sum(part.volume for part in loss.parts)
