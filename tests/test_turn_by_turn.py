@@ -262,7 +262,7 @@ def test_details_that_cannot_be_had_are_refused(
 def test_a_figure_names_a_winding_once(pot_26_16: fm.Design) -> None:
     from matplotlib.figure import Figure
 
-    design = with_wire(pot_26_16, 12, fm.RoundWire(0.8e-3), wall=0.5e-3)
+    design = with_wire(pot_26_16, 20, fm.RoundWire(0.8e-3), wall=0.5e-3)
     result = fm.solve(replace(design, detail="turn"), tolerance=1e-2)
     texts = fm.plot.flux_map(result, Figure().add_subplot()).texts
     assert [text.get_text() for text in texts] == ["winding main"]
