@@ -27,6 +27,8 @@ from femag.units import MU_0
 Array = NDArray[np.float64]
 Index = NDArray[np.int64]
 
+FAR_APART = 0.1
+"""Distance of the sides from which B is taken to be the one that is off."""
 SETTLED = 0.02
 """Change of the potential side's squared field by a refinement, over the accuracy."""
 
@@ -63,7 +65,8 @@ def settled_solution(
 
     The flux side where both agree. Without a gap B in the copper is a small part of a large one
     and converges slowly, while the potential side has the turns' H from Ampere's law at once: that
-    side as soon as a refinement changes its squared field by no more than a fiftieth of `accuracy`.
+    side where they are a tenth apart or more, and a refinement changes its squared field by no more
+    than a fiftieth of `accuracy`.
 
     Parameters
     ----------
@@ -79,7 +82,8 @@ def settled_solution(
     for finer in _ever_finer(solution, regions):
         if finer.apart <= accuracy:
             return finer.solution, "flux"
-        if abs(finer.square_of_potential - before) <= SETTLED * accuracy * before:
+        change = abs(finer.square_of_potential - before)
+        if finer.apart > FAR_APART and change <= SETTLED * accuracy * before:
             return finer.solution, "potential"
         before = finer.square_of_potential
     raise _too_fine(finer, accuracy)

@@ -220,7 +220,9 @@ def test_the_second_interrupt_stops_and_leaves_no_process(
     assert len(workers) == 2
     assert not psutil.wait_procs(workers, timeout=1.0)[1]
     with Store(tmp_path / "runs.sqlite") as store:
-        assert store.counts() == {"open": 3, "taken": 0, "done": 0, "failed": 0}
+        counts = store.counts()
+    assert counts["taken"] == counts["failed"] == 0
+    assert counts["open"] == 3 - counts["done"] >= 1  # how far it gets hangs on the machine
     assert [file.name for file in tmp_path.iterdir()] == ["runs.sqlite"]
 
 
