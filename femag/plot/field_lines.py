@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from femag.design import whole_section
 from femag.field.bounds import FieldSolution
 from femag.geometry.gaps import GapPiece, post_pieces
+from femag.plot.flux_map import solution_to_draw
 from femag.quantities import gap_openings, point_fields
 from femag.result import Result
 
@@ -51,7 +52,7 @@ def post_face_field(result: Result, ax: Axes) -> Axes:
     ValueError
         If the result was read from a file and holds no fields.
     """
-    solution, core = _solution(result), result.design.core
+    solution, core = solution_to_draw(result), result.design.core
     piece = (GapPiece(0.0, 0.0), *post_pieces(result.design.gaps, core.window_height))[-1]
     radii = _radii(core.turned.hole_radius, core.turned.post_radius, core.window_radius)
     middle = _axial(solution, radii, piece.middle)
@@ -90,7 +91,7 @@ def layer_field(result: Result, ax: Axes) -> Axes:
     ValueError
         If the result was read from a file and holds no fields.
     """
-    solution = _solution(result)
+    solution = solution_to_draw(result)
     inner, outer, bottom, top = _innermost_copper(result)
     z = np.linspace(bottom, top, SAMPLES)
     radius = np.full_like(z, inner + SHORT * (outer - inner))
@@ -112,12 +113,6 @@ def layer_field(result: Result, ax: Axes) -> Axes:
            ylabel=f"flux density at r = {1e3 * inner:.4g} mm, mT")  # fmt: skip
     ax.legend(loc="best", frameon=False)
     return ax
-
-
-def _solution(result: Result) -> FieldSolution:
-    if result.solution is None:
-        raise ValueError("the result holds no fields: solve the design again to draw it")
-    return result.solution
 
 
 def _radii(hole: float, post: float, window: float) -> Array:

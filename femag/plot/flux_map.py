@@ -13,6 +13,7 @@ from matplotlib.tri import Triangulation
 from numpy.typing import NDArray
 
 from femag.design import Design, whole_section
+from femag.field.bounds import FieldSolution
 from femag.geometry import Region
 from femag.geometry.gaps import GapPiece, post_pieces
 from femag.geometry.section import Point
@@ -94,10 +95,15 @@ def gap_window(design: Design) -> Window:
     return max(post - reach, 0.0), post + reach, gap.middle - reach, gap.middle + reach
 
 
-def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
+def solution_to_draw(result: Result) -> FieldSolution:
+    """Return the fields of a result; a ValueError if it was read from a file and holds none."""
     if result.solution is None:
         raise ValueError("the result holds no fields: solve the design again to draw it")
-    fields = field_map(result.solution)
+    return result.solution
+
+
+def _drawn_map(result: Result, ax: Axes, window: Window, lines: int) -> Axes:
+    fields = field_map(solution_to_draw(result))
     mesh = Triangulation(1e3 * fields.r, 1e3 * fields.z, fields.triangles)
     colour = ax.tripcolor(
         mesh,
